@@ -38,8 +38,8 @@ pub struct LevelRecord {
 /// One end of a line: the level, named by what the row gives.
 #[derive(Clone, Debug, PartialEq)]
 pub struct LevelEnd {
-    /// Energy above the ground level, cm⁻¹.
-    pub energy_per_cm: f64,
+    /// Energy above the ground level, cm⁻¹; `None` where the row names a level by label or J only.
+    pub energy_per_cm: Option<f64>,
     /// 1 σ, cm⁻¹; `None` where the level table of the same source gives it.
     pub energy_uncertainty_per_cm: Option<f64>,
     /// Electron configuration.
