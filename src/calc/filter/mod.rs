@@ -1,0 +1,1 @@
+//! Optical filters and detectors.

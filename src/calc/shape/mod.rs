@@ -1,0 +1,23 @@
+//! Line shapes: what broadens a line, its profile, and what an instrument makes of it.
+//!
+//! A line is a Voigt profile (Gaussian ⊗ Lorentzian) of unit area. The Gaussian part is Doppler
+//! broadening; the Lorentzian part sums natural and pressure broadening. An [`Instrument`] of unit
+//! area and zero mean offset blurs it further. All widths and offsets of one profile share one unit;
+//! the names say nm.
+
+mod error;
+mod faddeeva;
+mod instrument;
+mod profile;
+mod quadrature;
+mod voigt;
+mod widths;
+
+pub use error::ShapeError;
+pub use faddeeva::{faddeeva, voigt_function};
+pub use instrument::{Instrument, ResponseCurve};
+pub use profile::{Profile, overlap};
+pub use voigt::Voigt;
+pub use widths::{
+    FWHM_PER_SIGMA, LineWidths, doppler_sigma_relative, natural_fwhm_hz, wavelength_width_nm,
+};
