@@ -1,0 +1,305 @@
+#!/usr/bin/env python3
+"""Makes the bundled tables of the ions entered by hand.
+
+usage: curated.py [DATA]        (default: the data folder of this checkout)
+
+Reads data/curated-<ion>/entered_levels.csv and entered_lines.csv (what two separate entries from memory agree on) and
+`curated_decisions.toml`; writes levels.csv, lines.csv and source.toml beside them. Standard library only; nothing is fetched.
+
+Levels: those that a remembered line confirms (`line`), whose term is confirmed (`term`, three times the entry's uncertainty),
+of the lowest configuration (`ground`), or known through a coarse line only (`coarse`, widened to what the line allows);
+untested ones only where the decisions name a paper table that holds them. Lines: the remembered wavelength with one unit of
+its last digit, 0.001 nm at least (while remembering, wavelengths and levels were compared, so that more digits prove nothing),
+and widened to the misfit where it misses its levels by more than 3 sigma. Rates: as entered, 15 % where no uncertainty was
+stated, as derived where both entries took them from the multiplet by LS fractions (entered_rates.csv); components missing from a multiplet follow by `curated_rates.py`.
+"""
+import csv
+import hashlib
+import math
+import os
+import sys
+import tomllib
+
+import curated_labels as labels
+import curated_rates as rates
+
+HERE = os.path.dirname(os.path.abspath(__file__))
+LEVEL_COLUMNS = "species energy_per_cm uncertainty_per_cm configuration term j g".split()
+LINE_COLUMNS = ("species kind wavelength_nm medium wavelength_uncertainty_nm lower_energy_per_cm lower_j upper_energy_per_cm "
+                "upper_j rate_per_s rate_relative_uncertainty rate_origin row").split()
+SCALE_FROM_TERM = 3.0
+BY_FRACTIONS = "multiplet+LS"
+BAND_GAP = 1.5
+BAND_LINES = 8
+BAND_END_NM = 2500.0
+
+
+def read(path):
+    with open(path, encoding="utf-8", newline="") as file:
+        return list(csv.DictReader(file))
+
+
+def last_digit(text):
+    return 10.0 ** -len(text.partition(".")[2])
+
+
+def decided(decisions, table, ion, **where):
+    """The decisions of one table for one ion that match all given fields."""
+    return [d for d in decisions.get(table, []) if d["ion"] == ion and all(d.get(k, v) == v for k, v in where.items())]
+
+
+class Ion:
+    """One ion: its settings, kept levels and bundled lines."""
+
+    def __init__(self, folder, decisions):
+        self.folder, self.decisions = folder, decisions
+        self.name = ion_name(os.path.basename(folder))
+        self.species = self.name.replace("_", " ")
+        self.settings = {**decisions["defaults"], **decisions["ion"][self.name]}
+        self.entered_levels = read(os.path.join(folder, "entered_levels.csv"))
+        self.entered_lines = read(os.path.join(folder, "entered_lines.csv"))
+        self.by_fractions = self.fraction_rates()
+        self.left_out = []
+        self.levels = [level for level in map(self.level, self.entered_levels) if level]
+        self.by_key = {(level["text"], level["j"]): level for level in self.levels}
+        self.lines = self.make_lines()
+
+    def fraction_rates(self):
+        """{level pair: how many of the two entries took its rate from the multiplet by LS fractions}."""
+        path = os.path.join(self.folder, "entered_rates.csv")
+        out = {}
+        for row in read(path) if os.path.exists(path) else []:
+            pair = row["lower_energy_per_cm"], row["lower_j"], row["upper_energy_per_cm"], row["upper_j"]
+            out[pair] = (row["first_entry"], row["second_entry"]).count(BY_FRACTIONS)
+        return out
+
+    def level(self, row):
+        """The kept level of one entered row, or None."""
+        text, j = row["energy_per_cm"], row["j"]
+        drop = decided(self.decisions, "drop_level", self.name, energy=text, j=j)
+        outside = any(text in d["energies"] for d in decided(self.decisions, "outside", self.name))
+        if drop or (row["tested"] == "none" and not outside):
+            self.left_out.append((text, drop[0]["reason"] if drop else "no line, term or paper table tests it"))
+            return None
+        configuration, term, _ = labels.settle(row)
+        for choice in decided(self.decisions, "label", self.name, energy=text):
+            configuration, term = choice["configuration"], choice["term"]
+        return dict(text=text, e=float(text), j=j, configuration=configuration, term=term, sigma=self.level_sigma(row))
+
+    def level_sigma(self, row):
+        """1 sigma in cm-1; the ground level is exact by definition."""
+        text, energy, sigma = row["energy_per_cm"], float(row["energy_per_cm"]), float(row["uncertainty_per_cm"])
+        if energy == 0:
+            return 0.0
+        if row["tested"] == "term":
+            sigma *= SCALE_FROM_TERM
+        if row["tested"] == "coarse":
+            sigma = max(sigma, self.coarse_sigma(text, row["j"]))
+        for choice in decided(self.decisions, "widen", self.name):
+            if text in choice["energies"]:
+                sigma = max(sigma, choice["uncertainty_per_cm"])
+        return max(sigma, self.settings.get("minimum_uncertainty_per_cm", 0.0))
+
+    def coarse_sigma(self, text, j):
+        """What the best line of a coarsely known level allows, cm-1: its misfit and one unit of its last digit."""
+        allowed = []
+        for row in self.entered_lines:
+            if (text, j) in ((row["lower_energy_per_cm"], row["lower_j"]), (row["upper_energy_per_cm"], row["upper_j"])):
+                wavelength = float(row["wavelength_nm"])
+                off = abs(float(row["ritz_diff_nm"])) + last_digit(row["wavelength_nm"])
+                allowed.append(off * 1e7 / wavelength**2)
+        return min(allowed)
+
+    def make_lines(self):
+        """Bundled rows: entered lines, the blends among them twice, then derived components."""
+        rows, rated, seen = [], {}, set()
+        for number, row in enumerate(self.entered_lines, start=1):
+            pair = row["lower_energy_per_cm"], row["lower_j"], row["upper_energy_per_cm"], row["upper_j"]
+            if pair[:2] not in self.by_key or pair[2:] not in self.by_key:
+                self.left_out.append((row["wavelength_nm"], "a level of it is left out"))
+                continue
+            if row["rate_per_s"]:
+                stated = float(row["rate_uncertainty_percent"]) / 100 if row["rate_uncertainty_percent"] else self.settings["rate_uncertainty"]
+                rated[pair] = float(row["rate_per_s"]), stated
+            seen.add(pair)
+            rows += self.line_rows(row, pair, number)
+        trusted = {pair: rate for pair, rate in rated.items() if not self.by_fractions.get(pair)}
+        derived = rates.derive(self.levels, trusted, lambda pair: pair not in rated)
+        out = [self.with_rate(row, rated, derived) for row in rows]
+        missing = sorted((pair for pair in derived if pair not in seen), key=lambda pair: (self.vacuum_nm(pair), pair))
+        return out + [self.with_rate(self.ritz_row(pair, "derived"), rated, derived) for pair in missing]
+
+    def line_rows(self, row, pair, number):
+        """One row, or for a blend two: the component at its Ritz position and the remembered wavelength as `blend`."""
+        blends = decided(self.decisions, "blend", self.name, wavelength_nm=row["wavelength_nm"], lower_j=pair[1], upper_j=pair[3])
+        measured = dict(kind="line", pair=pair, wavelength=row["wavelength_nm"], medium=row["medium"],
+                        sigma=f"{self.wavelength_sigma(row, pair):.4g}", row=number)
+        if not blends:
+            return [measured]
+        strongest = blends[0].get("strongest_upper_j")
+        if strongest:
+            upper = min((level for level in self.levels if level["j"] == strongest), key=lambda level: abs(level["e"] - float(pair[2])))
+            pair_of_blend = (*pair[:2], upper["text"], upper["j"])
+        else:
+            pair_of_blend = pair
+        blend = {**measured, "kind": "blend", "pair": pair_of_blend, "sigma": f"{self.blend_sigma(row, pair):.4g}"}
+        return [self.ritz_row(pair, number), blend]
+
+    def blend_sigma(self, row, pair):
+        """1 sigma of a blend taken for its strongest component, nm: never less than twice what the levels give."""
+        levels = self.pair_sigma(pair) * float(row["wavelength_nm"]) ** 2 / 1e7
+        return max(self.wavelength_sigma(row, pair), abs(float(row["ritz_diff_nm"])), 2 * levels)
+
+    def wavelength_sigma(self, row, pair):
+        """1 sigma of a remembered wavelength, nm."""
+        wavelength, misfit = float(row["wavelength_nm"]), abs(float(row["ritz_diff_nm"]))
+        sigma = max(last_digit(row["wavelength_nm"]), self.settings["minimum_line_uncertainty_nm"])
+        levels = self.pair_sigma(pair) * wavelength**2 / 1e7
+        return misfit if misfit > 3 * math.hypot(sigma, levels) else sigma
+
+    def pair_sigma(self, pair):
+        return math.hypot(self.by_key[pair[:2]]["sigma"], self.by_key[pair[2:]]["sigma"])
+
+    def vacuum_nm(self, pair):
+        return 1e7 / (self.by_key[pair[2:]]["e"] - self.by_key[pair[:2]]["e"])
+
+    def ritz_row(self, pair, row):
+        """A component at the position that its levels give."""
+        vacuum = self.vacuum_nm(pair)
+        sigma = max(self.pair_sigma(pair), 0.001) * vacuum**2 / 1e7
+        digits = max(5, 1 - math.floor(math.log10(sigma)))
+        return dict(kind="line", pair=pair, wavelength=f"{vacuum:.{digits}f}", medium="vacuum", sigma=f"{sigma:.3g}", row=row)
+
+    def with_rate(self, row, rated, derived):
+        """The finished CSV row; a blend carries no rate of its own."""
+        pair = row["pair"]
+        rate = uncertainty = origin = ""
+        if row["kind"] == "line" and pair in rated:
+            origin = "derived" if self.by_fractions.get(pair) == 2 else "published"
+            rate, uncertainty = f"{rated[pair][0]:.3e}", f"{rated[pair][1]:.3g}"
+        elif row["kind"] == "line" and pair in derived:
+            rate, uncertainty, origin = f"{derived[pair][0]:.3e}", f"{derived[pair][1]:.3g}", "derived"
+        return [self.species, row["kind"], row["wavelength"], row["medium"], row["sigma"], *pair, rate, uncertainty, origin, row["row"]]
+
+    def level_rows(self):
+        for level in self.levels:
+            g = f"{2 * float(level['j']) + 1:g}" if level["j"] != "" else ""
+            yield [self.species, level["text"], f"{level['sigma']:.4g}", level["configuration"], level["term"], level["j"], g]
+
+    def band(self):
+        """[from, to] in nm that the entered lines cover without a gap of more than a factor 1.5, or None."""
+        if self.settings.get("band") == "none":
+            return None
+        if "band_nm" in self.settings:
+            return self.settings["band_nm"]
+        runs, run = [], []
+        for wavelength in sorted(float(row["wavelength_nm"]) for row in self.entered_lines):
+            if run and wavelength > run[-1] * BAND_GAP:
+                runs.append(run)
+                run = []
+            run.append(wavelength)
+        best = max(runs + [run], key=len)
+        return [math.floor(best[0]), min(math.ceil(best[-1]), BAND_END_NM)] if len(best) >= BAND_LINES else None
+
+
+def ion_name(folder):
+    """`curated-he-i` -> `He_I`."""
+    element, stage = folder.removeprefix("curated-").split("-")
+    return f"{element.capitalize()}_{stage.upper()}"
+
+
+def write_csv(path, columns, rows):
+    with open(path, "w", encoding="utf-8", newline="") as file:
+        writer = csv.writer(file, lineterminator="\n")
+        writer.writerow(columns)
+        writer.writerows(rows)
+
+
+def quoted(text):
+    return '"' + text.replace("\\", "\\\\").replace('"', '\\"') + '"'
+
+
+def sha256(path):
+    with open(path, "rb") as file:
+        return hashlib.sha256(file.read()).hexdigest()
+
+
+LEVEL_MAPPING = """species = { column = "species" }
+energy = { column = "energy_per_cm", unit = "cm-1" }
+energy_uncertainty = { column = "uncertainty_per_cm", unit = "cm-1" }
+configuration = { column = "configuration" }
+term = { column = "term" }
+j = { column = "j" }
+g = { column = "g" }
+"""
+LINE_MAPPING = """species = { column = "species" }
+kind = { column = "kind" }
+wavelength = { column = "wavelength_nm", unit = "nm", medium = { column = "medium" } }
+wavelength_uncertainty = { column = "wavelength_uncertainty_nm", unit = "nm" }
+lower_energy = { column = "lower_energy_per_cm", unit = "cm-1" }
+lower_j = { column = "lower_j" }
+upper_energy = { column = "upper_energy_per_cm", unit = "cm-1" }
+upper_j = { column = "upper_j" }
+rate = { column = "rate_per_s", unit = "s-1" }
+rate_uncertainty = { column = "rate_relative_uncertainty" }
+rate_origin = { column = "rate_origin" }
+"""
+
+
+def notes_of(ion):
+    counts = f"{len(ion.levels)} of {len(ion.entered_levels)} entered levels are bundled; {len(ion.left_out)} entered rows are left out."
+    derived = sum(1 for row in ion.lines if row[-2] == "derived")
+    notes = ["Entered twice by hand from memory; only what both entries agree on is kept. " + counts]
+    if derived:
+        notes.append(f"{derived} rates follow from others of their multiplet by the fractions of LS coupling (rate_origin derived).")
+    return notes + ion.settings.get("notes", [])
+
+
+def source_toml(ion):
+    """The text of source.toml."""
+    settings = ion.settings
+    citation = settings["citation"]
+    citation = citation if citation.endswith("from memory") else citation + " (from memory)"
+    out = [f"key = {quoted(os.path.basename(ion.folder))}", f"title = {quoted(ion.species + ': levels and lines entered by hand')}",
+           f"citation = {quoted(citation)}", 'licence = "CC0-1.0"', 'kind = "curated"',
+           f"level_scale_uncertainty_per_cm = {settings['scale_uncertainty_per_cm']}", f"energy_scale = {quoted(settings['energy_scale'])}",
+           "notes = [" + ", ".join(map(quoted, notes_of(ion))) + "]"]
+    band = ion.band()
+    if band:
+        out += ["", "[[scope]]", f"species = [{quoted(ion.species)}]", f"band_nm = [{float(band[0])}, {float(band[1])}]", 'completeness = "strong"']
+    for name, rows, records, mapping, ignore in (("levels.csv", len(ion.levels), "levels", LEVEL_MAPPING, []),
+                                                 ("lines.csv", len(ion.lines), "lines", LINE_MAPPING, ["row"])):
+        if rows:
+            out += ["", "[[table]]", f"file = {quoted(name)}", f"sha256 = {quoted(sha256(os.path.join(ion.folder, name)))}", f"rows = {rows}",
+                    f"records = {quoted(records)}", 'format = "delimited"']
+            out += [f"ignore = [{', '.join(map(quoted, ignore))}]"] if ignore else []
+            out += ["[table.columns]", mapping.rstrip()]
+    return "\n".join(out) + "\n"
+
+
+def make(folder, decisions):
+    """Writes the bundled files of one ion and returns it."""
+    ion = Ion(folder, decisions)
+    write_csv(os.path.join(folder, "levels.csv"), LEVEL_COLUMNS, ion.level_rows())
+    write_csv(os.path.join(folder, "lines.csv"), LINE_COLUMNS, ion.lines)
+    with open(os.path.join(folder, "source.toml"), "w", encoding="utf-8") as file:
+        file.write(source_toml(ion))
+    return ion
+
+
+def main():
+    data = sys.argv[1] if len(sys.argv) > 1 else os.path.join(HERE, "..", "..", "data")
+    with open(os.path.join(HERE, "curated_decisions.toml"), "rb") as file:
+        decisions = tomllib.load(file)
+    folders = sorted(entry.path for entry in os.scandir(data) if entry.name.startswith("curated-") and entry.is_dir())
+    ions = [make(folder, decisions) for folder in folders]
+    unknown = set(decisions["ion"]) - {ion.name for ion in ions}
+    if unknown:
+        sys.exit(f"decisions for ions without a folder: {sorted(unknown)}")
+    rated = [row for ion in ions for row in ion.lines if row[-4]]
+    print(f"{len(ions)} ions: {sum(len(i.levels) for i in ions)} levels, {sum(len(i.lines) for i in ions)} lines, {len(rated)} rates "
+          f"({sum(r[-2] == 'derived' for r in rated)} derived), {sum(1 for i in ions if i.band())} with a scope")
+
+
+if __name__ == "__main__":
+    main()
