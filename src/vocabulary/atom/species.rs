@@ -1,5 +1,11 @@
 //! One spectrum's owner: an element, or one isotope of it, in one stage of ionisation.
 
+use std::fmt;
+use std::str::FromStr;
+
+use super::request::{SpeciesRequest, symbol_text};
+use super::{SpeciesError, to_roman};
+
 /// An atom or ion. `stage` counts from 1 for the neutral atom, as the trade writes Fe I, Fe II.
 /// `isotope` is a mass number where the species is one isotope (D is hydrogen with 2), else `None`.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
@@ -54,6 +60,27 @@ impl Species {
             atomic_number,
             stage,
             isotope: (isotope != 0).then_some(isotope),
+        })
+    }
+}
+
+/// `Fe I`, `D I`, `6Li I`, `198Hg I`.
+impl fmt::Display for Species {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        let symbol = symbol_text(self.atomic_number, self.isotope);
+        write!(f, "{symbol} {}", to_roman(self.stage))
+    }
+}
+
+/// Reads every spelling that fixes one stage: `Fe I`, `FeI`, `Fe+`, `6Li I`, `D I`.
+impl FromStr for Species {
+    type Err = SpeciesError;
+
+    fn from_str(text: &str) -> Result<Self, SpeciesError> {
+        let request: SpeciesRequest = text.parse()?;
+        request.single().ok_or_else(|| SpeciesError::StageMissing {
+            text: text.trim().to_owned(),
+            example: format!("{} I", symbol_text(request.atomic_number, request.isotope)),
         })
     }
 }
