@@ -127,14 +127,15 @@ def allowed(lower, upper):
     return lower[1].endswith("o") != upper[1].endswith("o") and abs(low - high) <= 1 and low + high > 0
 
 
-def plain(value, sigma, least):
-    """The value with digits down to a hundredth of its sigma, at least `least` behind the point."""
-    places = least if not sigma else max(least, 2 - sigma.adjusted())
+def plain(value, sigma, least, finer=2):
+    """The value with digits down to 10^-finer of its sigma, at least `least` behind the point."""
+    places = least if not sigma else max(least, finer - sigma.adjusted())
     return f"{value:.{min(places, 14)}f}"
 
 
 def energy_text(energy, variance):
-    return plain(energy / MHZ_PER_CM, variance.sqrt() / MHZ_PER_CM, 4) if energy else "0"
+    """Finer than its sigma, because intervals are known better than a common anchor (helium)."""
+    return plain(energy / MHZ_PER_CM, variance.sqrt() / MHZ_PER_CM, 4, 4) if energy else "0"
 
 
 def short(value):
