@@ -22,6 +22,8 @@ const STEP: f64 = 0.56;
 const PAIRS: usize = 10;
 /// |z|² from which 10, 4, 2 and 1 Gauss–Hermite points leave less than 2e-10.
 const FAR: [f64; 4] = [46.0, 1.2e3, 2.0e5, 1.0e10];
+/// Beyond e^(−46) the residue is below 2e-10 of y/(46 √π), the least that the sum can be for y ≥ 1e-8.
+const RESIDUE_SEEN: f64 = 46.0;
 
 /// A quadrature grid of node pairs ±t: t² and the weight of both nodes together over π.
 struct Grid<const N: usize> {
@@ -169,39 +171,87 @@ fn pole(x: f64, y: f64) -> (f64, f64) {
 
 fn near(x: f64, y: f64) -> (f64, f64) {
     let steps = x / STEP;
-    let fraction = steps - steps.floor();
-    let on_half_nodes = !(0.25..=0.75).contains(&fraction);
-    let (mut real, mut imaginary) = if on_half_nodes {
-        HALF_NODES.sum(x, y)
-    } else {
+    let fraction = steps - steps.trunc();
+    // Signed distance, in steps, to the middle between the nodes of the *other* grid.
+    let (mut real, mut imaginary, from_middle) = if (0.25..=0.75).contains(&fraction) {
         let (real, imaginary) = WHOLE_NODES.sum(x, y);
         let centre = STEP / PI / (x * x + y * y);
-        (real + centre * y, imaginary + centre * x)
+        (real + centre * y, imaginary + centre * x, fraction - 0.5)
+    } else {
+        let (real, imaginary) = HALF_NODES.sum(x, y);
+        (
+            real,
+            imaginary,
+            if fraction > 0.5 {
+                fraction - 1.0
+            } else {
+                fraction
+            },
+        )
     };
-    if y * (TAU / STEP - y) + x * x < 46.0 && y < PI / STEP {
-        let (more, also) = residue(x, y, fraction, on_half_nodes);
+    if y < PI / STEP && y * (TAU / STEP - y) + x * x < RESIDUE_SEEN {
+        let (more, also) = residue(x, y, from_middle);
         real += more;
         imaginary += also;
     }
     (real, imaginary)
 }
 
-/// 2 e^(−z²)/(1 ± e^(−2πi z/h)): plus on the half nodes, minus on the whole ones. Written with
-/// q = e^(2πi z/h), |q| ≤ 1, as 2 e^(−z²) q/(q ± 1).
-fn residue(x: f64, y: f64, fraction: f64, on_half_nodes: bool) -> (f64, f64) {
+/// 2 e^(−z²)/(1 + 1/q) with q = e^(2πi z/h), taken with the real part of z/h counted from the middle
+/// between two nodes, which makes it the same for both grids. |q| ≤ 1.
+fn residue(x: f64, y: f64, from_middle: f64) -> (f64, f64) {
     let magnitude = 2.0 * (y * y - x * x).exp();
-    let (sine, cosine) = (-2.0 * x * y).sin_cos();
+    let (sine, cosine) = sin_cos_turns(x * y / PI);
     let decay = (-TAU / STEP * y).exp();
-    let (q_sine, q_cosine) = (TAU * fraction).sin_cos();
+    let (q_sine, q_cosine) = sin_cos_turns(from_middle);
     let (q_real, q_imaginary) = (decay * q_cosine, decay * q_sine);
-    let sign = if on_half_nodes { 1.0 } else { -1.0 };
-    // q/(q ± 1) = (|q|² ± q)/|q ± 1|².
-    let (d_real, d_imaginary) = (q_real + sign, q_imaginary);
-    let denominator = d_real * d_real + d_imaginary * d_imaginary;
-    let a = (decay * decay + sign * q_real) / denominator;
-    let b = sign * q_imaginary / denominator;
+    // q/(1 + q) = (|q|² + q)/|1 + q|².
+    let scale = magnitude / ((1.0 + q_real) * (1.0 + q_real) + q_imaginary * q_imaginary);
+    let (a, b) = (decay * decay + q_real, q_imaginary);
     (
-        magnitude * (cosine * a - sine * b),
-        magnitude * (cosine * b + sine * a),
+        scale * (cosine * a + sine * b),
+        scale * (cosine * b - sine * a),
     )
+}
+
+/// 1/n! with alternating sign, of the sine (odd n from 3) and the cosine (even n from 2) series.
+const SINE: [f64; 6] = [
+    -1.0 / 6.0,
+    1.0 / 120.0,
+    -1.0 / 5_040.0,
+    1.0 / 362_880.0,
+    -1.0 / 39_916_800.0,
+    1.0 / 6_227_020_800.0,
+];
+const COSINE: [f64; 6] = [
+    -1.0 / 2.0,
+    1.0 / 24.0,
+    -1.0 / 720.0,
+    1.0 / 40_320.0,
+    -1.0 / 3_628_800.0,
+    1.0 / 479_001_600.0,
+];
+
+/// Sine and cosine of 2π t for |t| < 2^40, absolute error 1e-12: Taylor series within an eighth
+/// of a turn. Worth its lines: the library calls took two thirds of the time of a point.
+#[inline]
+fn sin_cos_turns(t: f64) -> (f64, f64) {
+    /// Adding and subtracting it rounds to a whole number.
+    const ROUNDER: f64 = 6_755_399_441_055_744.0;
+    let quarters = (4.0 * t + ROUNDER) - ROUNDER;
+    let r = (t - quarters / 4.0) * TAU;
+    let r2 = r * r;
+    let series = |c: &[f64; 6]| {
+        let r4 = r2 * r2;
+        r2 * ((c[0] + r2 * c[1]) + r4 * ((c[2] + r2 * c[3]) + r4 * (c[4] + r2 * c[5])))
+    };
+    let (sine, cosine) = (r + r * series(&SINE), 1.0 + series(&COSINE));
+    let quadrant = quarters as i64;
+    let (sine, cosine) = if quadrant & 1 == 0 {
+        (sine, cosine)
+    } else {
+        (cosine, -sine)
+    };
+    let sign = 1.0 - (quadrant & 2) as f64;
+    (sign * sine, sign * cosine)
 }
