@@ -26,6 +26,14 @@ pub enum ShapeError {
         "the line has no width: give an instrument width, a gas temperature or a pressure width"
     )]
     NoWidth,
+    /// Quantum numbers between which no line lies.
+    #[error("n = {n_upper} to n = {n_lower} is no emission line: the upper n must be larger")]
+    NoTransition {
+        /// Lower principal quantum number.
+        n_lower: u32,
+        /// Upper principal quantum number.
+        n_upper: u32,
+    },
     /// A response curve needs at least two points.
     #[error("the response curve has {points} points: it needs at least 2")]
     FewPoints {

@@ -8,15 +8,23 @@
 mod error;
 mod faddeeva;
 mod instrument;
+mod neutral;
+mod pressure;
 mod profile;
 mod quadrature;
+mod stark;
 mod voigt;
 mod widths;
 
 pub use error::ShapeError;
 pub use faddeeva::{faddeeva, voigt_function};
 pub use instrument::{Instrument, ResponseCurve};
+pub use neutral::{
+    Perturbers, ResonanceLine, polarisability_a0_cubed, resonance_width, van_der_waals,
+};
+pub use pressure::{OuterElectron, PressureWidth, WidthMethod};
 pub use profile::{Profile, overlap};
+pub use stark::{hydrogen_stark, quadratic_stark};
 pub use voigt::Voigt;
 pub use widths::{
     FWHM_PER_SIGMA, LineWidths, doppler_sigma_relative, natural_fwhm_hz, wavelength_width_nm,

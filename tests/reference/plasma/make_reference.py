@@ -48,3 +48,61 @@ write("hydrogen_partition.csv", ["kt_ev", "value"], [(t, hydrogen(mp.mpf(t))) fo
 write("saha.csv", ["temperature_k", "limit_ev", "partition_ratio", "ln_ratio_per_m3"],
       [(t, x, u, saha(mp.mpf(t), mp.mpf(x), mp.mpf(u)))
        for t in (300.0, 5777.0, 1e4, 1e6) for x in (4.0, 13.6, 400.0) for u in (0.5, 2.0)])
+
+
+def free_free(initial, final):
+    """Free-free Gaunt factor of Sommerfeld 1931 in the form of Karzas & Latter 1961 and Biedenharn
+    1956; electron energies over Z^2 Ry before and after the emission."""
+    ki, kf = mp.sqrt(initial), mp.sqrt(final)
+    ni, nf = 1 / ki, 1 / kf
+    ratio = 4 * ki * kf / (ki - kf) ** 2
+
+    def integral(l):
+        size = abs(mp.gamma(l + 1 + 1j * ni) * mp.gamma(l + 1 + 1j * nf)) / mp.gamma(2 * l + 2)
+        front = ratio ** (l + 1) * mp.exp(mp.pi * abs(ni - nf) / 2) * size / 4
+        phase = abs((kf - ki) / (kf + ki)) ** (1j * (ni + nf))
+        return front * mp.re(phase * mp.hyp2f1(l + 1 - 1j * nf, l + 1 - 1j * ni, 2 * l + 2, -ratio))
+
+    i0, i1 = integral(0), integral(1)
+    both = (ni**2 + nf**2 + 2 * ni**2 * nf**2) * i0 - 2 * ni * nf * mp.sqrt((1 + ni**2) * (1 + nf**2)) * i1
+    return 2 * mp.sqrt(3) / (mp.pi * ni * nf) * both * i0
+
+
+def averaged(gamma2, u, nodes):
+    """Mean over Maxwellian electrons: integral of g e^-x dx, x = E_final/kT (the substitution
+    x = e^t - e^-t/... keeps the logarithm at small u tame: Gauss-Legendre in ln x)."""
+    total = mp.mpf(0)
+    for x, weight in nodes:
+        total += weight * mp.exp(-x) * free_free((x + u) / gamma2, x / gamma2)
+    return total
+
+
+def nodes_in_log(low, high, count):
+    import numpy as np
+
+    t, w = np.polynomial.legendre.leggauss(count)
+    a, b = mp.log(low), mp.log(high)
+    half, middle = (b - a) / 2, (a + b) / 2
+    out = [(mp.exp(middle + half * mp.mpf(float(v))), half * mp.mpf(float(k)) * mp.exp(middle + half * mp.mpf(float(v))))
+           for v, k in zip(t, w)]
+    return out
+
+
+def gaunt_table():
+    """ln g on a net of log10(gamma^2) -3..3 and log10(u) -4..1.5, step 0.5; also 40 points between."""
+    import random
+
+    mp.mp.dps = 30
+    nodes = nodes_in_log(mp.mpf("1e-5"), mp.mpf(40), 28)
+    # Below x = 1e-5 the integrand is taken as constant: 1e-5 of the whole.
+    nodes.append((mp.mpf("1e-5"), mp.mpf("1e-5")))
+    grid = [(mp.mpf(g) / 2, mp.mpf(u) / 2) for g in range(-6, 7) for u in range(-8, 4)]
+    write("gaunt.csv", ["log_gamma2", "log_u", "gaunt"], [(g, u, averaged(10**g, 10**u, nodes)) for g, u in grid])
+    rng = random.Random(2014)
+    between = [(rng.uniform(-2.9, 2.9), rng.uniform(-3.9, 1.4)) for _ in range(40)]
+    write("gaunt_between.csv", ["log_gamma2", "log_u", "gaunt"],
+          [(g, u, averaged(mp.mpf(10) ** g, mp.mpf(10) ** u, nodes)) for g, u in between])
+
+
+if __name__ == "__main__":
+    gaunt_table()
