@@ -26,7 +26,7 @@ import curated_rates as rates
 HERE = os.path.dirname(os.path.abspath(__file__))
 LEVEL_COLUMNS = "species energy_per_cm uncertainty_per_cm configuration term j g".split()
 LINE_COLUMNS = ("species kind wavelength_nm medium wavelength_uncertainty_nm lower_energy_per_cm lower_j upper_energy_per_cm "
-                "upper_j rate_per_s rate_relative_uncertainty rate_origin row").split()
+                "upper_j rate_per_s rate_relative_uncertainty rate_origin from_levels row").split()
 SCALE_FROM_TERM = 3.0
 BY_FRACTIONS = "multiplet+LS"
 BAND_GAP = 1.5
@@ -118,9 +118,9 @@ class Ion:
             if pair[:2] not in self.by_key or pair[2:] not in self.by_key:
                 self.left_out.append((row["wavelength_nm"], "a level of it is left out"))
                 continue
-            if row["rate_per_s"]:
-                stated = float(row["rate_uncertainty_percent"]) / 100 if row["rate_uncertainty_percent"] else self.settings["rate_uncertainty"]
-                rated[pair] = float(row["rate_per_s"]), stated
+            rate = self.entered_rate(row)
+            if rate:
+                rated[pair] = rate
             seen.add(pair)
             rows += self.line_rows(row, pair, number)
         trusted = {pair: rate for pair, rate in rated.items() if not self.by_fractions.get(pair)}
@@ -128,6 +128,18 @@ class Ion:
         out = [self.with_rate(row, rated, derived) for row in rows]
         missing = sorted((pair for pair in derived if pair not in seen), key=lambda pair: (self.vacuum_nm(pair), pair))
         return out + [self.with_rate(self.ritz_row(pair, "derived"), rated, derived) for pair in missing]
+
+    def entered_rate(self, row):
+        """(rate, relative uncertainty) of an entered row, or None where it holds none or the decisions withhold it."""
+        if not row["rate_per_s"]:
+            return None
+        stated = float(row["rate_uncertainty_percent"]) / 100 if row["rate_uncertainty_percent"] else self.settings["rate_uncertainty"]
+        for choice in decided(self.decisions, "rate", self.name, wavelength_nm=row["wavelength_nm"]):
+            if choice["action"] == "withhold":
+                self.left_out.append((row["wavelength_nm"], choice["reason"]))
+                return None
+            stated = max(stated, choice["uncertainty"])
+        return float(row["rate_per_s"]), stated
 
     def line_rows(self, row, pair, number):
         """One row, or for a blend two: the component at its Ritz position and the remembered wavelength as `blend`."""
@@ -168,7 +180,7 @@ class Ion:
         vacuum = self.vacuum_nm(pair)
         sigma = max(self.pair_sigma(pair), 0.001) * vacuum**2 / 1e7
         digits = max(5, 1 - math.floor(math.log10(sigma)))
-        return dict(kind="line", pair=pair, wavelength=f"{vacuum:.{digits}f}", medium="vacuum", sigma=f"{sigma:.3g}", row=row)
+        return dict(kind="line", pair=pair, wavelength=f"{vacuum:.{digits}f}", medium="vacuum", sigma=f"{sigma:.3g}", row=row, ritz=True)
 
     def with_rate(self, row, rated, derived):
         """The finished CSV row; a blend carries no rate of its own."""
@@ -179,7 +191,8 @@ class Ion:
             rate, uncertainty = f"{rated[pair][0]:.3e}", f"{rated[pair][1]:.3g}"
         elif row["kind"] == "line" and pair in derived:
             rate, uncertainty, origin = f"{derived[pair][0]:.3e}", f"{derived[pair][1]:.3g}", "derived"
-        return [self.species, row["kind"], row["wavelength"], row["medium"], row["sigma"], *pair, rate, uncertainty, origin, row["row"]]
+        return [self.species, row["kind"], row["wavelength"], row["medium"], row["sigma"], *pair, rate, uncertainty, origin,
+                "true" if row.get("ritz") else "false", row["row"]]
 
     def level_rows(self):
         for level in self.levels:
@@ -243,12 +256,13 @@ upper_j = { column = "upper_j" }
 rate = { column = "rate_per_s", unit = "s-1" }
 rate_uncertainty = { column = "rate_relative_uncertainty" }
 rate_origin = { column = "rate_origin" }
+from_levels = { column = "from_levels" }
 """
 
 
 def notes_of(ion):
     counts = f"{len(ion.levels)} of {len(ion.entered_levels)} entered levels are bundled; {len(ion.left_out)} entered rows are left out."
-    derived = sum(1 for row in ion.lines if row[-2] == "derived")
+    derived = sum(1 for row in ion.lines if row[11] == "derived")
     notes = ["Entered twice by hand from memory; only what both entries agree on is kept. " + counts]
     if derived:
         notes.append(f"{derived} rates follow from others of their multiplet by the fractions of LS coupling (rate_origin derived).")
@@ -296,9 +310,9 @@ def main():
     unknown = set(decisions["ion"]) - {ion.name for ion in ions}
     if unknown:
         sys.exit(f"decisions for ions without a folder: {sorted(unknown)}")
-    rated = [row for ion in ions for row in ion.lines if row[-4]]
+    rated = [row for ion in ions for row in ion.lines if row[9]]
     print(f"{len(ions)} ions: {sum(len(i.levels) for i in ions)} levels, {sum(len(i.lines) for i in ions)} lines, {len(rated)} rates "
-          f"({sum(r[-2] == 'derived' for r in rated)} derived), {sum(1 for i in ions if i.band())} with a scope")
+          f"({sum(r[11] == 'derived' for r in rated)} derived), {sum(1 for i in ions if i.band())} with a scope")
 
 
 if __name__ == "__main__":

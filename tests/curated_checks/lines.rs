@@ -1,6 +1,6 @@
 //! Lines against their levels and the selection rules.
 
-use super::support::{Ion, Line, air_nm, ions, odd};
+use super::support::{Ion, Line, air_nm, ion, ions, odd};
 use std::collections::HashSet;
 
 /// Electric dipole: parity changes, |ΔJ| ≤ 1, not 0-0; magnetic quadrupole (0-2) in two-electron spectra; same parity (magnetic dipole,
@@ -86,7 +86,7 @@ fn ritz_meets_the_remembered_wavelength() {
     let mut total = 0;
     for ion in ions() {
         for line in &ion.lines {
-            let x = misfit(&ion, line).abs();
+            let x = misfit(ion, line).abs();
             assert!(x <= 3.0, "{} {line:?}: {x:.1} sigma", ion.species);
             total += 1;
             inside += usize::from(x <= 2.0);
@@ -134,10 +134,7 @@ fn no_line_twice() {
 /// (Condon & Shortley 1935, chapter 9): 1 : 15 : 84 from J = 2, 15 : 45 from J = 1, 20 from J = 0, in units that sum to 180.
 #[test]
 fn helium_587_nm_has_six_rated_components() {
-    let helium = ions()
-        .into_iter()
-        .find(|ion| ion.species == "He I")
-        .unwrap();
+    let helium = ion("He I");
     let components: Vec<&Line> = helium
         .lines
         .iter()

@@ -6,5 +6,8 @@
 
 mod levels;
 mod lines;
+mod outside;
+mod series;
+mod sums;
 mod support;
 mod tables;

@@ -1,6 +1,8 @@
 //! Reads the curated folders with nothing but a CSV reader, so that the checks do not lean on the importers.
 
+use std::collections::HashMap;
 use std::path::{Path, PathBuf};
+use std::sync::OnceLock;
 
 /// One bundled level.
 #[derive(Clone, Debug)]
@@ -36,6 +38,8 @@ pub struct Ion {
     pub species: String,
     pub levels: Vec<Level>,
     pub lines: Vec<Line>,
+    /// Rows of entered_lines.csv.
+    pub entered_lines: Vec<HashMap<String, String>>,
 }
 
 impl Ion {
@@ -64,19 +68,27 @@ pub fn data() -> PathBuf {
 }
 
 /// All curated ions, in order of their folders.
-pub fn ions() -> Vec<Ion> {
-    let mut folders: Vec<PathBuf> = std::fs::read_dir(data())
-        .unwrap()
-        .map(|entry| entry.unwrap().path())
-        .filter(|path| {
-            path.file_name()
-                .unwrap()
-                .to_string_lossy()
-                .starts_with("curated-")
-        })
-        .collect();
-    folders.sort();
-    folders.iter().map(|folder| read_ion(folder)).collect()
+pub fn ions() -> &'static [Ion] {
+    static IONS: OnceLock<Vec<Ion>> = OnceLock::new();
+    IONS.get_or_init(|| {
+        let entries = std::fs::read_dir(data()).unwrap();
+        let mut folders: Vec<PathBuf> = entries
+            .map(|entry| entry.unwrap().path())
+            .filter(|path| {
+                path.file_name()
+                    .unwrap()
+                    .to_string_lossy()
+                    .starts_with("curated-")
+            })
+            .collect();
+        folders.sort();
+        folders.iter().map(|folder| read_ion(folder)).collect()
+    })
+}
+
+/// One ion by its name.
+pub fn ion(species: &str) -> &'static Ion {
+    ions().iter().find(|ion| ion.species == species).unwrap()
 }
 
 fn read_ion(folder: &Path) -> Ion {
@@ -87,11 +99,12 @@ fn read_ion(folder: &Path) -> Ion {
         folder: folder.to_path_buf(),
         levels: levels.iter().map(level).collect(),
         lines: lines.iter().map(line).collect(),
+        entered_lines: rows(&folder.join("entered_lines.csv")),
     }
 }
 
 /// A CSV file as maps from column name to text.
-pub fn rows(path: &Path) -> Vec<std::collections::HashMap<String, String>> {
+pub fn rows(path: &Path) -> Vec<HashMap<String, String>> {
     let mut reader =
         csv::Reader::from_path(path).unwrap_or_else(|e| panic!("{}: {e}", path.display()));
     reader
@@ -112,7 +125,7 @@ fn optional(text: &str) -> Option<f64> {
     (!text.is_empty()).then(|| number(text))
 }
 
-fn level(row: &std::collections::HashMap<String, String>) -> Level {
+fn level(row: &HashMap<String, String>) -> Level {
     Level {
         text: row["energy_per_cm"].clone(),
         energy_per_cm: number(&row["energy_per_cm"]),
@@ -124,7 +137,7 @@ fn level(row: &std::collections::HashMap<String, String>) -> Level {
     }
 }
 
-fn line(row: &std::collections::HashMap<String, String>) -> Line {
+fn line(row: &HashMap<String, String>) -> Line {
     let end = |side: &str| {
         (
             row[&format!("{side}_energy_per_cm")].clone(),

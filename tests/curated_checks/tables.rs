@@ -55,9 +55,9 @@ fn checksums_and_counts_in_source_toml_are_those_of_the_tables() {
 fn kept_input_holds_what_both_entries_agreed_on() {
     let (mut levels, mut lines, mut rates) = (0, 0, 0);
     let ions = ions();
-    for ion in &ions {
+    for ion in ions {
         levels += rows(&ion.folder.join("entered_levels.csv")).len();
-        let entered = rows(&ion.folder.join("entered_lines.csv"));
+        let entered = &ion.entered_lines;
         lines += entered.len();
         rates += entered
             .iter()
@@ -118,7 +118,7 @@ fn every_entered_line_is_accounted_for() {
     let mut missing = Vec::new();
     for ion in ions() {
         let there: HashSet<&str> = ion.lines.iter().map(|line| line.row.as_str()).collect();
-        let entered = rows(&ion.folder.join("entered_lines.csv"));
+        let entered = &ion.entered_lines;
         missing.extend(
             (1..=entered.len())
                 .filter(|n| !there.contains(n.to_string().as_str()))
@@ -133,7 +133,7 @@ fn entered_rates_are_bundled_as_entered() {
     let mut published = 0;
     let mut derived = 0;
     for ion in ions() {
-        let entered = rows(&ion.folder.join("entered_lines.csv"));
+        let entered = &ion.entered_lines;
         for line in ion.lines.iter().filter(|line| line.rate_per_s.is_some()) {
             let rate: Option<f64> = line
                 .row
@@ -161,13 +161,14 @@ fn entered_rates_are_bundled_as_entered() {
         }
     }
     println!("{published} published and {derived} derived rates");
-    assert_eq!(published + derived - derived_only(), 2801);
+    // Four of the 2801 are withheld by decision: Fe I 443.5149, Ag I 206.985 and 206.1175, In I 256.015.
+    assert_eq!(published + derived - derived_only(), 2801 - 4);
 }
 
 /// Rates that no entry held.
 fn derived_only() -> usize {
     let count = |ion: &Ion| {
-        let entered = rows(&ion.folder.join("entered_lines.csv"));
+        let entered = &ion.entered_lines;
         let rated = |line: &&super::support::Line| {
             line.rate_per_s.is_some()
                 && line
