@@ -1,5 +1,6 @@
 //! The resonance-line tables of single isotopes: their bytes, their inner sums, and values from outside.
 //! Every outside value names its source; all are from memory of it.
+#![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
 
 use std::collections::HashMap;
 use std::path::PathBuf;
@@ -10,6 +11,9 @@ use sha2::{Digest, Sha256};
 const MHZ_PER_CM: f64 = 29979.2458;
 
 type Row = HashMap<String, String>;
+
+/// Configuration, term and J.
+type LevelName = (&'static str, &'static str, &'static str);
 
 fn folder() -> PathBuf {
     PathBuf::from(env!("CARGO_MANIFEST_DIR")).join("data/resonance-lines")
@@ -357,7 +361,7 @@ fn deuterium_lies_above_hydrogen_by_the_reduced_mass() {
 #[test]
 fn isotope_shifts_have_the_sign_of_their_cause() {
     let levels = table("levels.csv");
-    let rising: [(&[&str], (&str, &str, &str)); 8] = [
+    let rising: [(&[&str], LevelName); 8] = [
         (&["1H I", "D I"], ("2p", "2Po", "1/2")),
         (&["6Li I", "7Li I"], ("2p", "2Po", "3/2")),
         (&["39K I", "40K I", "41K I"], ("4p", "2Po", "1/2")),
