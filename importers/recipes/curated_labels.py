@@ -15,7 +15,7 @@ LS_TERM = re.compile(r"^(?:([a-z]) )?(\d+)([SPDFGHIKLMNOQ])(o?)$")
 def tidy(text):
     """Single blanks, parents in one style, no ruler marks."""
     text = re.sub(r"<([^>]*)>", r"\1", text or "")
-    text = text.replace(".", " ").replace("*", "o").replace("°", "o")
+    text = re.sub(r"^([a-z])(?=\d+[SPDFGHIKLMNOQ])", r"\1 ", text.replace(".", " ").replace("*", "o").replace("°", "o"))
     return re.sub(r"\s+", " ", text).strip()
 
 
