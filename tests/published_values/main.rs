@@ -5,6 +5,7 @@
 
 mod held;
 mod lamps;
+mod laser;
 mod lifetimes;
 mod limits;
 mod lines;
