@@ -4,7 +4,7 @@ use std::collections::HashMap;
 
 use sha2::{Digest, Sha256};
 
-use super::tables::{close, folder, half, number, table};
+use super::tables::{Row, close, folder, half, number, table};
 
 #[test]
 fn the_tables_are_those_that_the_description_names() {
