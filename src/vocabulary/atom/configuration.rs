@@ -2,6 +2,7 @@
 
 use std::fmt;
 
+use super::HalfInteger;
 use crate::spectrum::Parity;
 
 /// Letters of a single electron's l = 0, 1, 2 …: s p d f, then the alphabet without j, and without
@@ -32,15 +33,18 @@ pub struct Shell {
     pub l: u8,
     /// Electrons in it, 1 to 4 l + 2.
     pub electrons: u8,
+    /// Momentum j = l ± ½ of its one electron, where a table of jj coupling gives it: `6p3/2`.
+    pub j: Option<HalfInteger>,
 }
 
 impl fmt::Display for Shell {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         let letter = orbital_letter(self.l).unwrap_or('?');
         write!(f, "{}{letter}", self.n)?;
-        match self.electrons {
-            1 => Ok(()),
-            electrons => write!(f, "{electrons}"),
+        match (self.electrons, self.j) {
+            (1, None) => Ok(()),
+            (_, Some(j)) => write!(f, "{j}"),
+            (electrons, None) => write!(f, "{electrons}"),
         }
     }
 }
@@ -166,6 +170,29 @@ fn read_shell(text: &str) -> Option<(Part, &str)> {
     let letter = rest.chars().next()?;
     let l = orbital_number(letter)?;
     let rest = &rest[letter.len_utf8()..];
+    let (electrons, j, after) = match read_momentum(rest, l) {
+        Some((j, after)) => (1, Some(j), after),
+        None => {
+            let (electrons, after) = read_occupation(rest, l)?;
+            (electrons, None, after)
+        }
+    };
+    let possible = n > u16::from(l) && (1..=4 * l + 2).contains(&electrons);
+    let shell = Shell { n, l, electrons, j };
+    possible.then_some((Part::Shell(shell), after))
+}
+
+/// `3/2` behind the letter of a shell: the momentum of its one electron.
+fn read_momentum(rest: &str, l: u8) -> Option<(HalfInteger, &str)> {
+    let (digits, after) = split_digits(rest);
+    let after = after.strip_prefix("/2")?;
+    let twice: u16 = digits.parse().ok()?;
+    let sound = twice.abs_diff(2 * u16::from(l)) == 1;
+    sound.then(|| (HalfInteger::from_twice(twice), after))
+}
+
+/// The number of electrons behind the letter of a shell; none means one.
+fn read_occupation(rest: &str, l: u8) -> Option<(u8, &str)> {
     let (digits, after) = split_digits(rest);
     let taken = if after.starts_with(|c: char| orbital_number(c).is_some()) {
         occupation_before_shell(digits, after, l)?
@@ -176,8 +203,7 @@ fn read_shell(text: &str) -> Option<(Part, &str)> {
         "" => 1,
         count => count.parse().ok()?,
     };
-    let possible = n > u16::from(l) && (1..=4 * l + 2).contains(&electrons);
-    possible.then(|| (Part::Shell(Shell { n, l, electrons }), &rest[taken..]))
+    Some((electrons, &rest[taken..]))
 }
 
 fn split_digits(text: &str) -> (&str, &str) {

@@ -62,7 +62,8 @@ fn limit_of_mixture(species: Species) -> Option<Limit> {
     isotope(species.atomic_number, mass_number)?;
     let mixture = Species::new(species.atomic_number, species.stage);
     let mut limit = limit_reports(mixture).next()?;
-    let reduced = |of: Species| Some(1.0 / (1.0 + ELECTRON_MASS_U / mass_u(of)?));
+    let nucleus_u = |of: Species| Some(mass_u(of)? - f64::from(of.stage) * ELECTRON_MASS_U);
+    let reduced = |of: Species| Some(1.0 / (1.0 + ELECTRON_MASS_U / nucleus_u(of)?));
     let ratio = reduced(species)? / reduced(leading_isotope(mixture))?;
     if species.is_one_electron() {
         limit.energy_per_cm *= ratio;

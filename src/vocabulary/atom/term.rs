@@ -23,12 +23,14 @@ pub enum Term {
         /// The letter that numbers terms of one kind (`a`, `z`), where the source gives one.
         prefix: Option<char>,
     },
-    /// Pair coupling of an outer electron, `2[3/2]o`: K = j of the core + l.
+    /// Pair coupling, `2[3/2]o`: K = momentum of the core + l of the outer electrons, whose spin
+    /// couples last.
     PairCoupling {
         /// K.
         k: HalfInteger,
-        /// Multiplicity 2s + 1 of the outer electron; `None` where the source leaves it out.
-        multiplicity: Option<u8>,
+        /// The number before the bracket: in some tables the multiplicity 2s + 1 of the outer
+        /// electrons, in others the momentum of the core (`1/2[3/2]o`); `None` where none stands.
+        front: Option<HalfInteger>,
         /// Odd parity.
         odd: bool,
     },
@@ -70,22 +72,41 @@ impl Term {
         }
     }
 
-    /// All J that the term allows, lowest first: |L − S| … L + S, K ± ½, or |j₁ − j₂| … j₁ + j₂.
-    /// Empty for text that is no term.
+    /// All J that the term allows, lowest first: |L − S| … L + S, or |j₁ − j₂| … j₁ + j₂. In pair
+    /// coupling K ± ½, and where the number before the bracket can be a multiplicity 2s + 1 also
+    /// |K − s| … K + s. Empty for text that is no term.
     pub fn allowed_j(&self) -> Vec<HalfInteger> {
-        let (a, b) = match *self {
+        match *self {
             Self::Ls {
                 multiplicity, l, ..
-            } => (2 * u16::from(l), u16::from(multiplicity) - 1),
-            Self::PairCoupling { k, .. } => (k.twice(), 1),
-            Self::Jj { core, outer, .. } => (core.twice(), outer.twice()),
-            Self::Unknown(_) => return Vec::new(),
-        };
-        (a.abs_diff(b)..=a + b)
-            .step_by(2)
-            .map(HalfInteger::from_twice)
-            .collect()
+            } => coupled(2 * u16::from(l), u16::from(multiplicity) - 1),
+            Self::PairCoupling { k, front, .. } => {
+                let mut allowed = coupled(k.twice(), 1);
+                if let Some(twice_spin) = front.and_then(multiplicity_less_one) {
+                    allowed.extend(coupled(k.twice(), twice_spin));
+                    allowed.sort_unstable();
+                    allowed.dedup();
+                }
+                allowed
+            }
+            Self::Jj { core, outer, .. } => coupled(core.twice(), outer.twice()),
+            Self::Unknown(_) => Vec::new(),
+        }
     }
+}
+
+/// All momenta from |a − b| to a + b in whole steps; arguments are twice the momenta.
+fn coupled(twice_a: u16, twice_b: u16) -> Vec<HalfInteger> {
+    (twice_a.abs_diff(twice_b)..=twice_a.saturating_add(twice_b))
+        .step_by(2)
+        .map(HalfInteger::from_twice)
+        .collect()
+}
+
+/// Twice the spin of a multiplicity: a whole number above 0, less one.
+fn multiplicity_less_one(front: HalfInteger) -> Option<u16> {
+    let whole = front.twice().is_multiple_of(2);
+    (whole && front.twice() > 0).then(|| front.twice() / 2 - 1)
 }
 
 /// `6D`, `a 6D`, `z7D` (multiplicity, letter), blanks optional.
@@ -111,20 +132,15 @@ fn read_ls(body: &str, odd: bool) -> Option<Term> {
     })
 }
 
-/// `2[3/2]` or `[3/2]`.
+/// `2[3/2]`, `[3/2]`, `1/2[3/2]` or `0[2]`.
 fn read_pair(body: &str, odd: bool) -> Option<Term> {
-    let (digits, rest) = body.split_once('[')?;
+    let (front, rest) = body.split_once('[')?;
     let k = HalfInteger::parse(rest.strip_suffix(']')?)?;
-    let digits = digits.trim();
-    let multiplicity = match digits {
+    let front = match front.trim() {
         "" => None,
-        _ => Some(digits.parse().ok().filter(|&m: &u8| m > 0)?),
+        front => Some(HalfInteger::parse(front)?),
     };
-    Some(Term::PairCoupling {
-        k,
-        multiplicity,
-        odd,
-    })
+    Some(Term::PairCoupling { k, front, odd })
 }
 
 /// `(2,1/2)`.
@@ -155,13 +171,9 @@ impl fmt::Display for Term {
                 let letter = L_LETTERS.get(usize::from(*l)).copied().unwrap_or(b'?');
                 write!(f, "{multiplicity}{}{}", char::from(letter), mark(odd))
             }
-            Self::PairCoupling {
-                k,
-                multiplicity,
-                odd,
-            } => {
-                if let Some(multiplicity) = multiplicity {
-                    write!(f, "{multiplicity}")?;
+            Self::PairCoupling { k, front, odd } => {
+                if let Some(front) = front {
+                    write!(f, "{front}")?;
                 }
                 write!(f, "[{k}]{}", mark(odd))
             }
