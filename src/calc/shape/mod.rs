@@ -24,6 +24,7 @@ pub use neutral::{
 };
 pub use pressure::{OuterElectron, PressureWidth, WidthMethod};
 pub use profile::{Profile, overlap};
+pub(crate) use quadrature::integrate;
 pub use stark::{hydrogen_stark, quadratic_stark};
 pub use voigt::Voigt;
 pub use widths::{
