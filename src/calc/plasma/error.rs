@@ -33,6 +33,17 @@ pub enum PlasmaError {
         /// The (lowered) series limit, cm⁻¹.
         limit_per_cm: Option<f64>,
     },
+    /// A line between levels that are not there, or not in order.
+    #[error(
+        "the line from level {upper} to level {lower} cannot be used: both levels must exist with \
+         positive weights, the upper one above the lower, and its rate must not be negative"
+    )]
+    BadTransition {
+        /// Index of the lower level.
+        lower: usize,
+        /// Index of the upper level.
+        upper: usize,
+    },
     /// A number of ionisation limits that does not fit the number of stages.
     #[error("stage {stage} has no ionisation energy: give it, or leave the stages above it out")]
     NoLimit {

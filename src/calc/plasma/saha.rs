@@ -79,7 +79,12 @@ pub fn ionisation_balance(
             log += ln_saha_ratio(*stage, next.partition, kt_per_cm)? - density.ln();
         }
     }
+    Ok(fractions(&logs))
+}
+
+/// Fractions that sum to 1 from logarithms of relative amounts.
+pub(super) fn fractions(logs: &[f64]) -> Vec<f64> {
     let top = logs.iter().copied().fold(f64::NEG_INFINITY, f64::max);
     let total: f64 = logs.iter().map(|l| (l - top).exp()).sum();
-    Ok(logs.iter().map(|l| (l - top).exp() / total).collect())
+    logs.iter().map(|l| (l - top).exp() / total).collect()
 }
