@@ -3,7 +3,7 @@
 use std::sync::OnceLock;
 
 use super::Species;
-use super::element::element;
+use super::element::element_by_symbol;
 use super::isotope::{isotope, mass_u};
 use crate::light::constants::ELECTRON_MASS_U;
 
@@ -88,13 +88,25 @@ fn leading_isotope(mixture: Species) -> Species {
 
 fn reports() -> &'static [Report] {
     static REPORTS: OnceLock<Vec<Report>> = OnceLock::new();
-    REPORTS.get_or_init(|| TABLE.lines().skip(1).filter_map(read_row).collect())
+    REPORTS.get_or_init(|| {
+        let mut symbol = "";
+        let mut atomic_number = None;
+        let read = |row: &'static str| {
+            let (element, rest) = row.split_once(',')?;
+            // Rows of one element stand together: each symbol is looked up once.
+            if element != symbol {
+                symbol = element;
+                atomic_number = element_by_symbol(symbol).map(|e| e.atomic_number);
+            }
+            read_row(atomic_number?, rest)
+        };
+        TABLE.lines().skip(1).filter_map(read).collect()
+    })
 }
 
-fn read_row(row: &'static str) -> Option<Report> {
+fn read_row(atomic_number: u8, row: &'static str) -> Option<Report> {
     let fields: Vec<&'static str> = row.split(',').collect();
     let &[
-        symbol,
         isotope,
         stage,
         energy,
@@ -108,7 +120,7 @@ fn read_row(row: &'static str) -> Option<Report> {
         return None;
     };
     let species = Species {
-        atomic_number: super::element_by_symbol(symbol)?.atomic_number,
+        atomic_number,
         stage: stage.parse().ok()?,
         isotope: isotope.parse().ok(),
     };
@@ -123,6 +135,5 @@ fn read_row(row: &'static str) -> Option<Report> {
         },
         source,
     };
-    element(species.atomic_number)?;
     refused.is_empty().then_some(Report { species, limit })
 }

@@ -23,6 +23,8 @@ pub use limit::{Limit, LimitUncertainty, limit, limit_reports};
 pub use one_electron::OneElectronLabel;
 pub use request::{SpeciesRequest, Stages};
 pub use roman::{from_roman, to_roman};
-pub use selection::{DipoleClass, dipole_class};
+pub use selection::{
+    DipoleClass, dipole_class, electric_quadrupole_allowed, magnetic_dipole_allowed,
+};
 pub use species::Species;
 pub use term::Term;

@@ -52,8 +52,7 @@ fn symbols() -> impl Iterator<Item = Symbol> {
 
 /// Splits the element off, as typed or else in any case.
 fn split_symbol<'a>(text: &str, rest: &'a str) -> Result<(Symbol, &'a str), SpeciesError> {
-    let mut exact: Vec<_> = readings(rest, str::starts_with).collect();
-    exact.sort_by_key(|(symbol, _)| std::cmp::Reverse(symbol.text.len()));
+    let exact = exact_readings(rest);
     let fitting = exact.iter().find(|(_, tail)| is_stage_like(tail, false));
     if let Some(&found) = fitting {
         return Ok(found);
@@ -77,7 +76,17 @@ fn split_symbol<'a>(text: &str, rest: &'a str) -> Result<(Symbol, &'a str), Spec
     }
 }
 
-/// Every way to take a symbol off the front, with what follows.
+/// The symbols that stand in front as typed, with what follows; the longer one first.
+fn exact_readings(rest: &str) -> Vec<(Symbol, &str)> {
+    let taken = |length: usize| {
+        let (front, tail) = rest.split_at_checked(length)?;
+        let symbol = symbols().find(|symbol| symbol.text == front)?;
+        Some((symbol, tail))
+    };
+    [2, 1].into_iter().filter_map(taken).collect()
+}
+
+/// Every way to take a symbol off the front in any case, with what follows.
 fn readings<'a>(
     rest: &'a str,
     begins: impl Fn(&'a str, &'static str) -> bool,

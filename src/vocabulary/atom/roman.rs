@@ -26,5 +26,14 @@ pub fn to_roman(mut number: u8) -> String {
 
 /// Reads a stage in its one correct spelling (`IV`, never `IIII`), 1–118; `None` for all else.
 pub fn from_roman(text: &str) -> Option<u8> {
-    (1..=118).find(|&number| to_roman(number) == text)
+    let mut number = 0_u8;
+    let mut rest = text;
+    for (value, letters) in PARTS {
+        while let Some(after) = rest.strip_prefix(letters) {
+            number = number.checked_add(value)?;
+            rest = after;
+        }
+    }
+    let whole = rest.is_empty() && (1..=118).contains(&number);
+    (whole && to_roman(number) == text).then_some(number)
 }

@@ -47,10 +47,35 @@ pub fn dipole_class(
     }
 }
 
+/// Whether a magnetic dipole transition is allowed by the strict rules: same parity, ΔJ = 0 or ±1,
+/// not 0–0. `None` where a term does not show its parity.
+pub fn magnetic_dipole_allowed(
+    one: (&Term, HalfInteger),
+    other: (&Term, HalfInteger),
+) -> Option<bool> {
+    Some(one.0.parity()? == other.0.parity()? && triangle(one.1.twice(), other.1.twice()))
+}
+
+/// Whether an electric quadrupole transition is allowed by the strict rules: same parity,
+/// |ΔJ| ≤ 2 ≤ J + J′. `None` where a term does not show its parity.
+pub fn electric_quadrupole_allowed(
+    one: (&Term, HalfInteger),
+    other: (&Term, HalfInteger),
+) -> Option<bool> {
+    let same_parity = one.0.parity()? == other.0.parity()?;
+    Some(same_parity && photon_triangle(one.1.twice(), other.1.twice(), 2))
+}
+
 /// Whether two momenta (given twice) and a photon's one unit can form a triangle.
 fn triangle(twice_a: u16, twice_b: u16) -> bool {
+    photon_triangle(twice_a, twice_b, 1)
+}
+
+/// The same for a photon that carries `units` of momentum.
+fn photon_triangle(twice_a: u16, twice_b: u16, units: u16) -> bool {
     let step = twice_a.abs_diff(twice_b);
-    (step == 0 || step == 2) && twice_a + twice_b >= 2
+    let sum = twice_a.saturating_add(twice_b);
+    step.is_multiple_of(2) && step <= 2 * units && sum >= 2 * units
 }
 
 fn ls(term: &Term) -> Option<(u8, u8)> {

@@ -115,5 +115,5 @@ pub enum QuantityError {
 }
 
 fn did_you_mean(suggestion: &Option<&'static str>) -> String {
-    suggestion.map_or_else(String::new, |unit| format!("; did you mean {unit}?"))
+    suggestion.map_or_else(String::new, |unit| format!(" (did you mean {unit}?)"))
 }

@@ -1,6 +1,7 @@
 //! Properties: what is shown is read again, and conversions come back.
 
 use proptest::prelude::*;
+use proptest::test_runner::FileFailurePersistence;
 use vocabulary::atom::{Species, SpeciesRequest, Stages, isotopes};
 use vocabulary::light::{
     Air, AirConditions, Conversion, Medium, SpectralQuantity, SpectralUnit, TypedRange,
@@ -34,8 +35,16 @@ fn any_unit() -> impl Strategy<Value = SpectralUnit> {
     prop::sample::select(SpectralUnit::all().collect::<Vec<_>>())
 }
 
+/// Failing seeds are kept in `regressions` beside the tests.
+fn kept_seeds() -> ProptestConfig {
+    ProptestConfig {
+        failure_persistence: Some(Box::new(FileFailurePersistence::WithSource("regressions"))),
+        ..ProptestConfig::default()
+    }
+}
+
 proptest! {
-    #![proptest_config(ProptestConfig { failure_persistence: None, ..ProptestConfig::default() })]
+    #![proptest_config(kept_seeds())]
 
     /// A shown request is read as itself, with and without its blank, and in a list.
     #[test]

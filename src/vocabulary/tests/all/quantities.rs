@@ -162,7 +162,7 @@ fn each_range_error_is_one_sentence_that_helps() {
         ),
         (
             "656..657nM",
-            "`657nM`: `nM` is no unit of a spectral position; did you mean nm?; write nm, A, um, pm, cm-1, meV, eV, keV or Hz to PHz",
+            "`657nM`: `nM` is no unit of a spectral position (did you mean nm?); write nm, A, um, pm, cm-1, meV, eV, keV or Hz to PHz",
         ),
         (
             "656..657furlong",
@@ -259,7 +259,7 @@ fn temperatures_and_densities_need_their_unit() {
     assert_eq!(wrong("-1eV"), "`-1eV`: a temperature must be above zero");
     assert_eq!(
         wrong("1EV"),
-        "`1EV`: `EV` is no unit of a temperature; did you mean eV?; write K, meV, eV or keV"
+        "`1EV`: `EV` is no unit of a temperature (did you mean eV?); write K, meV, eV or keV"
     );
     assert_eq!(
         wrong("NaN"),

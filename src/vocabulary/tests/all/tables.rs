@@ -219,6 +219,7 @@ fn every_row_of_the_limits_is_held_or_refused() {
 
 #[test]
 fn limits_rise_with_the_stage() {
+    let mut checked = 0;
     for element in elements() {
         let stages = 1..=element.atomic_number;
         let limits: Vec<f64> = stages
@@ -226,7 +227,11 @@ fn limits_rise_with_the_stage() {
             .map(|limit| limit.energy_per_cm)
             .collect();
         assert!(limits.is_sorted(), "{}: {limits:?}", element.symbol);
+        checked += limits.len();
     }
+    // 266 of the newer set, and of the 348 older ones of natural species the 127 that it lacks
+    // less the two refused.
+    assert_eq!(checked, 391);
 }
 
 #[test]

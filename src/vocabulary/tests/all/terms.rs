@@ -2,7 +2,7 @@
 
 use vocabulary::atom::{
     Configuration, DipoleClass, HalfInteger, OneElectronLabel, OuterElectron, Term, dipole_class,
-    orbital_letter, orbital_number,
+    electric_quadrupole_allowed, magnetic_dipole_allowed, orbital_letter, orbital_number,
 };
 use vocabulary::spectrum::Parity;
 
@@ -109,6 +109,28 @@ fn known_lines_fall_into_their_classes() {
     let (s, p) = (Term::parse("2S"), Term::parse("2Po"));
     assert_eq!(dipole_class((&s, None), (&p, None)), Some(Allowed));
     assert_eq!(dipole_class((&p, None), (&s, None)), Some(Allowed));
+}
+
+#[test]
+fn forbidden_lines_of_nebulae_have_their_multipoles() {
+    let both = |a: &str, ja: &str, b: &str, jb: &str| {
+        let (a, b) = (Term::parse(a), Term::parse(b));
+        let (a, b) = ((&a, half(ja)), (&b, half(jb)));
+        (
+            magnetic_dipole_allowed(a, b),
+            electric_quadrupole_allowed(a, b),
+        )
+    };
+    // Common practice: [O III] 500.7 nm is M1 (and E2), 436.3 nm E2 only, 493.1 nm E2 only,
+    // [S II] 673.1 nm both; 0-0 and Na D neither.
+    assert_eq!(both("3P", "2", "1D", "2"), (Some(true), Some(true)));
+    assert_eq!(both("1D", "2", "1S", "0"), (Some(false), Some(true)));
+    assert_eq!(both("3P", "0", "1D", "2"), (Some(false), Some(true)));
+    assert_eq!(both("4So", "3/2", "2Do", "3/2"), (Some(true), Some(true)));
+    assert_eq!(both("3P", "0", "1S", "0"), (Some(false), Some(false)));
+    assert_eq!(both("2P", "1/2", "2P", "1/2"), (Some(true), Some(false)));
+    assert_eq!(both("2S", "1/2", "2Po", "3/2"), (Some(false), Some(false)));
+    assert_eq!(both("?", "1/2", "2Po", "3/2"), (None, None));
 }
 
 #[test]
