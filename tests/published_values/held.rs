@@ -1,7 +1,7 @@
 //! The lines that the bundled tables hold, as positions, upper levels and rates.
 
 use std::collections::HashMap;
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::sync::OnceLock;
 
 use super::printed::Row;
@@ -42,8 +42,7 @@ fn read() -> HashMap<String, Vec<HeldLine>> {
     let mut held: HashMap<String, Vec<HeldLine>> = HashMap::new();
     for folder in std::fs::read_dir(data).unwrap() {
         let folder = folder.unwrap().path();
-        // Single isotopes are species of their own.
-        if folder.ends_with("resonance-lines") || !folder.join("lines.csv").is_file() {
+        if !is_compared(&folder) {
             continue;
         }
         let mut reader = csv::Reader::from_path(folder.join("lines.csv")).unwrap();
@@ -59,6 +58,14 @@ fn read() -> HashMap<String, Vec<HeldLine>> {
         lines.sort_by(|one, other| one.wavenumber_per_cm.total_cmp(&other.wavenumber_per_cm));
     }
     held
+}
+
+/// The tables whose positions are their own: the two papers of resonance lines and the entered ions. The others repeat
+/// levels of these at lower accuracy, and single isotopes are species of their own.
+fn is_compared(folder: &Path) -> bool {
+    let name = folder.file_name().unwrap().to_str().unwrap();
+    (name.starts_with("morton") || name.starts_with("curated-"))
+        && folder.join("lines.csv").is_file()
 }
 
 fn optional(row: &Row, column: &str) -> Option<f64> {

@@ -3,6 +3,7 @@
 //! `decisions.csv` with the reason, and nothing is passed over: every test counts what it compared.
 #![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
 
+mod bench;
 mod held;
 mod lamps;
 mod laser;
