@@ -182,6 +182,10 @@ fn a_partition_function_says_when_it_is_a_lower_bound() {
     assert!(of(&ground, None).is_lower_bound());
     let cold = partition_function(ground, Some(RYDBERG_PER_CM), 0, isolated(0.3)).unwrap();
     assert!(!cold.is_lower_bound());
+    // A heavy atom of which eight levels are held: none above them matters, but those between may.
+    let heavy: Vec<_> = (0..8).map(|k| (6000.0 * f64::from(k), 7.0)).collect();
+    let thin = partition_function(heavy, Some(63_428.0), 0, isolated(0.6)).unwrap();
+    assert!(thin.missing_fraction.unwrap() < 0.01 && thin.is_lower_bound());
 }
 
 #[test]

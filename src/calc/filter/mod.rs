@@ -9,7 +9,7 @@ mod detector;
 mod error;
 mod passband;
 
-pub use cone::{Illumination, tilt_ratio};
+pub use cone::{Illumination, Rays, tilt_ratio};
 pub use curve::{CurveUnit, SpectralCurve};
 pub use detector::Detector;
 pub use error::FilterError;

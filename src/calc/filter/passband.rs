@@ -1,8 +1,9 @@
 //! Filters: a passband, what blocks the rest, and how both move.
 
 use std::f64::consts::LN_2;
+use std::sync::Arc;
 
-use super::cone::Illumination;
+use super::cone::{Illumination, Rays};
 use super::curve::SpectralCurve;
 use super::error::{FilterError, inside};
 use crate::calc::shape::{LineWidths, ShapeError, Voigt, integrate};
@@ -180,17 +181,32 @@ impl Filter {
     /// # Errors
     /// An angle beyond total reflection, an f-number of 0.5 or less, a temperature that is no number.
     pub fn seen(&self, light: Illumination) -> Result<SeenFilter<'_>, FilterError> {
+        self.behind(&Rays::new(light, self.effective_index)?, light.warming_k)
+    }
+
+    /// The filter behind rays that were made for its effective index, warmed by so many kelvin.
+    ///
+    /// # Errors
+    /// A temperature difference beyond ±1000 K.
+    pub fn behind(&self, rays: &Rays, warming_k: f64) -> Result<SeenFilter<'_>, FilterError> {
         let warming_k = inside(
             "the warming in K",
-            light.warming_k,
+            warming_k,
             (-1000.0, 1000.0),
             "between -1000 and 1000",
         )?;
+        // Rays that differ by 1/1000 of the width are one ray.
+        let ratios = rays.merged(1e-3 * self.fwhm_nm / self.centre_nm);
         Ok(SeenFilter {
             filter: self,
-            ratios: light.ratios(self.effective_index)?,
+            ratios,
             drift_nm: self.drift_nm_per_k * warming_k,
         })
+    }
+
+    /// Effective index for tilt.
+    pub fn effective_index(&self) -> f64 {
+        self.effective_index
     }
 
     /// Transmission of one ray, at the wavelength that it would have at normal incidence.
@@ -209,7 +225,7 @@ impl Filter {
 #[derive(Clone, Debug)]
 pub struct SeenFilter<'a> {
     filter: &'a Filter,
-    ratios: Vec<f64>,
+    ratios: Arc<[f64]>,
     drift_nm: f64,
 }
 
@@ -227,7 +243,7 @@ impl SeenFilter<'_> {
             None => None,
         };
         let mut sum = 0.0;
-        for ratio in &self.ratios {
+        for ratio in self.ratios.iter() {
             let there = self.filter.head_on((wavelength_nm - self.drift_nm) / ratio);
             sum += there.or(floor)?;
         }

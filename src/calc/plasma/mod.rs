@@ -15,6 +15,7 @@ mod ionisation;
 mod lowering;
 mod partition;
 mod saha;
+mod stage;
 
 pub use boltzmann::{boltzmann_ratio, kt_per_cm_from_ev, kt_per_cm_from_kelvin};
 pub use continuum::{free_free_gaunt, free_free_w_per_m3_sr_nm};
@@ -31,3 +32,4 @@ pub use ionisation::{
 pub use lowering::{debye_length_m, lowering_per_cm};
 pub use partition::{Partition, Plasma, partition_function, planck_larkin};
 pub use saha::{Stage, ionisation_balance, ln_saha_ratio, saha_ratio};
+pub use stage::{OuterSubshell, StageRates, outer_subshell, stage_rates};

@@ -18,8 +18,9 @@ pub struct Plasma {
 /// and w the Planck–Larkin factor ([`planck_larkin`]); without a limit w = 1.
 ///
 /// `value` is a lower bound: levels that are not held would add to it. `missing_fraction` says by how
-/// much, if above the highest held level the levels of a hydrogen-like series with 2 n² states each
-/// are missing; it is `None` where no limit is known.
+/// much, if above the highest held level the shells of a hydrogen-like series with 2 n² states each
+/// are missing (`None` where no limit is known); nothing can say how many are missing *between* the
+/// held ones, so an ion of which few levels are held is called a lower bound as soon as they count.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Partition {
     /// U, dimensionless.
@@ -32,13 +33,17 @@ pub struct Partition {
     pub levels_used: usize,
     /// Levels at or above the limit, which were not.
     pub levels_beyond: usize,
-    /// What levels that are not held may add, over `value`.
+    /// What levels above the highest held one may add, over `value`.
     pub missing_fraction: Option<f64>,
+    /// The part of `value` from levels above a tenth of the series limit (`None` without one).
+    pub excited_fraction: Option<f64>,
     kt_per_cm: f64,
 }
 
-/// `missing_fraction` from which an answer calls U a lower bound.
+/// A part of U from which it is worth saying something.
 const WORTH_SAYING: f64 = 0.01;
+/// Fewer levels than this are few: even one-electron ions have 30 up to n = 5.
+const FEW_LEVELS: usize = 30;
 
 impl Partition {
     /// Fraction of the species' atoms in a level of this energy (cm⁻¹) and weight.
@@ -47,9 +52,13 @@ impl Partition {
     }
 
     /// Whether levels that are not held may raise U by more than 1 %, or nobody can tell: then
-    /// an answer says that U is a lower bound, and that populations are upper bounds.
+    /// an answer says that U is a lower bound, and that populations are upper bounds. True when shells
+    /// above the held levels may add 1 %, when fewer than 30 levels are held and
+    /// the excited ones make up 1 % of U, and when no series limit is known.
     pub fn is_lower_bound(&self) -> bool {
-        self.missing_fraction.is_none_or(|f| f > WORTH_SAYING)
+        let counts = |part: Option<f64>| part.is_none_or(|f| f > WORTH_SAYING);
+        counts(self.missing_fraction)
+            || (self.levels_used < FEW_LEVELS && counts(self.excited_fraction))
     }
 }
 
@@ -124,6 +133,7 @@ pub fn partition_function(
         levels_used: sum.used,
         levels_beyond: sum.beyond,
         missing_fraction: missing.map(|m| m / sum.value),
+        excited_fraction: limit.map(|_| sum.excited / sum.value),
         kt_per_cm,
     })
 }
@@ -131,6 +141,7 @@ pub fn partition_function(
 #[derive(Default)]
 struct Sum {
     value: f64,
+    excited: f64,
     used: usize,
     beyond: usize,
     highest_per_cm: f64,
@@ -143,7 +154,11 @@ impl Sum {
             return;
         }
         self.used += 1;
-        self.value += term(energy_per_cm, weight, limit, kt_per_cm);
+        let term = term(energy_per_cm, weight, limit, kt_per_cm);
+        self.value += term;
+        if limit.is_some_and(|l| energy_per_cm > 0.1 * l) {
+            self.excited += term;
+        }
         self.highest_per_cm = self.highest_per_cm.max(energy_per_cm);
     }
 }
