@@ -20,7 +20,7 @@ pub struct AirConditions {
     pub temperature_celsius: f64,
     /// Pressure, Pa; above 0, to 140 000 (published from 80 000 to 120 000, good below).
     pub pressure_pa: f64,
-    /// Relative humidity, 0 to 1.
+    /// Relative humidity, 0 to 1, with respect to liquid water also below 0 °C.
     pub relative_humidity: f64,
     /// Carbon dioxide, parts per million by volume, 0 to 2000.
     pub co2_ppm: f64,
@@ -70,6 +70,19 @@ pub enum AirError {
         /// Upper bound.
         high: f64,
     },
+    /// More water vapour than the pressure leaves room for.
+    #[error(
+        "a relative humidity of {humidity_percent} % at {temperature_celsius} °C is more water \
+         vapour than a pressure of {pressure_pa} Pa holds; lower the humidity or the temperature"
+    )]
+    VapourAbovePressure {
+        /// Relative humidity, %.
+        humidity_percent: f64,
+        /// Temperature, °C.
+        temperature_celsius: f64,
+        /// Pressure, Pa.
+        pressure_pa: f64,
+    },
 }
 
 /// The index of air at one wavelength.
@@ -111,7 +124,8 @@ impl Air {
     /// Air of another state.
     ///
     /// # Errors
-    /// Conditions outside the bounds that [`AirConditions`] names, or that are no number.
+    /// Conditions outside the bounds that [`AirConditions`] names, or that are no number; more water
+    /// vapour than the pressure leaves room for.
     pub fn new(conditions: AirConditions) -> Result<Self, AirError> {
         let AirConditions {
             temperature_celsius,
@@ -135,6 +149,13 @@ impl Air {
             100.0,
         )?;
         within("a CO2 content", co2_ppm, "ppm", 0.0, 2000.0)?;
+        if vapour_share(&conditions) > 1.0 {
+            return Err(AirError::VapourAbovePressure {
+                humidity_percent: 100.0 * relative_humidity,
+                temperature_celsius,
+                pressure_pa,
+            });
+        }
         Ok(Self::from_sound(conditions))
     }
 
@@ -281,7 +302,7 @@ fn vapour_share(conditions: &AirConditions) -> f64 {
         .exp();
     let enhancement = 1.000_62 + 3.14e-8 * conditions.pressure_pa + 5.6e-7 * celsius * celsius;
     let vapour_pa = enhancement * conditions.relative_humidity * saturation_pa;
-    (vapour_pa / conditions.pressure_pa).min(1.0)
+    vapour_pa / conditions.pressure_pa
 }
 
 /// Compressibility of moist air with a molar share of water vapour (Appendix A, Eq. 12; Davis 1992).

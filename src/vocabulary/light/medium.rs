@@ -4,7 +4,7 @@ use std::fmt;
 use std::ops::RangeInclusive;
 use std::str::FromStr;
 
-use super::QuantityError;
+use super::{Air, AirError, QuantityError};
 
 /// Wavelengths that `auto` takes to be in air, nm.
 pub const AUTO_AIR_NM: RangeInclusive<f64> = 200.0..=2000.0;
@@ -30,7 +30,38 @@ pub enum PositionMedium {
     Air,
 }
 
+/// A position as an answer shows it.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct ShownPosition {
+    /// Wavelength in `medium`, nm.
+    pub nm: f64,
+    /// The medium of the wavelength.
+    pub medium: PositionMedium,
+    /// The index of air was extrapolated (outside 300–1690 nm).
+    pub air_extrapolated: bool,
+}
+
 impl Medium {
+    /// A line of this vacuum wavelength (nm) as an answer shows it.
+    ///
+    /// # Errors
+    /// Air is asked for where its index is not known (outside 185–2500 nm).
+    pub fn show(self, vacuum_nm: f64, air: &Air) -> Result<ShownPosition, AirError> {
+        let medium = self.of_vacuum_nm(vacuum_nm);
+        let (nm, air_extrapolated) = match medium {
+            PositionMedium::Vacuum => (vacuum_nm, false),
+            PositionMedium::Air => {
+                let found = air.to_air_nm(vacuum_nm)?;
+                (found.nm, found.extrapolated)
+            }
+        };
+        Ok(ShownPosition {
+            nm,
+            medium,
+            air_extrapolated,
+        })
+    }
+
     /// The medium in which a line of this vacuum wavelength (nm) is shown: under `auto`, air where
     /// the vacuum wavelength lies from 200 nm to 2000 nm.
     pub fn of_vacuum_nm(self, vacuum_nm: f64) -> PositionMedium {

@@ -20,7 +20,7 @@ pub use air::{
 pub use conditions::{NumberDensity, Temperature};
 pub use convert::{Conversion, photoelectric_threshold_nm};
 pub use error::QuantityError;
-pub use medium::{AUTO_AIR_NM, Medium, PositionMedium};
+pub use medium::{AUTO_AIR_NM, Medium, PositionMedium, ShownPosition};
 pub use quantity::SpectralQuantity;
 pub use range::{SpectralRange, TypedRange};
 pub use unit::{SpectralKind, SpectralUnit};

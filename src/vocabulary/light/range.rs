@@ -188,10 +188,7 @@ fn from_wavenumber(
         return SpectralQuantity::new(wavenumber_per_cm / unit.size(), unit);
     }
     let vacuum_nm = 1e7 / wavenumber_per_cm;
-    let nm = match medium.of_vacuum_nm(vacuum_nm) {
-        PositionMedium::Vacuum => vacuum_nm,
-        PositionMedium::Air => air.to_air_nm(vacuum_nm)?.nm,
-    };
+    let nm = medium.show(vacuum_nm, air)?.nm;
     SpectralQuantity::new(nm / unit.size(), unit)
 }
 

@@ -201,4 +201,14 @@ fn bounds_are_flagged_or_refused() {
         })
         .is_err()
     );
+    assert_eq!(
+        refused(AirConditions {
+            temperature_celsius: 50.0,
+            pressure_pa: 5000.0,
+            relative_humidity: 0.5,
+            ..standard
+        }),
+        "a relative humidity of 50 % at 50 °C is more water vapour than a pressure of 5000 Pa \
+         holds; lower the humidity or the temperature"
+    );
 }

@@ -107,6 +107,16 @@ fn ranges_are_read_in_all_forms() {
     let around = vacuum("500nm+-10cm-1");
     assert!(close(around.wavenumber_low_per_cm, 19_990.0));
     assert!(close(around.wavenumber_high_per_cm, 20_010.0));
+    let around = vacuum("20000cm-1+-1nm");
+    assert!(close(around.vacuum_low_nm, 499.0) && close(around.vacuum_high_nm, 501.0));
+    let in_air = range("20000cm-1+-1nm", Medium::Auto).unwrap();
+    assert_eq!(in_air.read_in, Some(PositionMedium::Air));
+    // 2 nm of air are 2 nm times n = 1.00028 of vacuum.
+    assert!(
+        (in_air.width_nm() - 2.000_56).abs() < 1e-4,
+        "{}",
+        in_air.width_nm()
+    );
 }
 
 #[test]
@@ -274,6 +284,27 @@ fn temperatures_and_densities_need_their_unit() {
         wrong("1e20km-3"),
         "`1e20km-3`: `km-3` is no unit of a density; write m-3 or cm-3"
     );
+}
+
+#[test]
+fn lines_are_shown_in_the_medium_that_was_asked_for() {
+    let shown = |medium: Medium, nm: f64| medium.show(nm, Air::standard());
+    let sodium = shown(Medium::Auto, 589.158_33).unwrap();
+    // Na D2 stands at 588.9950 nm in air (common practice).
+    assert!((sodium.nm - 588.995_0).abs() < 1.5e-4, "{}", sodium.nm);
+    assert_eq!(sodium.medium, PositionMedium::Air);
+    assert!(!sodium.air_extrapolated);
+    assert!(shown(Medium::Auto, 250.0).unwrap().air_extrapolated);
+    for (medium, nm) in [
+        (Medium::Auto, 121.567),
+        (Medium::Vacuum, 589.0),
+        (Medium::Auto, 2058.7),
+    ] {
+        let line = shown(medium, nm).unwrap();
+        assert_eq!((line.nm, line.medium), (nm, PositionMedium::Vacuum));
+    }
+    assert!(shown(Medium::Air, 121.567).is_err());
+    assert!(shown(Medium::Auto, f64::NAN).unwrap().nm.is_nan());
 }
 
 #[test]
