@@ -2,4 +2,5 @@
 
 pub mod filter;
 pub mod plasma;
+pub mod series;
 pub mod shape;

@@ -1,0 +1,96 @@
+//! Small dense symmetric systems: the normal equations of a fit with a handful of parameters.
+
+/// A symmetric matrix, row by row.
+pub(super) type Matrix = Vec<Vec<f64>>;
+
+/// Inverse of a positive definite matrix by Cholesky decomposition, after scaling its diagonal
+/// to one; `None` when it is not positive definite to working accuracy.
+pub(super) fn inverse(matrix: &Matrix) -> Option<Matrix> {
+    let size = matrix.len();
+    let scale: Vec<f64> = (0..size).map(|i| matrix[i][i].sqrt()).collect();
+    if scale.iter().any(|s| !s.is_finite() || *s <= 0.0) {
+        return None;
+    }
+    let factor = cholesky(matrix, &scale)?;
+    let mut result = vec![vec![0.0; size]; size];
+    for column in 0..size {
+        let mut unit = vec![0.0; size];
+        unit[column] = 1.0;
+        let solved = solve(&factor, unit);
+        for row in 0..size {
+            result[row][column] = solved[row] / (scale[row] * scale[column]);
+        }
+    }
+    Some(result)
+}
+
+fn cholesky(matrix: &Matrix, scale: &[f64]) -> Option<Matrix> {
+    let size = matrix.len();
+    let mut factor = vec![vec![0.0; size]; size];
+    for i in 0..size {
+        for j in 0..=i {
+            let known: f64 = (0..j).map(|k| factor[i][k] * factor[j][k]).sum();
+            let rest = matrix[i][j] / (scale[i] * scale[j]) - known;
+            if i == j {
+                // Below this the parameters cannot be told apart in double precision.
+                if rest.is_nan() || rest <= 1e-14 {
+                    return None;
+                }
+                factor[i][i] = rest.sqrt();
+            } else {
+                factor[i][j] = rest / factor[j][j];
+            }
+        }
+    }
+    Some(factor)
+}
+
+fn solve(factor: &Matrix, mut vector: Vec<f64>) -> Vec<f64> {
+    let size = factor.len();
+    for i in 0..size {
+        let known: f64 = (0..i).map(|k| factor[i][k] * vector[k]).sum();
+        vector[i] = (vector[i] - known) / factor[i][i];
+    }
+    for i in (0..size).rev() {
+        let known: f64 = (i + 1..size).map(|k| factor[k][i] * vector[k]).sum();
+        vector[i] = (vector[i] - known) / factor[i][i];
+    }
+    vector
+}
+
+/// Product of a matrix and a vector.
+pub(super) fn times(matrix: &Matrix, vector: &[f64]) -> Vec<f64> {
+    matrix.iter().map(|row| dot(row, vector)).collect()
+}
+
+/// Scalar product.
+pub(super) fn dot(left: &[f64], right: &[f64]) -> f64 {
+    left.iter().zip(right).map(|(a, b)| a * b).sum()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn inverse_of_a_hilbert_block() {
+        // Inverse of the 3 × 3 Hilbert matrix: whole numbers (Hilbert 1894, Acta Math. 18, 155).
+        let hilbert: Matrix = (0..3)
+            .map(|i| (0..3).map(|j| 1.0 / f64::from(i + j + 1)).collect())
+            .collect();
+        let found = inverse(&hilbert).unwrap();
+        let expected = [[9.0, -36.0, 30.0], [-36.0, 192.0, -180.0], [30.0, -180.0, 180.0]];
+        for (row, wanted) in found.iter().zip(expected) {
+            for (value, want) in row.iter().zip(wanted) {
+                // Condition number 524: eleven digits are left of sixteen, with room.
+                assert!((value - want).abs() < 1e-9 * want.abs(), "{value} {want}");
+            }
+        }
+    }
+
+    #[test]
+    fn a_singular_matrix_is_refused() {
+        assert_eq!(inverse(&vec![vec![1.0, 1.0], vec![1.0, 1.0]]), None);
+        assert_eq!(inverse(&vec![vec![f64::NAN]]), None);
+    }
+}
