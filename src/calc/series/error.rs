@@ -43,7 +43,9 @@ pub enum SeriesError {
         core: String,
     },
     /// A prediction below the lowest member of the series.
-    #[error("n = {n} lies below the lowest member n = {lowest} of the series: ask for n ≥ {lowest}")]
+    #[error(
+        "n = {n} lies below the lowest member n = {lowest} of the series: ask for n ≥ {lowest}"
+    )]
     BelowLowest {
         /// What was asked for.
         n: u32,

@@ -1,7 +1,8 @@
 //! The weighted Rydberg–Ritz fit.
 
-use super::input::LEAST_SIGMA_PER_CM;
-use super::linear::{Matrix, dot, inverse, times};
+use super::linear::{Matrix, dot, times};
+use super::ritz::{NeglectedTerms, Ritz};
+use super::solve::{Solution, best_order};
 use super::{Core, Limit, Member, SeriesError, SeriesInput};
 
 /// Most Ritz terms that are tried: δ₀, δ₂, δ₄, δ₆.
@@ -17,113 +18,6 @@ const REGULAR_RATIO: f64 = 1.5;
 const NEGLIGIBLE_TERM: f64 = 0.04;
 /// Largest scatter of the defects of a regular series.
 const MOST_SCATTER: f64 = 0.005;
-/// Rounds in which the scatter is adjusted.
-const SCATTER_ROUNDS: usize = 8;
-/// Iterations after which a fit counts as failed; regular series need four to eight.
-const MOST_ITERATIONS: usize = 40;
-
-/// Size of the Ritz terms that a fit leaves out, at its lowest member: the next term has the
-/// standard deviation `ratio` × the last kept (or `constant_share` × min(|δ₀|, `constant_cap`)
-/// when δ₀ alone was kept), never below `floor`; each further one is smaller by `ratio`.
-///
-/// The values were tuned on the first half of the series of `tests/series_withheld.rs`.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct NeglectedTerms {
-    /// Ratio of successive terms.
-    pub ratio: f64,
-    /// Least standard deviation of the defect.
-    pub floor: f64,
-    /// Share of δ₀ that the second term may have.
-    pub constant_share: f64,
-    /// Where that share stops to grow.
-    pub constant_cap: f64,
-    /// Scatter of the defect that levels of other configurations may bring about beyond the
-    /// members held.
-    pub unseen_scatter: f64,
-}
-
-impl NeglectedTerms {
-    /// The tuned sizes.
-    pub fn of_core(core: Core) -> Self {
-        Self {
-            ratio: match core {
-                Core::Rigid => 0.25,
-                Core::Soft => 0.5,
-            },
-            floor: 2e-6,
-            constant_share: 0.3,
-            constant_cap: 0.2,
-            unseen_scatter: match core {
-                Core::Rigid => 0.0,
-                Core::Soft => 5e-4,
-            },
-        }
-    }
-
-    /// Standard deviation of term `index` (0 is δ₀) at the lowest member, after a fit of `kept`.
-    fn deviation(&self, kept: &[f64], index: usize) -> f64 {
-        let last = kept.len() - 1;
-        let first_left_out = if last == 0 {
-            self.constant_share * kept[0].abs().min(self.constant_cap)
-        } else {
-            let lower = if last > 1 { kept[last - 1].abs() * self.ratio } else { 0.0 };
-            self.ratio * kept[last].abs().max(lower)
-        };
-        first_left_out.max(self.floor) * self.ratio.powi((index - kept.len()) as i32)
-    }
-}
-
-/// Ritz expansion with terms scaled to the lowest member: `δ(n) = Σ c_k (s/(n − c₀)²)^k`.
-#[derive(Clone, Debug, PartialEq)]
-pub(super) struct Ritz {
-    pub scaled: Vec<f64>,
-    pub scale: f64,
-    pub limit_per_cm: f64,
-    pub strength_per_cm: f64,
-}
-
-impl Ritz {
-    fn expansion(&self, n: f64) -> f64 {
-        self.scale / (n - self.scaled[0]).powi(2)
-    }
-
-    pub fn defect(&self, n: f64) -> f64 {
-        let x = self.expansion(n);
-        self.scaled.iter().rev().fold(0.0, |sum, c| sum * x + c)
-    }
-
-    pub fn energy_per_cm(&self, n: f64) -> f64 {
-        self.limit_per_cm - self.strength_per_cm / (n - self.defect(n)).powi(2)
-    }
-
-    /// dE/dδ at n, cm⁻¹.
-    pub fn stiffness_per_cm(&self, n: f64) -> f64 {
-        -2.0 * self.strength_per_cm / (n - self.defect(n)).powi(3)
-    }
-
-    /// Change of the energy with each scaled term and with the limit.
-    pub fn gradient(&self, n: f64) -> Vec<f64> {
-        let x = self.expansion(n);
-        let stiffness = self.stiffness_per_cm(n);
-        let mut power = 1.0;
-        let mut through_scale = 0.0;
-        let mut gradient = Vec::with_capacity(self.scaled.len() + 1);
-        for (k, c) in self.scaled.iter().enumerate() {
-            gradient.push(stiffness * power);
-            through_scale += k as f64 * c * power;
-            power *= x;
-        }
-        // x itself moves with c₀: dx/dc₀ = 2x/(n − c₀).
-        gradient[0] += stiffness * through_scale * 2.0 / (n - self.scaled[0]);
-        gradient.push(1.0);
-        gradient
-    }
-
-    /// Change of the energy with a term that was left out.
-    pub fn neglected(&self, n: f64, index: usize) -> f64 {
-        self.stiffness_per_cm(n) * self.expansion(n).powi(index as i32)
-    }
-}
 
 /// A fitted series.
 #[derive(Clone, Debug, PartialEq)]
@@ -170,7 +64,7 @@ pub struct SeriesFit {
 /// [`SeriesError`]: bad numbers, repeated n, l ≥ n, a member above the limit, too few members, a
 /// perturbed series, no convergence.
 pub fn fit(input: &SeriesInput) -> Result<SeriesFit, SeriesError> {
-    fit_with(input, NeglectedTerms::of_core(input.core))
+    fit_with(input, NeglectedTerms::of_series(input.core, input.l))
 }
 
 /// [`fit`] with another size of the neglected terms.
@@ -222,7 +116,9 @@ fn regular(fit: &SeriesFit) -> Result<(), SeriesError> {
         })
     };
     for k in 2..terms.len() {
-        let lower = terms[1..k].iter().fold(NEGLIGIBLE_TERM, |m, c| c.abs().max(m));
+        let lower = terms[1..k]
+            .iter()
+            .fold(NEGLIGIBLE_TERM, |m, c| c.abs().max(m));
         let ratio = terms[k].abs() / lower;
         if ratio > REGULAR_RATIO {
             return refuse(ratio);
@@ -254,262 +150,7 @@ fn worst(
         .max_by(|a, b| a.1.total_cmp(&b.1))
 }
 
-/// A member with the σ that the fit gives it.
-#[derive(Clone, Copy, Debug)]
-struct Datum {
-    n: f64,
-    energy_per_cm: f64,
-    sigma_per_cm: f64,
-}
-
-/// A solution of one order.
-struct Solution {
-    schwarz: f64,
-    ritz: Ritz,
-    covariance: Matrix,
-    chi_squared: f64,
-    scatter: f64,
-    data: Vec<Datum>,
-}
-
-/// Members needed, and members that must be left over beyond the Ritz terms.
-fn demands(input: &SeriesInput, members: usize) -> (usize, usize) {
-    match (input.core, input.limit) {
-        (Core::Rigid, Limit::Fixed { .. }) => (2, usize::from(members > 3)),
-        (Core::Rigid, Limit::Fitted { .. }) => (4, 2),
-        (Core::Soft, Limit::Fixed { .. }) => (4, 2),
-        (Core::Soft, Limit::Fitted { .. }) => (5, 3),
-    }
-}
-
-/// The order that Schwarz's criterion prefers.
-fn best_order(
-    input: &SeriesInput,
-    members: &[Member],
-    neglected: NeglectedTerms,
-) -> Result<SeriesFit, SeriesError> {
-    let (needed, spare) = demands(input, members.len());
-    if members.len() < needed {
-        return Err(SeriesError::TooFewMembers {
-            held: members.len(),
-            needed,
-        });
-    }
-    let most = (members.len() - spare).min(MOST_TERMS);
-    let solutions: Vec<Solution> = (1..=most)
-        .map_while(|terms| solve_order(input, members, terms))
-        .collect();
-    let information = solutions.iter().map(|solution| solution.schwarz).collect();
-    let best = solutions
-        .into_iter()
-        .min_by(|a, b| a.schwarz.total_cmp(&b.schwarz))
-        .ok_or(SeriesError::NoConvergence {
-            members: members.len(),
-        })?;
-    Ok(assemble(input, members, neglected, information, best))
-}
-
-/// Solves one order; for a soft core with the scatter of the defects that makes χ² = ν.
-fn solve_order(input: &SeriesInput, members: &[Member], terms: usize) -> Option<Solution> {
-    let data_count = members.len() + usize::from(matches!(input.limit, Limit::Fixed { .. }));
-    let freedom = data_count.saturating_sub(terms + 1) as f64;
-    let mut start = first_guess(input, members, terms)?;
-    let mut scatter = 0.0;
-    for _ in 0..SCATTER_ROUNDS {
-        let data = weighted(members, &start, scatter);
-        let (ritz, covariance, chi_squared) = converge(input, &data, start)?;
-        let excess = (chi_squared / freedom.max(1.0)).sqrt();
-        let settled = input.core == Core::Rigid || (excess < 1.02 && scatter == 0.0);
-        if settled || (excess - 1.0).abs() < 0.02 {
-            return Some(finish(members, scatter, (ritz, covariance, chi_squared, data)));
-        }
-        scatter = if scatter == 0.0 {
-            largest_residual(&data, &ritz)
-        } else {
-            scatter * excess.clamp(0.1, 10.0)
-        };
-        start = ritz;
-    }
-    let data = weighted(members, &start, scatter);
-    let (ritz, covariance, chi_squared) = converge(input, &data, start)?;
-    Some(finish(members, scatter, (ritz, covariance, chi_squared, data)))
-}
-
-fn finish(
-    members: &[Member],
-    scatter: f64,
-    (ritz, covariance, chi_squared, data): (Ritz, Matrix, f64, Vec<Datum>),
-) -> Solution {
-    // Without scatter Σ ln σ² is the same for every order, and drops out.
-    let spread: f64 = data
-        .iter()
-        .zip(members)
-        .map(|(datum, member)| 2.0 * (datum.sigma_per_cm / sigma_per_cm(member)).ln())
-        .sum();
-    Solution {
-        schwarz: chi_squared + spread + ritz.scaled.len() as f64 * (members.len() as f64).ln(),
-        ritz,
-        covariance,
-        chi_squared,
-        scatter,
-        data,
-    }
-}
-
-fn weighted(members: &[Member], ritz: &Ritz, scatter: f64) -> Vec<Datum> {
-    members
-        .iter()
-        .map(|member| {
-            let n = f64::from(member.n);
-            Datum {
-                n,
-                energy_per_cm: member.energy_per_cm,
-                sigma_per_cm: sigma_per_cm(member).hypot(ritz.stiffness_per_cm(n) * scatter),
-            }
-        })
-        .collect()
-}
-
-fn largest_residual(data: &[Datum], ritz: &Ritz) -> f64 {
-    data.iter()
-        .map(|datum| {
-            let missed = datum.energy_per_cm - ritz.energy_per_cm(datum.n);
-            (missed / ritz.stiffness_per_cm(datum.n)).abs()
-        })
-        .fold(1e-9, f64::max)
-}
-
-/// Where the iteration starts: an unweighted polynomial through the defects that the given
-/// limit yields, in powers of the reduced binding.
-fn first_guess(input: &SeriesInput, members: &[Member], terms: usize) -> Option<Ritz> {
-    let limit_per_cm = input.limit.given_per_cm();
-    let strength_per_cm = input.strength_per_cm();
-    let defects: Vec<(f64, f64)> = members
-        .iter()
-        .map(|member| {
-            let n = f64::from(member.n);
-            let binding = limit_per_cm - member.energy_per_cm;
-            (n, n - (strength_per_cm / binding).sqrt())
-        })
-        .collect();
-    let (lowest, first) = *defects.first()?;
-    let last = defects.last()?.1;
-    let mut ritz = Ritz {
-        scaled: vec![last; 1],
-        scale: (lowest - first).powi(2),
-        limit_per_cm,
-        strength_per_cm,
-    };
-    let mut normal = vec![vec![0.0; terms]; terms];
-    let mut right = vec![0.0; terms];
-    for (n, defect) in &defects {
-        let x = ritz.expansion(*n);
-        for i in 0..terms {
-            right[i] += x.powi(i as i32) * defect;
-            for j in 0..terms {
-                normal[i][j] += x.powi((i + j) as i32);
-            }
-        }
-    }
-    ritz.scaled = times(&inverse(&normal)?, &right);
-    Some(ritz)
-}
-
-/// Gauss–Newton iteration with step halving; returns the solution, its covariance and χ².
-fn converge(
-    input: &SeriesInput,
-    data: &[Datum],
-    mut ritz: Ritz,
-) -> Option<(Ritz, Matrix, f64)> {
-    let mut chi_squared = misfit(input, data, &ritz);
-    for _ in 0..MOST_ITERATIONS {
-        let (normal, right) = normal_equations(input, data, &ritz);
-        let covariance = inverse(&normal)?;
-        let step = times(&covariance, &right);
-        let expected = dot(&step, &right);
-        if expected < 1e-7 * (1.0 + chi_squared) {
-            return Some((ritz, covariance, chi_squared));
-        }
-        let (next, value) = damped(input, data, &ritz, &step, chi_squared)?;
-        ritz = next;
-        chi_squared = value;
-    }
-    None
-}
-
-/// The first of the steps 1, ½, ¼ … that lowers χ².
-fn damped(
-    input: &SeriesInput,
-    data: &[Datum],
-    ritz: &Ritz,
-    step: &[f64],
-    before: f64,
-) -> Option<(Ritz, f64)> {
-    let mut share = 1.0;
-    for _ in 0..30 {
-        let mut next = ritz.clone();
-        for (term, change) in next.scaled.iter_mut().zip(step) {
-            *term += share * change;
-        }
-        next.limit_per_cm += share * step[step.len() - 1];
-        let value = misfit(input, data, &next);
-        // Rounding of the energies moves χ² by about 1e-10 N even at the minimum.
-        if value.is_finite() && value <= before * (1.0 + 1e-12) + 1e-8 {
-            return Some((next, value));
-        }
-        share *= 0.5;
-    }
-    None
-}
-
-fn sigma_per_cm(member: &Member) -> f64 {
-    member.uncertainty_per_cm.max(LEAST_SIGMA_PER_CM)
-}
-
-fn misfit(input: &SeriesInput, data: &[Datum], ritz: &Ritz) -> f64 {
-    let levels: f64 = data
-        .iter()
-        .map(|datum| {
-            let model = ritz.energy_per_cm(datum.n);
-            ((datum.energy_per_cm - model) / datum.sigma_per_cm).powi(2)
-        })
-        .sum();
-    levels + limit_pull(input, ritz).powi(2)
-}
-
-fn limit_pull(input: &SeriesInput, ritz: &Ritz) -> f64 {
-    match input.limit {
-        Limit::Fixed { per_cm, sigma_per_cm } => {
-            (per_cm - ritz.limit_per_cm) / sigma_per_cm.max(LEAST_SIGMA_PER_CM)
-        }
-        Limit::Fitted { .. } => 0.0,
-    }
-}
-
-fn normal_equations(input: &SeriesInput, data: &[Datum], ritz: &Ritz) -> (Matrix, Vec<f64>) {
-    let size = ritz.scaled.len() + 1;
-    let mut normal = vec![vec![0.0; size]; size];
-    let mut right = vec![0.0; size];
-    for datum in data {
-        let gradient = ritz.gradient(datum.n);
-        let weight = datum.sigma_per_cm.powi(-2);
-        let residual = datum.energy_per_cm - ritz.energy_per_cm(datum.n);
-        for i in 0..size {
-            right[i] += weight * gradient[i] * residual;
-            for j in 0..size {
-                normal[i][j] += weight * gradient[i] * gradient[j];
-            }
-        }
-    }
-    if let Limit::Fixed { sigma_per_cm, .. } = input.limit {
-        let sigma = sigma_per_cm.max(LEAST_SIGMA_PER_CM);
-        normal[size - 1][size - 1] += sigma.powi(-2);
-        right[size - 1] += limit_pull(input, ritz) / sigma;
-    }
-    (normal, right)
-}
-
-fn assemble(
+pub(super) fn assemble(
     input: &SeriesInput,
     members: &[Member],
     neglected: NeglectedTerms,
@@ -559,7 +200,13 @@ fn assemble(
 /// Coefficients of `(n − δ₀)^(−2k)` and their covariance with the limit.
 fn unscaled(ritz: &Ritz, covariance: &Matrix, scale_factor: f64) -> (Vec<f64>, Matrix) {
     let terms = ritz.scaled.len();
-    let unit = |k: usize| if k < terms { ritz.scale.powi(k as i32) } else { 1.0 };
+    let unit = |k: usize| {
+        if k < terms {
+            ritz.scale.powi(k as i32)
+        } else {
+            1.0
+        }
+    };
     let coefficients = (0..terms).map(|k| ritz.scaled[k] * unit(k)).collect();
     let published = (0..=terms)
         .map(|i| {

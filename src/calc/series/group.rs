@@ -78,7 +78,9 @@ impl Series {
 fn single_limit(core: &str) -> bool {
     if let Some(parent) = parents(core).last() {
         let bare: String = parent.chars().skip_while(char::is_ascii_digit).collect();
-        return bare.starts_with('S') || bare.contains('/') || bare.ends_with(|c: char| c.is_ascii_digit());
+        return bare.starts_with('S')
+            || bare.contains('/')
+            || bare.ends_with(|c: char| c.is_ascii_digit());
     }
     shells(core)
         .last()
@@ -123,7 +125,11 @@ fn collect(
         }
     }
     equivalent.sort_unstable();
-    let contested = by_n.iter().filter(|(_, l)| l.len() > 1).map(|(n, _)| *n).collect();
+    let contested = by_n
+        .iter()
+        .filter(|(_, l)| l.len() > 1)
+        .map(|(n, _)| *n)
+        .collect();
     let members: Vec<Member> = by_n
         .iter()
         .filter(|(_, levels)| levels.len() == 1)
@@ -163,7 +169,13 @@ impl GroundCores {
         };
         let mut held = shells(core);
         held.sort_unstable();
-        if !held.iter().rev().zip(expected.iter().rev()).all(|(a, b)| a == b) || held.len() > expected.len() {
+        if !held
+            .iter()
+            .rev()
+            .zip(expected.iter().rev())
+            .all(|(a, b)| a == b)
+            || held.len() > expected.len()
+        {
             return false;
         }
         match parents(core).last() {
@@ -180,7 +192,10 @@ fn ground_cores(levels: &[LabelledLevel<'_>]) -> GroundCores {
         .min_by(|a, b| a.energy_per_cm.total_cmp(&b.energy_per_cm))
         .and_then(|level| outer_electron(level.configuration));
     let Some(ground) = ground else {
-        return GroundCores { shells: None, best_parent: None };
+        return GroundCores {
+            shells: None,
+            best_parent: None,
+        };
     };
     let mut expected = shells(&ground.core);
     expected.sort_unstable();
@@ -193,7 +208,11 @@ fn ground_cores(levels: &[LabelledLevel<'_>]) -> GroundCores {
             held == expected
         })
         .filter_map(|outer| Some((*parents(&outer.core).last()?).to_owned()))
-        .max_by(|a, b| hund(a, &expected).partial_cmp(&hund(b, &expected)).unwrap_or(std::cmp::Ordering::Equal));
+        .max_by(|a, b| {
+            hund(a, &expected)
+                .partial_cmp(&hund(b, &expected))
+                .unwrap_or(std::cmp::Ordering::Equal)
+        });
     GroundCores {
         shells: Some(expected),
         best_parent,
@@ -206,9 +225,16 @@ fn hund(parent: &str, core: &[(u32, u32, u32)]) -> (u32, u32, f64) {
     let text = parent.replace(['<', '>'], "");
     let digits: String = text.chars().take_while(char::is_ascii_digit).collect();
     let multiplicity = digits.parse().unwrap_or(0);
-    let letter = text.chars().nth(digits.len()).map_or(' ', |c| c.to_ascii_lowercase());
+    let letter = text
+        .chars()
+        .nth(digits.len())
+        .map_or(' ', |c| c.to_ascii_lowercase());
     let orbital = super::orbital_number(letter).unwrap_or(0);
-    let rest: String = text.chars().skip(digits.len() + 1).filter(|c| *c != 'o').collect();
+    let rest: String = text
+        .chars()
+        .skip(digits.len() + 1)
+        .filter(|c| *c != 'o')
+        .collect();
     let j = match rest.split_once('/') {
         Some((top, bottom)) => {
             top.parse().unwrap_or(0.0) / bottom.parse::<f64>().unwrap_or(1.0).max(1.0)

@@ -56,7 +56,11 @@ pub(super) fn shell(token: &str) -> Option<(u32, u32, u32)> {
     let n = token[..letter_at].parse().ok()?;
     let l = orbital_number(letter)?;
     let count = &token[letter_at + letter.len_utf8()..];
-    let occupancy = if count.is_empty() { 1 } else { count.parse().ok()? };
+    let occupancy = if count.is_empty() {
+        1
+    } else {
+        count.parse().ok()?
+    };
     Some((n, l, occupancy))
 }
 
@@ -106,7 +110,15 @@ mod tests {
 
     #[test]
     fn what_is_no_outer_shell() {
-        for text in ["", "3d7 (4F) 4s 4p (3Po)", "4f7 (8So7/2) 6p1/2", "odd", "2d", "1s3", "(3P)"] {
+        for text in [
+            "",
+            "3d7 (4F) 4s 4p (3Po)",
+            "4f7 (8So7/2) 6p1/2",
+            "odd",
+            "2d",
+            "1s3",
+            "(3P)",
+        ] {
             assert_eq!(outer_electron(text), None, "{text}");
         }
     }

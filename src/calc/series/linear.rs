@@ -79,7 +79,11 @@ mod tests {
             .map(|i| (0..3).map(|j| 1.0 / f64::from(i + j + 1)).collect())
             .collect();
         let found = inverse(&hilbert).unwrap();
-        let expected = [[9.0, -36.0, 30.0], [-36.0, 192.0, -180.0], [30.0, -180.0, 180.0]];
+        let expected = [
+            [9.0, -36.0, 30.0],
+            [-36.0, 192.0, -180.0],
+            [30.0, -180.0, 180.0],
+        ];
         for (row, wanted) in found.iter().zip(expected) {
             for (value, want) in row.iter().zip(wanted) {
                 // Condition number 524: eleven digits are left of sixteen, with room.

@@ -11,24 +11,27 @@
 //! The uncertainty of a prediction has three parts, added in quadrature: the covariance of
 //! the weighted fit (with the limit as one of its parameters), the scale factor of a fit
 //! that misses its data, and the Ritz terms that were left out, whose size is taken from
-//! those that were kept (see [`fit::NeglectedTerms`]). The last was tuned on one half of the
+//! those that were kept (see [`NeglectedTerms`]). The last was tuned on one half of the
 //! series of the bundled tables and judged on the other (`tests/series_withheld.rs`).
 
 mod error;
-pub mod fit;
+mod fit;
 pub mod group;
 mod input;
 pub mod label;
 mod linear;
 pub mod polarisation;
 mod predict;
+mod ritz;
+mod solve;
 
 pub use error::SeriesError;
-pub use fit::{SeriesFit, fit};
+pub use fit::{SeriesFit, fit, fit_with};
 pub use group::{LabelledLevel, Series, SeriesKey, group_series};
 pub use input::{Core, Limit, Member, SeriesInput};
 pub use label::{OuterElectron, outer_electron};
 pub use predict::{Prediction, PredictionMethod};
+pub use ritz::NeglectedTerms;
 
 /// Spectroscopic letter of an orbital angular momentum `l`; `None` beyond l = 20.
 pub fn orbital_letter(l: u32) -> Option<char> {

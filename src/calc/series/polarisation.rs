@@ -111,7 +111,10 @@ impl NonPenetrating {
             return Err(SeriesError::AngularMomentum { n, l });
         }
         if l < LOWEST_L {
-            return Err(SeriesError::Penetrating { l, lowest: LOWEST_L });
+            return Err(SeriesError::Penetrating {
+                l,
+                lowest: LOWEST_L,
+            });
         }
         let fourth = self.rydberg_per_cm * inverse_fourth_power(self.core_charge, n, l);
         let sixth = self.rydberg_per_cm * inverse_sixth_power(self.core_charge, n, l);
