@@ -1,5 +1,7 @@
 //! Quantum defects fitted to the bundled levels, against published ones.
 
+#![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
+
 mod series_support;
 
 use lineclear::calc::series::polarisation::{CorePolarisability, NonPenetrating};

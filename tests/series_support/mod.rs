@@ -1,5 +1,7 @@
 //! The Rydberg series of the bundled tables, for the tests of the fit.
 
+#![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
+
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 

@@ -54,10 +54,8 @@ pub enum Core {
 impl Core {
     /// Reads a core such as `1s2`, `4p6`, `3d10 4s`; an empty label counts as soft.
     pub fn of_label(core: &str) -> Self {
-        let shells = core
-            .split_whitespace()
-            .filter(|token| !token.starts_with('('));
-        match shells.last() {
+        let mut shells = core.split_whitespace().rev();
+        match shells.find(|token| !token.starts_with('(')) {
             Some("1s" | "1s2") => Self::Rigid,
             Some(last) if last.ends_with("p6") => Self::Rigid,
             _ => Self::Soft,
