@@ -58,3 +58,45 @@ fn cooling_lines_have_their_width_saturation_and_recoil() {
         close(row, "recoil_cm_per_s", sigma, 100.0 * recoil_m_per_s);
     }
 }
+
+/// `7/10`, or a whole number.
+fn fraction(text: &str) -> f64 {
+    match text.split_once('/') {
+        Some((over, under)) => over.parse::<f64>().unwrap() / under.parse::<f64>().unwrap(),
+        None => text.parse().unwrap(),
+    }
+}
+
+/// The hyperfine components of a line that start from one F share its strength: they sum to one. And the components that
+/// end in one F' sum, weighted by 2F + 1, to (2F' + 1)(2J + 1)/(2J' + 1) (Condon and Shortley 1935, the sum rules of §9.2).
+#[test]
+fn printed_hyperfine_shares_keep_both_sum_rules() {
+    let rows = table("hyperfine_strengths.csv");
+    let of = |species: &str, upper_j: &str, side: &str, f: &str| -> f64 {
+        rows.iter()
+            .filter(|row| row["species"] == species && row["upper_j"] == upper_j && row[side] == f)
+            .map(|row| {
+                let weight = 2.0 * number(row, "lower_f") + 1.0;
+                fraction(&row["share"]) * if side == "upper_f" { weight } else { 1.0 }
+            })
+            .sum()
+    };
+    let mut checked = 0;
+    for row in &rows {
+        let (species, upper_j) = (row["species"].as_str(), row["upper_j"].as_str());
+        let from = of(species, upper_j, "lower_f", &row["lower_f"]);
+        assert!((from - 1.0).abs() < 1e-12, "{row:?}: {from}");
+        // 85Rb is printed from its upper F alone.
+        if species != "85Rb I" {
+            let weights = [fraction(&row["lower_j"]), fraction(upper_j)].map(|j| 2.0 * j + 1.0);
+            let expected = (2.0 * number(row, "upper_f") + 1.0) * weights[0] / weights[1];
+            let into = of(species, upper_j, "upper_f", &row["upper_f"]);
+            assert!(
+                (into - expected).abs() < 1e-12,
+                "{row:?}: {into} {expected}"
+            );
+            checked += 1;
+        }
+    }
+    assert_eq!(checked, 20);
+}
