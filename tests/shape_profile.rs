@@ -8,6 +8,7 @@ use lineclear::calc::shape::{
     FWHM_PER_SIGMA, Instrument, LineWidths, Profile, ResponseCurve, ShapeError, Voigt,
     doppler_sigma_relative, natural_fwhm_hz, overlap, wavelength_width_nm,
 };
+use proptest::prelude::*;
 use table::{assert_close, rows};
 
 fn widths(sigma_nm: f64, hwhm_nm: f64) -> LineWidths {
@@ -242,4 +243,44 @@ fn widths_of_one_line_combine() {
         "variances add",
     );
     assert!(LineWidths::new(-1.0, 1000.0, 40.0, 0.0).is_err());
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(64))]
+
+    /// A Voigt profile is even and falls on both sides, whatever its widths.
+    #[test]
+    fn profiles_fall_off(
+        log_sigma in -6.0..1.0_f64, log_hwhm in -9.0..1.0_f64, offset in 0.0..100.0_f64, further in 1e-6..10.0_f64,
+    ) {
+        let voigt = Voigt::new(widths(10_f64.powf(log_sigma), 10_f64.powf(log_hwhm))).unwrap();
+        let near = voigt.density(offset);
+        prop_assert!(near >= 0.0 && near.is_finite());
+        prop_assert_eq!(near, voigt.density(-offset));
+        // Where the methods of w(z) meet, their relative errors (2e-10) may step.
+        prop_assert!(voigt.density(offset + further) <= near * (1.0 + 4e-10));
+        prop_assert!(voigt.fwhm() > 0.0);
+    }
+
+    /// The exact width lies within the 0.02 % of Olivero & Longbothum at any ratio of widths.
+    #[test]
+    fn closed_form_width_is_near_the_exact_one(log_ratio in -6.0..6.0_f64) {
+        let voigt = Voigt::new(widths(1.0, 10_f64.powf(log_ratio))).unwrap();
+        prop_assert!((voigt.fwhm() / voigt.fwhm_estimate() - 1.0).abs() < 2.5e-4);
+    }
+
+    /// Blurring moves no light: the profile seen through a slit has the area of the line.
+    #[test]
+    fn blurring_keeps_the_area(width in 0.02..0.3_f64, log_sigma in -3.0..-1.0_f64) {
+        let slit = Instrument::Rectangular { width_nm: width };
+        let profile = Profile::new(widths(10_f64.powf(log_sigma), 0.0), Some(&slit)).unwrap();
+        let reach = width + 1.0;
+        let steps = 2000;
+        let h = 2.0 * reach / f64::from(steps);
+        let area: f64 = (0..steps)
+            .map(|k| profile.density((f64::from(k) + 0.5) * h - reach) * h)
+            .sum();
+        // The midpoint rule at 1e-3 nm steps of an edge at least 1e-3 nm wide.
+        prop_assert!((area - 1.0).abs() < 1e-2, "{}", area);
+    }
 }

@@ -232,26 +232,24 @@ const COSINE: [f64; 6] = [
     1.0 / 479_001_600.0,
 ];
 
-/// Sine and cosine of 2π t for |t| < 2^40, absolute error 1e-12: Taylor series within an eighth
-/// of a turn. Worth its lines: the library calls took two thirds of the time of a point.
+/// Sine and cosine of 2π t for |t| < 2^40, absolute error 1e-12: Taylor series of a quarter of the
+/// angle, which lies within an eighth of a turn, doubled twice. Worth its lines: the library calls took two
+/// thirds of the time of a point.
 #[inline]
 fn sin_cos_turns(t: f64) -> (f64, f64) {
     /// Adding and subtracting it rounds to a whole number.
     const ROUNDER: f64 = 6_755_399_441_055_744.0;
-    let quarters = (4.0 * t + ROUNDER) - ROUNDER;
-    let r = (t - quarters / 4.0) * TAU;
+    let r = (t - ((t + ROUNDER) - ROUNDER)) * (TAU / 4.0);
     let r2 = r * r;
     let series = |c: &[f64; 6]| {
         let r4 = r2 * r2;
         r2 * ((c[0] + r2 * c[1]) + r4 * ((c[2] + r2 * c[3]) + r4 * (c[4] + r2 * c[5])))
     };
-    let (sine, cosine) = (r + r * series(&SINE), 1.0 + series(&COSINE));
-    let quadrant = quarters as i64;
-    let (sine, cosine) = if quadrant & 1 == 0 {
-        (sine, cosine)
-    } else {
-        (cosine, -sine)
-    };
-    let sign = 1.0 - (quadrant & 2) as f64;
-    (sign * sine, sign * cosine)
+    let (sine, versine) = (r + r * series(&SINE), series(&COSINE));
+    // sin 2a = 2 sin a cos a and 1 − cos 2a = 2 sin² a.
+    let (half_sine, half_cosine) = (2.0 * sine * (1.0 + versine), 1.0 - 2.0 * sine * sine);
+    (
+        2.0 * half_sine * half_cosine,
+        1.0 - 2.0 * half_sine * half_sine,
+    )
 }

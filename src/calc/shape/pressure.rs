@@ -2,6 +2,7 @@
 
 use super::error::{ShapeError, positive};
 use vocabulary::light::constants::RYDBERG_PER_CM;
+use vocabulary::spectrum::Level;
 
 /// How a pressure width was obtained.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -71,6 +72,18 @@ pub struct OuterElectron {
 }
 
 impl OuterElectron {
+    /// The outer electron of a level of a species with this series limit (cm⁻¹ above its ground level):
+    /// the last one of its configuration. `None` where the level has no configuration, or lies
+    /// above the limit.
+    pub fn of_level(level: &Level, limit_per_cm: f64) -> Option<Self> {
+        let binding_per_cm = limit_per_cm - level.energy_per_cm;
+        Some(Self {
+            binding_per_cm: (binding_per_cm > 0.0).then_some(binding_per_cm)?,
+            l: last_l(level.configuration.as_deref()?)?,
+            core_charge: level.species.core_charge(),
+        })
+    }
+
     /// Effective principal quantum number n* = z √(R/B).
     ///
     /// # Errors
@@ -97,5 +110,39 @@ impl OuterElectron {
         // A penetrating orbit with n* < l + ½ would give nonsense: never below n*⁴/z² of a circular one.
         let bracket = (5.0 * n2 + 1.0 - 3.0 * l * (l + 1.0)).max(2.0 * n2);
         Ok(n2 / (2.0 * z2) * bracket)
+    }
+}
+
+/// l of the last subshell of a configuration such as `3d6 (5D) 4s`; parents stand in parentheses.
+fn last_l(configuration: &str) -> Option<u32> {
+    /// Letters of l = 0, 1, 2 … as the trade writes them (no j).
+    const LETTERS: &str = "spdfghiklmnoqrtuv";
+    let shell = configuration
+        .split_whitespace()
+        .rev()
+        .find(|word| word.starts_with(|c: char| c.is_ascii_digit()))?;
+    let letter = shell.trim_start_matches(|c: char| c.is_ascii_digit());
+    let l = LETTERS.find(letter.chars().next()?)?;
+    u32::try_from(l).ok()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::last_l;
+
+    #[test]
+    fn the_last_subshell_of_a_configuration() {
+        for (configuration, l) in [
+            ("1s 2p", Some(1)),
+            ("3d6 (5D) 4s", Some(0)),
+            ("3p5 (2Po) 4p", Some(1)),
+            ("3d10", Some(2)),
+            ("1s 7i", Some(6)),
+            ("2s2 2p6 3s 12k", Some(7)),
+            ("", None),
+            ("(5D)", None),
+        ] {
+            assert_eq!(last_l(configuration), l, "{configuration}");
+        }
     }
 }
