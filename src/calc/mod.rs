@@ -1,6 +1,8 @@
 //! The physics: pure functions on vocabulary types, no I/O.
 
+pub mod angular;
 pub mod filter;
+pub mod one_electron;
 pub mod plasma;
 pub mod series;
 pub mod shape;
