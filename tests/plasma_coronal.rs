@@ -282,7 +282,7 @@ fn self_absorption_agrees_with_quadrature_of_the_reference_library() {
         let escape = escape_probability(row[2], widths).unwrap();
         assert_close(escape, row[4], 1e-6, "escape");
         // A column also takes back light from its near side: never less than the far photon's chance.
-        assert!(thin >= escape);
+        assert!(thin >= escape * (1.0 - 2e-6), "{row:?}");
     }
 }
 
