@@ -1,4 +1,27 @@
 //! Readers of published level and line tables. Each format turns bytes into one stream of
 //! [`record`]s; none of them knows a database.
+//!
+//! [`source::SourceDescription`] says what a table is and how its columns map;
+//! [`read_source`] turns its tables into records and hands them to a [`Sink`].
 
+pub mod delimited;
+pub mod error;
+pub mod fixed;
+pub mod input;
+pub mod limits;
+pub mod lines;
+pub mod mapping;
+pub mod number;
+pub mod read;
 pub mod record;
+pub mod row;
+pub mod sink;
+pub mod source;
+pub mod spectral;
+pub mod table;
+pub mod unit;
+
+pub use error::ImportError;
+pub use limits::Limits;
+pub use read::{Opener, ReadOptions, read_source};
+pub use sink::{ReadReport, Refusal, Sink, SinkError};

@@ -85,6 +85,8 @@ pub struct LineRecord {
 
 /// What a reader hands on.
 #[derive(Clone, Debug, PartialEq)]
+// Records pass by one at a time: a box would cost an allocation for each line.
+#[allow(clippy::large_enum_variant)]
 pub enum Record {
     /// A level.
     Level(LevelRecord),
