@@ -255,6 +255,14 @@ fn bad_rows_are_refused_with_file_line_column_and_text() {
 }
 
 #[test]
+fn where_no_index_of_air_is_known_the_levels_say_where_the_line_is() {
+    let row = "Xe I,3273.926,air,77269.145,1,80322.746,2,\n";
+    let (report, records) = read_text(LINES, &format!("{HEADER}{row}"), 0).unwrap();
+    assert_eq!(line(&records[0]).wavenumber_per_cm, None);
+    assert_eq!(report.warnings.len(), 1);
+}
+
+#[test]
 fn bad_rows_are_listed_when_they_are_allowed_and_the_sum_is_right() {
     let table =
         format!("{HEADER}{SODIUM}Na I,x,air,0,1/2,16973.366,1.5,1\n{SODIUM}Na I,1\n{SODIUM}");

@@ -151,6 +151,10 @@ fn finish_table(
             "rows give an oscillator strength but no weight of the level, so no rate follows from them",
         ),
         (
+            counts.beyond_air,
+            "wavelengths in air lie where the index of air is not known; their lines stand at the difference of their levels",
+        ),
+        (
             counts.extrapolated,
             "wavelengths in air lie outside 300 to 1690 nm, where the index of air is extrapolated",
         ),

@@ -172,6 +172,11 @@ fn hint(position: &Position, apart: f64) -> &'static str {
     }
 }
 
+/// Whether both levels have an energy.
+pub(super) fn has_energies(lower: &LevelCells, upper: &LevelCells) -> bool {
+    lower.energy.is_some() && upper.energy.is_some()
+}
+
 /// What a strength needs to become a rate.
 pub(super) fn weights(
     lower: &LevelCells,

@@ -97,6 +97,8 @@ pub(crate) struct Counts {
     pub weightless: u64,
     /// Wavelengths in air outside the published range of the index.
     pub extrapolated: u64,
+    /// Positions left out because the index of air is not known there.
+    pub beyond_air: u64,
 }
 
 #[derive(Debug)]
@@ -220,9 +222,16 @@ fn line_record(
     place: RecordPlace,
     counts: &mut Counts,
 ) -> Result<Record, Fault> {
-    let position = plan.position(row)?;
     let lower = plan.lower.read(row)?;
     let mut upper = plan.upper.read(row)?;
+    let position = match plan.position(row) {
+        // No index of air there, but the levels say where the line is.
+        Err(fault) if fault.is_beyond_air() && line::has_energies(&lower, &upper) => {
+            counts.beyond_air += 1;
+            None
+        }
+        other => other?,
+    };
     line::complete_upper(&plan.upper, &mut upper, &lower, position.as_ref());
     line::check(&lower, &upper, position.as_ref(), context.scale)?;
     let weights = line::weights(&lower, &upper, position.as_ref());

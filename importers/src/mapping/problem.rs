@@ -122,6 +122,11 @@ pub struct CellFault {
 }
 
 impl CellFault {
+    /// Whether the index of air is not known at the wavelength.
+    pub fn is_beyond_air(&self) -> bool {
+        matches!(self.problem, Problem::Air(_))
+    }
+
     /// A fault of the row as a whole.
     pub fn row(problem: Problem) -> Fault {
         Box::new(Self {
