@@ -4,3 +4,7 @@ pub use importers;
 pub use vocabulary;
 
 pub mod calc;
+pub mod catalogue;
+pub mod advise;
+pub mod cli;
+pub mod show;

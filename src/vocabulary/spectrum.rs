@@ -107,3 +107,65 @@ pub struct Line {
     /// What the entry stands for.
     pub kind: LineKind,
 }
+
+/// Down to which strength a source claims to list the lines of a species.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
+pub enum Completeness {
+    /// Nothing is claimed for lines between excited states.
+    GroundTerm,
+    /// Lines down to 3e-2 of the strongest.
+    Strong,
+    /// All lines of the computed series.
+    Computed,
+    /// Lines down to 1e-3 of the strongest.
+    Full,
+}
+
+impl Completeness {
+    /// The strength, as a fraction of the species' strongest line in the band under arc-like
+    /// conditions, below which lines may be missing; `None` where nothing is claimed.
+    pub const fn limit(self) -> Option<f64> {
+        match self {
+            Self::GroundTerm => None,
+            Self::Strong => Some(3e-2),
+            Self::Full => Some(1e-3),
+            Self::Computed => Some(0.0),
+        }
+    }
+
+    /// The word used in descriptions and tables.
+    pub const fn word(self) -> &'static str {
+        match self {
+            Self::GroundTerm => "ground-term",
+            Self::Strong => "strong",
+            Self::Computed => "computed",
+            Self::Full => "full",
+        }
+    }
+}
+
+/// What one source claims to cover of one species.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Scope {
+    /// Start of the band, vacuum nm.
+    pub from_nm: f64,
+    /// End of the band, vacuum nm.
+    pub to_nm: f64,
+    /// Down to which strength.
+    pub completeness: Completeness,
+    /// Key of the source.
+    pub source: Arc<str>,
+}
+
+/// How strong a line is, without its details: enough to scale a spectrum and to sum decays.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Strength {
+    /// Vacuum wavenumber, cm⁻¹.
+    pub wavenumber_per_cm: f64,
+    /// Rate, s⁻¹, where known.
+    pub rate_per_s: Option<f64>,
+    /// Number of the lower level.
+    pub lower: Option<u32>,
+    /// Number of the upper level.
+    pub upper: Option<u32>,
+}

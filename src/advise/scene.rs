@@ -1,0 +1,164 @@
+//! Everything that emits in and around a window, ready to be compared: the common ground of all
+//! interference answers.
+
+use std::ops::Range;
+
+use vocabulary::light::SpectralWidth;
+use vocabulary::spectrum::Line;
+
+use super::emission::{Conditions, Emitter, emitters};
+use super::error::AdviseError;
+use super::feature;
+use super::spectrum::Spectrum;
+use crate::calc::shape::{Instrument, LineWidths, Profile, natural_fwhm_hz};
+
+/// How far profiles are followed, in instrument widths.
+pub const REACH_WIDTHS: f64 = 20.0;
+/// Relative 1 σ of a rate for which none is stated.
+pub const UNSTATED_RATE_SIGMA: f64 = 0.5;
+
+/// One line of the scene.
+pub struct Emission<'s> {
+    /// Index of its spectrum.
+    pub spectrum: usize,
+    /// The line.
+    pub line: &'s Line,
+    /// Vacuum wavelength, nm.
+    pub nm: f64,
+    /// 1 σ of it, nm.
+    pub sigma_nm: f64,
+    /// Relative light; `None` where it cannot be rated.
+    pub light: Option<f64>,
+    /// Relative 1 σ of the light, from the rate.
+    pub light_sigma: f64,
+    /// Profile as the instrument sees it.
+    pub profile: Profile,
+    /// Index of its feature.
+    pub feature: usize,
+}
+
+/// One feature of the scene.
+pub struct Feature {
+    /// Index of its spectrum.
+    pub spectrum: usize,
+    /// Its components, indices into [`Scene::emissions`], by wavelength.
+    pub components: Vec<usize>,
+    /// Vacuum wavelength, weighted by light where rated, nm.
+    pub nm: f64,
+    /// Light of its rated components; `None` where none is rated.
+    pub light: Option<f64>,
+    /// Signal of an instrument centred on it, per nm; `None` where none is rated.
+    pub signal: Option<f64>,
+    /// Relative 1 σ of the signal.
+    pub signal_sigma: f64,
+}
+
+/// Lines of all species around a window, their light and their profiles.
+pub struct Scene<'s> {
+    /// What is held of each species.
+    pub spectra: &'s [Spectrum],
+    /// The light of each species.
+    pub emitters: Vec<Emitter>,
+    /// Lines by wavelength.
+    pub emissions: Vec<Emission<'s>>,
+    /// Features by the wavelength of their first component.
+    pub features: Vec<Feature>,
+    /// FWHM of the instrument.
+    pub width: SpectralWidth,
+}
+
+impl<'s> Scene<'s> {
+    /// Sets the scene.
+    ///
+    /// # Errors
+    /// Conditions under which populations or profiles cannot be computed.
+    pub fn new(
+        spectra: &'s [Spectrum],
+        conditions: &Conditions,
+        width: SpectralWidth,
+    ) -> Result<Self, AdviseError> {
+        let emitters = emitters(spectra, conditions)?;
+        let mut emissions = Vec::new();
+        for (index, spectrum) in spectra.iter().enumerate() {
+            let decays = spectrum.decay_rates();
+            for line in &spectrum.lines {
+                let profile = profile(spectrum, line, &decays, conditions, width)
+                    .map_err(|cause| AdviseError::Shape { species: spectrum.species, cause })?;
+                let nm = 1e7 / line.wavenumber_per_cm;
+                emissions.push(Emission {
+                    spectrum: index,
+                    line,
+                    nm,
+                    sigma_nm: nm * line.wavenumber_uncertainty_per_cm / line.wavenumber_per_cm,
+                    light: emitters[index].light(line),
+                    light_sigma: line.rate_relative_uncertainty.unwrap_or(UNSTATED_RATE_SIGMA),
+                    profile,
+                    feature: 0,
+                });
+            }
+        }
+        emissions.sort_by(|a, b| a.nm.total_cmp(&b.nm).then(a.spectrum.cmp(&b.spectrum)));
+        let features = features(&mut emissions, width);
+        Ok(Self { spectra, emitters, emissions, features, width })
+    }
+
+    /// Emissions whose wavelength lies within `reach_nm` of a position.
+    pub fn around(&self, nm: f64, reach_nm: f64) -> Range<usize> {
+        let from = self.emissions.partition_point(|e| e.nm < nm - reach_nm);
+        let to = self.emissions.partition_point(|e| e.nm <= nm + reach_nm);
+        from..to
+    }
+}
+
+/// Doppler, natural and instrument width together.
+fn profile(
+    spectrum: &Spectrum,
+    line: &Line,
+    decays: &[f64],
+    conditions: &Conditions,
+    width: SpectralWidth,
+) -> Result<Profile, crate::calc::shape::ShapeError> {
+    let decay = |level: &Option<std::sync::Arc<vocabulary::spectrum::Level>>| {
+        level.as_ref().and_then(|l| decays.get(l.number as usize)).copied().unwrap_or(0.0)
+    };
+    let nm = 1e7 / line.wavenumber_per_cm;
+    let natural = natural_fwhm_hz(decay(&line.upper), decay(&line.lower))?;
+    let widths = LineWidths::new(nm, conditions.gas_temperature_k, spectrum.mass_u, natural)?;
+    Profile::new(widths, Some(&Instrument::Gaussian { fwhm_nm: width.at_nm(nm) }))
+}
+
+fn features(emissions: &mut [Emission<'_>], width: SpectralWidth) -> Vec<Feature> {
+    let lines: Vec<(f64, &Line)> = emissions.iter().map(|e| (e.nm, e.line)).collect();
+    let groups = feature::group(&lines, |nm| width.at_nm(nm));
+    let features: Vec<Feature> =
+        groups.into_iter().map(|components| seen_as_one(emissions, components)).collect();
+    for (index, feature) in features.iter().enumerate() {
+        for &component in &feature.components {
+            emissions[component].feature = index;
+        }
+    }
+    features
+}
+
+fn seen_as_one(emissions: &[Emission<'_>], components: Vec<usize>) -> Feature {
+    let of = || components.iter().map(|&i| &emissions[i]);
+    let rated = || of().filter_map(|e| e.light.map(|light| (light, e)));
+    let light: f64 = rated().map(|(light, _)| light).sum();
+    let is_rated = rated().next().is_some();
+    let nm = if light > 0.0 {
+        rated().map(|(light, e)| light * e.nm).sum::<f64>() / light
+    } else {
+        of().map(|e| e.nm).sum::<f64>() / components.len() as f64
+    };
+    let parts = || rated().map(|(light, e)| (light * e.profile.density(e.nm - nm), e.light_sigma));
+    let signal: f64 = parts().map(|(part, _)| part).sum();
+    let variance: f64 = parts().map(|(part, sigma)| (part * sigma).powi(2)).sum();
+    Feature {
+        spectrum: emissions[components[0]].spectrum,
+        nm,
+        light: is_rated.then_some(light),
+        signal: is_rated.then_some(signal),
+        signal_sigma: if signal > 0.0 { variance.sqrt() / signal } else { 0.0 },
+        components,
+    }
+}

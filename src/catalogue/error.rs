@@ -1,0 +1,103 @@
+//! What can go wrong with a catalogue.
+
+use std::path::PathBuf;
+
+/// Errors of the catalogue; each says what, where and what to do.
+#[derive(Debug, thiserror::Error)]
+#[non_exhaustive]
+pub enum CatalogueError {
+    /// SQLite refused something.
+    #[error("{}: the catalogue could not be {action}: {cause}", path.display())]
+    Sqlite {
+        /// The catalogue.
+        path: PathBuf,
+        /// What was being done, as a participle.
+        action: &'static str,
+        /// SQLite's own words.
+        #[source]
+        cause: rusqlite::Error,
+    },
+    /// A file that is no catalogue.
+    #[error("{}: this is not a lineclear catalogue; name another file with --catalogue", path.display())]
+    NotACatalogue {
+        /// The file.
+        path: PathBuf,
+    },
+    /// Written by a later version.
+    #[error(
+        "{}: this catalogue is of a newer version (schema {found}, this program knows {known}); \
+         update lineclear or name another file with --catalogue",
+        path.display()
+    )]
+    Newer {
+        /// The file.
+        path: PathBuf,
+        /// Schema of the file.
+        found: i64,
+        /// Latest schema known here.
+        known: i64,
+    },
+    /// A file or folder that cannot be read or written.
+    #[error("{}: cannot be {action}: {cause}", path.display())]
+    File {
+        /// The file or folder.
+        path: PathBuf,
+        /// What was being done, as a participle.
+        action: &'static str,
+        /// The system's own words.
+        #[source]
+        cause: std::io::Error,
+    },
+    /// A source that is not held.
+    #[error("`{key}`: no such source is held; `lineclear sources` lists them")]
+    NoSuchSource {
+        /// The key asked for.
+        key: String,
+    },
+    /// Another table is held under this key.
+    #[error(
+        "`{key}`: a source of this key with other content is held; `lineclear forget {key}` first, \
+         or give the new table a key of its own"
+    )]
+    KeyTaken {
+        /// The key.
+        key: String,
+    },
+    /// The table cannot be read.
+    #[error(transparent)]
+    Import(#[from] importers::ImportError),
+    /// A description that cannot be used.
+    #[error(transparent)]
+    Description(#[from] importers::source::DescriptionError),
+    /// A table file that is not the one described.
+    #[error(
+        "{}: its SHA-256 is {found}, but source.toml states {stated}; restore the file or correct \
+         the statement",
+        path.display()
+    )]
+    OtherFile {
+        /// The file.
+        path: PathBuf,
+        /// What it is.
+        found: String,
+        /// What was stated.
+        stated: String,
+    },
+    /// No licence is known.
+    #[error("`{key}`: source.toml names no licence; state one with --licence, in words if need be")]
+    NoLicence {
+        /// Key of the source.
+        key: String,
+    },
+    /// A value in the catalogue that makes no sense.
+    #[error("{}: damaged: {what}; run with a fresh --catalogue or restore a copy", path.display())]
+    Damaged {
+        /// The file.
+        path: PathBuf,
+        /// What is wrong.
+        what: String,
+    },
+}
+
+/// A result of the catalogue.
+pub type Result<T> = std::result::Result<T, CatalogueError>;

@@ -1,0 +1,18 @@
+//! The only door to SQLite: open, migrate, ingest, reconcile, retract, query.
+
+mod bundled;
+mod derive;
+mod error;
+mod files;
+mod ingest;
+mod query;
+pub mod reconcile;
+mod sources;
+mod store;
+
+pub use error::{CatalogueError, Result};
+pub use ingest::{ImportSummary, Incoming, ReportWriter};
+pub use query::Levels;
+pub use files::SourceFiles;
+pub use sources::SourceRow;
+pub use store::{Catalogue, Opened};

@@ -1,0 +1,70 @@
+//! What ends a command, and with which status.
+
+use std::path::PathBuf;
+
+use vocabulary::atom::SpeciesError;
+use vocabulary::light::QuantityError;
+
+use super::Exit;
+use crate::advise::AdviseError;
+use crate::catalogue::CatalogueError;
+
+/// Errors of the command line; each is one sentence.
+#[derive(Debug, thiserror::Error)]
+#[non_exhaustive]
+pub enum CliError {
+    /// A quantity that cannot be read.
+    #[error(transparent)]
+    Quantity(#[from] QuantityError),
+    /// A species that cannot be read.
+    #[error(transparent)]
+    Species(#[from] SpeciesError),
+    /// Amounts that make no mix.
+    #[error("--mix: `{entry}`: {problem}; write amounts as `Fe=0.01,He=1`")]
+    Mix {
+        /// The entry.
+        entry: String,
+        /// What is wrong with it.
+        problem: &'static str,
+    },
+    /// Options that do not go together.
+    #[error("{0}")]
+    Options(&'static str),
+    /// The data folder is not known.
+    #[error("no folder for user data is known (HOME is not set); name a file with --catalogue")]
+    NoDataFolder,
+    /// A file that cannot be read.
+    #[error("{}: cannot be read: {cause}", path.display())]
+    Unreadable {
+        /// The file.
+        path: PathBuf,
+        /// The system's own words.
+        #[source]
+        cause: std::io::Error,
+    },
+    /// The catalogue.
+    #[error(transparent)]
+    Catalogue(#[from] CatalogueError),
+    /// The answer.
+    #[error(transparent)]
+    Advise(#[from] AdviseError),
+    /// A table to import.
+    #[error(transparent)]
+    Import(#[from] importers::ImportError),
+    /// Standard output is gone or full.
+    #[error("standard output cannot be written: {0}")]
+    Output(#[source] std::io::Error),
+}
+
+impl CliError {
+    /// The exit status that this error sets. A closed pipe is no error.
+    pub fn exit(&self) -> Exit {
+        match self {
+            Self::Quantity(_) | Self::Species(_) | Self::Mix { .. } | Self::Options(_) => {
+                Exit::Usage
+            }
+            Self::Output(cause) if cause.kind() == std::io::ErrorKind::BrokenPipe => Exit::Answered,
+            _ => Exit::Failed,
+        }
+    }
+}

@@ -1,0 +1,64 @@
+//! The command line: what was typed, the question, the answer, shown.
+
+mod assemble;
+mod error;
+mod exit;
+mod forget;
+mod import;
+mod options;
+mod progress;
+mod sources;
+mod window;
+
+use clap::{Parser, Subcommand};
+
+pub use error::CliError;
+pub use exit::Exit;
+
+use crate::show::{Format, Sheet};
+use options::CatalogueOptions;
+
+/// Atomic energy levels and spectral lines: which lines fall in a window, and what gets in the way.
+#[derive(Debug, Parser)]
+#[command(name = "lineclear", version, about, arg_required_else_help = true)]
+struct Cli {
+    #[command(flatten)]
+    catalogue: CatalogueOptions,
+    #[command(subcommand)]
+    command: Command,
+}
+
+#[derive(Debug, Subcommand)]
+enum Command {
+    Window(window::Arguments),
+    Import(import::Arguments),
+    Sources(sources::Arguments),
+    Forget(forget::Arguments),
+}
+
+/// What a command hands back.
+struct Outcome {
+    sheet: Sheet,
+    format: Format,
+    exit: Exit,
+}
+
+/// Parses the arguments of the process, runs the command and prints its answer.
+///
+/// # Errors
+/// One sentence for standard error, with the kind that sets the exit status.
+pub fn run() -> Result<Exit, CliError> {
+    let cli = match Cli::try_parse() {
+        Ok(cli) => cli,
+        Err(error) => return exit::of_clap(&error),
+    };
+    let context = &cli.catalogue;
+    let outcome = match cli.command {
+        Command::Window(arguments) => window::run(arguments, context)?,
+        Command::Import(arguments) => import::run(&arguments, context)?,
+        Command::Sources(arguments) => sources::run(&arguments, context)?,
+        Command::Forget(arguments) => forget::run(&arguments, context)?,
+    };
+    outcome.sheet.print(outcome.format).map_err(CliError::Output)?;
+    Ok(outcome.exit)
+}

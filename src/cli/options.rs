@@ -1,0 +1,207 @@
+//! Options that several commands share, and the checked values they become.
+
+use std::path::PathBuf;
+
+use clap::Args;
+use etcetera::{BaseStrategy, choose_base_strategy};
+use vocabulary::atom::{Species, SpeciesRequest};
+use vocabulary::light::{Medium, NumberDensity, SpectralRange, SpectralWidth, Temperature};
+
+use super::progress::Bar;
+use super::CliError;
+use crate::advise::{Conditions, EmissionModel};
+use crate::catalogue::{Catalogue, Opened};
+use crate::show::Format;
+
+/// Where the catalogue is, and how much is said.
+#[derive(Args, Debug)]
+pub struct CatalogueOptions {
+    /// Catalogue file [default: catalogue.sqlite in the user's data folder]
+    #[arg(long, global = true, value_name = "FILE")]
+    catalogue: Option<PathBuf>,
+    /// Say nothing on standard error but errors
+    #[arg(long, short, global = true)]
+    quiet: bool,
+}
+
+impl CatalogueOptions {
+    /// Opens the catalogue, building it on the first run.
+    pub fn open(&self) -> Result<Catalogue, CliError> {
+        let path = match &self.catalogue {
+            Some(path) => path.clone(),
+            None => default_path()?,
+        };
+        let bar = Bar::new(self.quiet, "building the catalogue");
+        let (catalogue, opened) =
+            Catalogue::open_or_build(&path, &mut |done, total| bar.show(done, total))?;
+        bar.finish();
+        match opened {
+            Opened::Built => self.say(&format!("catalogue built: {}", path.display())),
+            Opened::Refreshed => self.say("catalogue brought up to this version's tables"),
+            Opened::InMemory(why) => self.say(&format!("working from memory: {why}")),
+            Opened::Held => {}
+        }
+        Ok(catalogue)
+    }
+
+    /// Whether to keep quiet.
+    pub fn quiet(&self) -> bool {
+        self.quiet
+    }
+
+    /// A word on standard error.
+    pub fn say(&self, words: &str) {
+        if !self.quiet {
+            eprintln!("{words}");
+        }
+    }
+}
+
+fn default_path() -> Result<PathBuf, CliError> {
+    let strategy = choose_base_strategy().map_err(|_| CliError::NoDataFolder)?;
+    Ok(strategy.data_dir().join("lineclear").join("catalogue.sqlite"))
+}
+
+/// How the answer is written.
+#[derive(Args, Debug)]
+pub struct OutputOptions {
+    /// Form of the answer
+    #[arg(long = "as", value_enum, default_value_t = Format::Table, value_name = "FORM")]
+    pub format: Format,
+}
+
+/// The light source and the instrument.
+#[derive(Args, Debug)]
+pub struct ConditionOptions {
+    /// How the light of species compares: `visible` takes each species as seen, `lte` takes real
+    /// amounts at one temperature
+    #[arg(long, value_enum, default_value_t = ModelName::Visible, value_name = "MODEL")]
+    model: ModelName,
+    /// Temperature of the electrons, with its unit [default: 1eV]
+    #[arg(long, value_name = "TEMPERATURE")]
+    te: Option<String>,
+    /// Electron density; ionisation then follows Saha (model lte) [default: none]
+    #[arg(long, value_name = "DENSITY")]
+    ne: Option<String>,
+    /// Temperature of the atoms, for Doppler widths [default: 1000K]
+    #[arg(long, value_name = "TEMPERATURE")]
+    gas_temperature: Option<String>,
+    /// Relative amounts, `Fe=0.01,He=1`; species not named here have the amount 1
+    #[arg(long, value_name = "AMOUNTS")]
+    mix: Option<String>,
+    /// Full width at half maximum of the instrument [default: 0.1nm]
+    #[arg(long, value_name = "WIDTH", conflicts_with = "resolving")]
+    fwhm: Option<String>,
+    /// Resolving power of the instrument, instead of --fwhm
+    #[arg(long, value_name = "NUMBER")]
+    resolving: Option<f64>,
+}
+
+#[derive(clap::ValueEnum, Clone, Copy, Debug, PartialEq, Eq)]
+enum ModelName {
+    Visible,
+    Lte,
+}
+
+/// Checked conditions, and what nobody gave.
+#[derive(Clone, Debug)]
+pub struct Checked {
+    /// The light source.
+    pub conditions: Conditions,
+    /// Electron temperature, as it will be shown.
+    pub te: Temperature,
+    /// Gas temperature, as it will be shown.
+    pub gas: Temperature,
+    /// Instrument width.
+    pub width: SpectralWidth,
+    /// Amounts given.
+    pub amounts: Vec<(SpeciesRequest, f64)>,
+    /// What was assumed, one phrase each.
+    pub assumed: Vec<String>,
+}
+
+impl ConditionOptions {
+    /// Resolves what was typed; `range` is where a resolving power becomes a width.
+    pub fn check(&self, range: &SpectralRange) -> Result<Checked, CliError> {
+        let mut assumed = Vec::new();
+        if self.model == ModelName::Visible {
+            assumed.push("model visible (each species as bright as its amount)".to_owned());
+        }
+        let mut or_assume = |given: &Option<String>, default: &str, what: &str| {
+            given.clone().unwrap_or_else(|| {
+                assumed.push(format!("{what} {default}"));
+                default.to_owned()
+            })
+        };
+        let te: Temperature = or_assume(&self.te, "1eV", "electron temperature").parse()?;
+        let gas: Temperature =
+            or_assume(&self.gas_temperature, "1000K", "gas temperature").parse()?;
+        let width = match self.resolving {
+            Some(power) => resolving(power, range)?,
+            None => or_assume(&self.fwhm, "0.1nm", "instrument width (FWHM)").parse()?,
+        };
+        let ne = self.ne.as_deref().map(str::parse::<NumberDensity>).transpose()?;
+        if ne.is_some() && self.model == ModelName::Visible {
+            return Err(CliError::Options(
+                "--ne sets the ionisation balance, which --model visible does not use; \
+                 add --model lte or leave --ne out",
+            ));
+        }
+        let amounts = self.mix.as_deref().map(parse_mix).transpose()?.unwrap_or_default();
+        if amounts.is_empty() {
+            assumed.push("equal amounts".to_owned());
+        }
+        let conditions = Conditions {
+            model: match self.model {
+                ModelName::Visible => EmissionModel::Visible,
+                ModelName::Lte => EmissionModel::Lte,
+            },
+            kt_per_cm: te.kelvin() * vocabulary::light::constants::PER_CM_PER_KELVIN,
+            electron_density_per_m3: ne.map(NumberDensity::per_m3),
+            gas_temperature_k: gas.kelvin(),
+        };
+        Ok(Checked { conditions, te, gas, width, amounts, assumed })
+    }
+}
+
+fn resolving(power: f64, range: &SpectralRange) -> Result<SpectralWidth, CliError> {
+    if power.is_finite() && power >= 1.0 {
+        Ok(SpectralWidth::from_nm(range.centre_vacuum_nm() / power))
+    } else {
+        Err(CliError::Options("--resolving takes a number from 1 upwards, such as 20000"))
+    }
+}
+
+fn parse_mix(text: &str) -> Result<Vec<(SpeciesRequest, f64)>, CliError> {
+    let mut amounts = Vec::new();
+    for entry in text.split(',') {
+        let bad = |problem| CliError::Mix { entry: entry.trim().to_owned(), problem };
+        let (species, amount) =
+            entry.split_once('=').ok_or_else(|| bad("no amount behind `=`"))?;
+        let request: SpeciesRequest = species.trim().parse()?;
+        let amount: f64 = amount.trim().parse().map_err(|_| bad("the amount is no number"))?;
+        if !amount.is_finite() || amount < 0.0 {
+            return Err(bad("an amount is zero or above"));
+        }
+        amounts.push((request, amount));
+    }
+    if amounts.iter().all(|(_, amount)| *amount == 0.0) {
+        let problem = "all amounts are zero";
+        return Err(CliError::Mix { entry: text.to_owned(), problem });
+    }
+    Ok(amounts)
+}
+
+/// The amount of a species: of the most exact entry that matches it, else 1.
+pub fn amount_of(species: Species, amounts: &[(SpeciesRequest, f64)]) -> f64 {
+    let matching = || amounts.iter().filter(|(request, _)| request.matches(species));
+    matching()
+        .find(|(request, _)| request.single().is_some())
+        .or_else(|| matching().next())
+        .map_or(1.0, |(_, amount)| *amount)
+}
+
+/// Reads `--medium`.
+pub fn medium(text: &str) -> Result<Medium, String> {
+    text.parse().map_err(|e: vocabulary::light::QuantityError| e.to_string())
+}

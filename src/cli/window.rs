@@ -1,0 +1,166 @@
+//! `window`: what lies in this window, rated, with interference warnings.
+
+use clap::Args;
+use serde_json::{Map, Value, json};
+use vocabulary::atom::SpeciesRequest;
+use vocabulary::light::{Air, Medium, TypedRange};
+
+use super::options::{CatalogueOptions, Checked, ConditionOptions, OutputOptions, medium};
+use super::{CliError, Exit, Outcome, assemble};
+use crate::advise::Verdict;
+use crate::advise::window::{self, Answer, Question, REACH_WIDTHS};
+use crate::catalogue::Catalogue;
+use crate::show::{self, Context, Wish};
+
+/// Which lines fall in this window for these species, and what gets in the way
+///
+/// Lists the features (what the instrument sees as one line) of the species in the range, with
+/// their light and a verdict each: clear below 1 % of light from other species, tinged to 10 %,
+/// blended to 50 %, swamped beyond, unrated where the data do not allow a number.
+#[derive(Args, Debug)]
+#[command(after_help = "Examples:\n  lineclear window 585..590nm --of Na,Ne,He\n  \
+    lineclear window 656.28+-0.5nm --of H,D,C --fwhm 0.05nm --te 3eV\n  \
+    lineclear window 15230..15245cm-1 --of \"H I, Fe I..II\" --as csv")]
+pub struct Arguments {
+    /// Range with its unit: 585..590nm, 656.28+-0.3nm, 15230..15245cm-1, 2.1..2.2eV
+    #[arg(value_name = "RANGE", allow_hyphen_values = true)]
+    range: String,
+    /// Species, separated by commas: Fe (all stages held), "Fe I", Fe+, "Fe I..III", D, 6Li
+    #[arg(long, value_name = "SPECIES", required = true)]
+    of: Vec<String>,
+    /// Medium of wavelengths: auto is air from 200 nm to 2000 nm, vacuum elsewhere
+    #[arg(long, value_parser = medium, default_value = "auto", value_name = "MEDIUM")]
+    medium: Medium,
+    #[command(flatten)]
+    conditions: ConditionOptions,
+    /// Show each component on a row of its own
+    #[arg(long)]
+    components: bool,
+    /// Show only the N brightest features
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u32).range(1..))]
+    strongest: Option<u32>,
+    /// Exit with status 3 unless every feature is at least this clear
+    #[arg(long, value_enum, value_name = "VERDICT")]
+    require: Option<Required>,
+    #[command(flatten)]
+    output: OutputOptions,
+}
+
+#[derive(clap::ValueEnum, Clone, Copy, Debug, PartialEq, Eq)]
+enum Required {
+    Clear,
+    Tinged,
+    Blended,
+}
+
+impl Required {
+    fn allows(self, worst: Verdict) -> bool {
+        let bound = match self {
+            Self::Clear => Verdict::Clear,
+            Self::Tinged => Verdict::Tinged,
+            Self::Blended => Verdict::Blended,
+        };
+        worst <= bound
+    }
+}
+
+pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
+    let requests = species(&arguments.of)?;
+    let typed: TypedRange = arguments.range.parse()?;
+    let range = typed.resolve(arguments.medium, &Air::standard())?;
+    let mut checked = arguments.conditions.check(&range)?;
+    if range.unit_assumed {
+        checked.assumed.push("nm, as the range has no unit".into());
+    }
+    let catalogue = context.open()?;
+    let width_nm = checked.width.at_nm(range.vacuum_high_nm);
+    let margin_nm = REACH_WIDTHS * width_nm;
+    let held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    let question = Question {
+        medium: arguments.medium,
+        width: checked.width,
+        conditions: checked.conditions.clone(),
+        not_held: held.not_held,
+        range,
+    };
+    let answer = window::answer(&question, &held.spectra)?;
+    let exit = match arguments.require {
+        Some(required) if !meets(&answer, required) => Exit::Unmet,
+        _ => Exit::Answered,
+    };
+    let wish = Wish {
+        typed: format!("{} ({})", arguments.range.trim(), read_as(&question)),
+        components: arguments.components,
+        strongest: arguments.strongest.map(|n| n as usize),
+    };
+    let sheet = show::window(&answer, describe(&catalogue, &answer, &question, &checked)?, &wish);
+    Ok(Outcome { sheet, format: arguments.output.format, exit })
+}
+
+/// Species of repeated and comma-separated options.
+pub(super) fn species(lists: &[String]) -> Result<Vec<SpeciesRequest>, CliError> {
+    let mut requests = Vec::new();
+    for list in lists {
+        requests.extend(SpeciesRequest::parse_list(list)?);
+    }
+    Ok(requests)
+}
+
+/// `--require` asks for the upper end of the interval; an answer without a feature requires that
+/// the window could be judged.
+fn meets(answer: &Answer, required: Required) -> bool {
+    answer.features.iter().all(|f| required.allows(f.verdict.high))
+        && answer.unrated.iter().all(|u| !u.decides)
+}
+
+fn read_as(question: &Question) -> &'static str {
+    use vocabulary::light::PositionMedium;
+    match question.range.read_in {
+        Some(PositionMedium::Air) => "read in air",
+        Some(PositionMedium::Vacuum) => "read in vacuum",
+        None => "vacuum wavenumbers",
+    }
+}
+
+fn describe(
+    catalogue: &Catalogue,
+    answer: &Answer,
+    question: &Question,
+    checked: &Checked,
+) -> Result<Context, CliError> {
+    let mut context = Context {
+        command: "window",
+        medium: question.medium.to_string(),
+        conditions: conditions(question, checked),
+        assumed: checked.assumed.clone(),
+        ..Context::default()
+    };
+    let used = |key: &str| {
+        answer.lines.iter().any(|l| {
+            &*l.line.position_source == key || l.line.rate_source.as_deref() == Some(key)
+        })
+    };
+    for (key, citation, licence) in catalogue.citations()? {
+        if used(&key) {
+            context.sources.insert(key, (citation, licence));
+        }
+    }
+    Ok(context)
+}
+
+fn conditions(question: &Question, checked: &Checked) -> Map<String, Value> {
+    let mut out = Map::new();
+    let mut put = |key: &str, value: Value| out.insert(key.to_owned(), value);
+    let model = format!("{:?}", question.conditions.model).to_lowercase();
+    put("model", json!(model));
+    put("electron_temperature_ev", json!(checked.te.ev()));
+    put("electron_density_per_m3", json!(question.conditions.electron_density_per_m3));
+    put("gas_temperature_k", json!(checked.gas.kelvin()));
+    put("fwhm_nm", json!(question.width.at_nm(question.range.centre_vacuum_nm())));
+    put("range_vacuum_nm", json!([question.range.vacuum_low_nm, question.range.vacuum_high_nm]));
+    put("air", json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"));
+    let amounts: Map<String, Value> =
+        checked.amounts.iter().map(|(species, a)| (species.to_string(), json!(a))).collect();
+    put("mix", Value::Object(amounts));
+    out
+}

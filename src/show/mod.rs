@@ -1,0 +1,16 @@
+//! Answers as tables, CSV, JSON and Markdown. No physics here.
+
+mod csv;
+mod json;
+mod line;
+mod listing;
+mod markdown;
+mod number;
+mod sheet;
+mod table;
+pub mod text;
+mod window;
+
+pub use listing::{forgotten, imported, sources};
+pub use sheet::{Align, Column, Context, Format, Sheet};
+pub use window::{Wish, window};

@@ -1,0 +1,323 @@
+//! The answer of `window`.
+
+use std::collections::BTreeSet;
+
+use serde_json::{Map, Value, json};
+use vocabulary::spectrum::Line;
+
+use super::line::{line_object, position_cell, put_verdict, rate_cell, transition_cell};
+use super::number::percent;
+use super::sheet::{Align, Column, Context, Sheet};
+use crate::advise::Verdict;
+use crate::advise::window::{Answer, WindowFeature, WindowLine};
+
+const COLUMNS: [Column; 9] = [
+    Column { title: "position / nm", align: Align::Left },
+    Column { title: "species", align: Align::Left },
+    Column { title: "lower → upper", align: Align::Left },
+    Column { title: "lower / cm⁻¹", align: Align::Right },
+    Column { title: "rate / s⁻¹", align: Align::Left },
+    Column { title: "light", align: Align::Right },
+    Column { title: "verdict", align: Align::Left },
+    Column { title: "worst interferer", align: Align::Left },
+    Column { title: "source", align: Align::Left },
+];
+
+/// How the answer is to be shown.
+pub struct Wish {
+    /// What was asked, as typed.
+    pub typed: String,
+    /// Show components, not features.
+    pub components: bool,
+    /// Show only so many features, the brightest.
+    pub strongest: Option<usize>,
+}
+
+/// Builds the sheet of a window.
+pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
+    let shown = chosen(answer, wish.strongest);
+    let mut notes = notes(answer, &context);
+    if shown.len() < answer.features.len() {
+        let (some, all) = (shown.len(), answer.features.len());
+        notes.insert(0, format!("Shown: the {some} brightest of {all} features."));
+    }
+    let rows = if wish.components {
+        component_rows(answer, &shown)
+    } else {
+        shown.iter().map(|&f| feature_row(answer, f)).collect()
+    };
+    let object = object(answer, &shown, context, &notes);
+    Sheet {
+        headline: headline(answer, wish),
+        columns: COLUMNS.to_vec(),
+        rows,
+        notes,
+        object,
+        list: "lines",
+    }
+}
+
+/// Features to show, by wavelength.
+fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<usize> {
+    let mut all: Vec<usize> = (0..answer.features.len()).collect();
+    if let Some(count) = strongest {
+        let light = |f: usize| answer.features[f].light_fraction.unwrap_or(-1.0);
+        all.sort_by(|&a, &b| light(b).total_cmp(&light(a)).then(a.cmp(&b)));
+        all.truncate(count);
+        all.sort_unstable();
+    }
+    all
+}
+
+fn headline(answer: &Answer, wish: &Wish) -> Vec<String> {
+    if answer.features.is_empty() {
+        let judged = answer.unrated.iter().all(|u| !u.decides);
+        let end = if judged {
+            "within the declared scope of the sources there is none".to_owned()
+        } else {
+            "and the window cannot be judged (see below)".to_owned()
+        };
+        return vec![format!("{}: no line is held for these species; {end}.", wish.typed)];
+    }
+    let species: BTreeSet<String> = answer.features.iter().map(|f| f.species.to_string()).collect();
+    let count = answer.features.len();
+    let plural = if count == 1 { "feature" } else { "features" };
+    let first = format!("{}: {count} {plural} of {} species.", wish.typed, species.len());
+    let mut out = vec![first];
+    for verdict in
+        [Verdict::Clear, Verdict::Tinged, Verdict::Blended, Verdict::Swamped, Verdict::Unrated]
+    {
+        out.extend(verdict_words(answer, verdict));
+    }
+    out
+}
+
+/// How many features a verdict's line of words names.
+const NAMED: usize = 5;
+
+fn verdict_words(answer: &Answer, verdict: Verdict) -> Option<String> {
+    let mut of: Vec<&WindowFeature> =
+        answer.features.iter().filter(|f| f.verdict.central == verdict).collect();
+    if of.is_empty() {
+        return None;
+    }
+    of.sort_by(|a, b| b.light_fraction.unwrap_or(0.0).total_cmp(&a.light_fraction.unwrap_or(0.0)));
+    let names: Vec<String> = of
+        .iter()
+        .take(NAMED)
+        .map(|f| format!("{} {:.3}", f.species, f.placed.wavelength_nm))
+        .collect();
+    let rest = of.len().saturating_sub(NAMED);
+    let more = if rest > 0 { format!(" and {rest} more") } else { String::new() };
+    Some(format!("{verdict}: {}{more}.", names.join(", ")))
+}
+
+fn feature_row(answer: &Answer, index: usize) -> Vec<String> {
+    let feature = &answer.features[index];
+    let lines: Vec<&WindowLine> = feature.components.iter().map(|&l| &answer.lines[l]).collect();
+    let strongest = lines.iter().copied().max_by(|a, b| {
+        a.light_fraction.unwrap_or(-1.0).total_cmp(&b.light_fraction.unwrap_or(-1.0))
+    });
+    let Some(strongest) = strongest else { return vec![String::new(); COLUMNS.len()] };
+    let transition = match lines.len() {
+        1 => transition_cell(&strongest.line),
+        n => format!("{} ({n} components)", multiplet_cell(&strongest.line)),
+    };
+    let rate = rate_cell(feature.rate_per_s, feature.rate_relative_uncertainty);
+    let mut row = vec![position_cell(&feature.placed), feature.species.to_string(), transition];
+    row.push(lower_cell(&strongest.line));
+    row.push(rate);
+    row.push(feature.light_fraction.map_or_else(|| "?".into(), percent));
+    row.push(feature.verdict.to_string());
+    row.push(worst_cell(feature));
+    row.push(sources_cell(lines.iter().map(|l| &l.line)));
+    row
+}
+
+/// The transition without J: `1s 2p 3Po → 1s 3d 3D`.
+fn multiplet_cell(line: &Line) -> String {
+    let mut bare = line.clone();
+    for level in [&mut bare.lower, &mut bare.upper].into_iter().flatten() {
+        std::sync::Arc::make_mut(level).j = None;
+    }
+    transition_cell(&bare)
+}
+
+fn component_rows(answer: &Answer, shown: &[usize]) -> Vec<Vec<String>> {
+    let of_shown = |l: &&WindowLine| shown.contains(&l.feature);
+    answer
+        .lines
+        .iter()
+        .filter(of_shown)
+        .map(|line| {
+            let feature = &answer.features[line.feature];
+            vec![
+                position_cell(&line.placed),
+                feature.species.to_string(),
+                transition_cell(&line.line),
+                lower_cell(&line.line),
+                rate_cell(line.line.rate_per_s, line.line.rate_relative_uncertainty),
+                line.light_fraction.map_or_else(|| "?".into(), percent),
+                feature.verdict.to_string(),
+                worst_cell(feature),
+                sources_cell(std::iter::once(&line.line)),
+            ]
+        })
+        .collect()
+}
+
+fn lower_cell(line: &Line) -> String {
+    line.lower.as_ref().map_or_else(|| "?".into(), |l| format!("{:.1}", l.energy_per_cm))
+}
+
+fn worst_cell(feature: &WindowFeature) -> String {
+    match &feature.worst {
+        None => "none".into(),
+        Some(worst) => {
+            let wing = if worst.wing { " (wing)" } else { "" };
+            let nm = feature.worst_placed.map_or(worst.vacuum_nm, |p| p.wavelength_nm);
+            format!("{} {nm:.3}{wing} {}", worst.species, percent(worst.fraction))
+        }
+    }
+}
+
+/// Sources of position and rate, each once.
+fn sources_cell<'l>(lines: impl Iterator<Item = &'l Line>) -> String {
+    let mut keys: Vec<&str> = Vec::new();
+    for line in lines {
+        for key in [Some(&*line.position_source), line.rate_source.as_deref()].into_iter().flatten() {
+            if !keys.contains(&key) {
+                keys.push(key);
+            }
+        }
+    }
+    keys.join(" ")
+}
+
+fn notes(answer: &Answer, context: &Context) -> Vec<String> {
+    let mut notes = Vec::new();
+    for feature in &answer.features {
+        if !feature.remarks.is_empty() {
+            let name = format!("{} {:.3}", feature.species, feature.placed.wavelength_nm);
+            notes.push(format!("{name}: {}.", feature.remarks.join("; ")));
+        }
+    }
+    join_like(&mut notes);
+    let (deciding, others): (Vec<_>, Vec<_>) = answer.unrated.iter().partition(|u| u.decides);
+    for species in deciding {
+        notes.push(format!("{}: {}, so the window cannot be judged for it.", species.species, species.reason));
+    }
+    if !others.is_empty() {
+        let names: Vec<&str> = others.iter().map(|u| u.species.as_str()).collect();
+        notes.push(format!(
+            "Not judged, as no more than lines from the ground term are held here: {}; name the \
+             stage to have it count.",
+            names.join(", ")
+        ));
+    }
+    if !context.assumed.is_empty() {
+        notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
+    }
+    notes.push(
+        "Optically thin; light is power; populations of LTE inside each species, Planck–Larkin \
+         weighted; Doppler, natural and Gaussian instrument widths (Voigt)."
+            .into(),
+    );
+    if !answer.lower_bounds.is_empty() {
+        let names: Vec<String> = answer.lower_bounds.iter().map(ToString::to_string).collect();
+        notes.push(format!(
+            "Levels are missing that could raise the partition function by over 1 % (it is a lower \
+             bound): {}.",
+            names.join(", ")
+        ));
+    }
+    if answer.unstated_rates {
+        notes.push("±? marks rates whose source states no uncertainty; 50 % is taken.".into());
+    }
+    if answer.air_extrapolated {
+        notes.push("The index of air is extrapolated here (published for 300–1690 nm).".into());
+    }
+    notes.extend(context.source_notes());
+    notes
+}
+
+/// Features that say the same are said in one sentence.
+fn join_like(notes: &mut Vec<String>) {
+    let mut joined: Vec<(String, Vec<String>)> = Vec::new();
+    for note in notes.drain(..) {
+        let Some((name, said)) = note.split_once(": ") else { continue };
+        match joined.iter_mut().find(|(known, _)| known == said) {
+            Some((_, names)) => names.push(name.to_owned()),
+            None => joined.push((said.to_owned(), vec![name.to_owned()])),
+        }
+    }
+    notes.extend(joined.into_iter().map(|(said, names)| {
+        let more = names.len().saturating_sub(NAMED);
+        let end = if more > 0 { format!(" and {more} more") } else { String::new() };
+        format!("{}{end}: {said}", names[..names.len().min(NAMED)].join(", "))
+    }));
+}
+
+fn object(
+    answer: &Answer,
+    shown: &[usize],
+    context: Context,
+    notes: &[String],
+) -> Map<String, Value> {
+    let mut object = context.object(notes);
+    let kept: Vec<usize> =
+        (0..answer.lines.len()).filter(|&l| shown.contains(&answer.lines[l].feature)).collect();
+    let new_index = |old: usize| kept.iter().position(|&k| k == old);
+    let lines: Vec<Value> = kept
+        .iter()
+        .map(|&l| {
+            let line = &answer.lines[l];
+            let feature = &answer.features[line.feature];
+            let mut object = line_object(&line.line, &line.placed);
+            let position = shown.iter().position(|&f| f == line.feature);
+            object.insert("feature".into(), json!(position));
+            object.insert("light_fraction".into(), json!(line.light_fraction));
+            put_verdict(&mut object, feature.verdict, feature.worst.as_ref());
+            Value::Object(object)
+        })
+        .collect();
+    let features: Vec<Value> = shown
+        .iter()
+        .map(|&f| {
+            let feature = &answer.features[f];
+            let components: Vec<Option<usize>> =
+                feature.components.iter().map(|&l| new_index(l)).collect();
+            feature_object(feature, &components)
+        })
+        .collect();
+    let unrated: Vec<Value> = answer
+        .unrated
+        .iter()
+        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides}))
+        .collect();
+    object.insert("lines".into(), Value::Array(lines));
+    object.insert("features".into(), Value::Array(features));
+    object.insert("unrated".into(), Value::Array(unrated));
+    object
+}
+
+fn feature_object(feature: &WindowFeature, components: &[Option<usize>]) -> Value {
+    let mut object = Map::new();
+    let mut put = |key: &str, value: Value| object.insert(key.to_owned(), value);
+    put("species", json!(feature.species.to_string()));
+    put("wavelength_nm", json!(feature.placed.wavelength_nm));
+    put("medium", json!(super::line::medium_word(feature.placed.medium)));
+    put("vacuum_wavelength_nm", json!(feature.placed.vacuum_nm));
+    put("components", json!(components));
+    put("rate_per_s", json!(feature.rate_per_s));
+    put("rate_relative_uncertainty", json!(feature.rate_relative_uncertainty));
+    put("light_fraction", json!(feature.light_fraction));
+    put("interference_fraction", json!(feature.interference.map(|i| i.fraction)));
+    put("interference_low", json!(feature.interference.map(|i| i.low)));
+    put("interference_high", json!(feature.interference.map(|i| i.high)));
+    put("own_species_fraction", json!(feature.own_species_fraction));
+    put("unlisted_chance", json!(feature.unlisted_chance));
+    put("remarks", json!(feature.remarks));
+    put_verdict(&mut object, feature.verdict, feature.worst.as_ref());
+    Value::Object(object)
+}
