@@ -34,7 +34,7 @@ pub fn placed(
         PositionMedium::Vacuum => (vacuum_nm, false),
         PositionMedium::Air => {
             let index = air.index(vacuum_nm)?;
-            (vacuum_nm / index.value, index.extrapolated)
+            (vacuum_nm / index.index, index.extrapolated)
         }
     };
     Ok(Placed { wavelength_nm, uncertainty_nm, medium, vacuum_nm, extrapolated })

@@ -85,7 +85,7 @@ pub(super) fn refresh(
     catalogue: &mut Catalogue,
     progress: &mut dyn FnMut(u64, u64),
 ) -> Result<bool> {
-    let read = catalogue.failed("read");
+    let read = failed(&catalogue.path, "read");
     let built_from: Option<String> = catalogue
         .connection
         .query_row("SELECT value FROM about WHERE name = 'bundle'", [], |row| row.get(0))

@@ -91,7 +91,7 @@ impl SourceFiles {
     }
 }
 
-fn unreadable(path: &Path) -> impl Fn(io::Error) -> CatalogueError {
+fn unreadable(path: &Path) -> impl Fn(io::Error) -> CatalogueError + use<> {
     let path = path.to_owned();
     move |cause| CatalogueError::File { path: path.clone(), action: "read", cause }
 }

@@ -138,7 +138,7 @@ impl Catalogue {
     }
 
     /// Turns an SQLite error into one of the catalogue.
-    pub(super) fn failed(&self, action: &'static str) -> impl Fn(rusqlite::Error) -> CatalogueError {
+    pub(super) fn failed(&self, action: &'static str) -> impl Fn(rusqlite::Error) -> CatalogueError + use<> {
         failed(&self.path, action)
     }
 }
@@ -146,7 +146,7 @@ impl Catalogue {
 pub(super) fn failed(
     path: &Path,
     action: &'static str,
-) -> impl Fn(rusqlite::Error) -> CatalogueError {
+) -> impl Fn(rusqlite::Error) -> CatalogueError + use<> {
     let path = path.to_owned();
     move |cause| CatalogueError::Sqlite { path: path.clone(), action, cause }
 }
