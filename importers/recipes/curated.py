@@ -26,6 +26,8 @@ import curated_rates as rates
 
 HERE = os.path.dirname(os.path.abspath(__file__))
 LEVEL_COLUMNS = "species energy_per_cm uncertainty_per_cm configuration term j g".split()
+# The index of air is not known beyond: such lines are given where their levels put them.
+HIGHEST_AIR_NM = 2500.0
 LINE_COLUMNS = ("species kind wavelength_nm medium wavelength_uncertainty_nm lower_energy_per_cm lower_j upper_energy_per_cm "
                 "upper_j rate_per_s rate_relative_uncertainty rate_origin from_levels row").split()
 SCALE_FROM_TERM = 3.0
@@ -167,6 +169,8 @@ class Ion:
         blends = decided(self.decisions, "blend", self.name, wavelength_nm=row["wavelength_nm"], lower_j=pair[1], upper_j=pair[3])
         measured = dict(kind="line", pair=pair, wavelength=row["wavelength_nm"], medium=row["medium"],
                         sigma=f"{self.wavelength_sigma(row, pair):.4g}", row=number)
+        if not blends and row["medium"] == "air" and float(row["wavelength_nm"]) > HIGHEST_AIR_NM:
+            return [self.ritz_row(pair, number)]
         if not blends:
             return [measured]
         strongest = blends[0].get("strongest_upper_j")

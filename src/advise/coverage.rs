@@ -24,6 +24,8 @@ pub enum Coverage {
     },
     /// Lines are complete down to a light of `limit`; above it the band holds `per_nm` lines.
     DownTo {
+        /// The claim: a part of the strongest line in the band.
+        fraction: f64,
         /// Light of the weakest line that must be listed.
         limit: f64,
         /// Listed lines per nm in the band.
@@ -45,6 +47,7 @@ impl Coverage {
         match scope.completeness.limit() {
             None => Self::Nothing { ground_term: scope.completeness == Completeness::GroundTerm },
             Some(fraction) => Self::DownTo {
+                fraction,
                 limit: fraction * emitter.strongest(spectrum, scope.from_nm, scope.to_nm),
                 per_nm: density(spectrum, scope),
             },

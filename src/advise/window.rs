@@ -93,6 +93,8 @@ pub struct Answer {
     pub features: Vec<WindowFeature>,
     /// Species that cannot be judged.
     pub unrated: Vec<Unjudged>,
+    /// Species covered here, and the part of their strongest line down to which they are.
+    pub complete_down_to: Vec<(Species, f64)>,
     /// Species whose partition function is a lower bound.
     pub lower_bounds: Vec<Species>,
     /// Lines without a stated rate uncertainty were used.
@@ -128,6 +130,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     let emits = |s: usize| chosen.iter().any(|&f| scene.features[f].spectrum == s);
     Ok(Answer {
         unrated,
+        complete_down_to: judge.complete_down_to(),
         lower_bounds: (0..spectra.len())
             .filter(|&s| emits(s) && scene.emitters[s].is_lower_bound())
             .map(|s| spectra[s].species)
@@ -226,6 +229,14 @@ impl<'a, 's> Judge<'a, 's> {
             .zip(&self.coverage)
             .any(|(s, c)| same_element(s) && known(c));
         this.named || !element_known
+    }
+
+    fn complete_down_to(&self) -> Vec<(Species, f64)> {
+        let known = |(spectrum, coverage): (&Spectrum, &Coverage)| match *coverage {
+            Coverage::DownTo { fraction, .. } => Some((spectrum.species, fraction)),
+            Coverage::Nothing { .. } => None,
+        };
+        self.scene.spectra.iter().zip(&self.coverage).filter_map(known).collect()
     }
 
     fn unjudged(&self, not_held: &[String]) -> Vec<Unjudged> {
@@ -398,12 +409,18 @@ impl<'a, 's> Judge<'a, 's> {
         let light = target.light.unwrap_or(0.0);
         let width_nm = self.scene.width.at_nm(target.nm);
         let mut expected = 0.0;
+        let mut likeliest = (0.0, target.spectrum);
         for (s, coverage) in self.coverage.iter().enumerate() {
             if s == target.spectrum || self.scene.spectra[s].amount == 0.0 {
                 continue;
             }
             match coverage.expected_unlisted(light, width_nm) {
-                Some(number) => expected += number,
+                Some(number) => {
+                    expected += number;
+                    if number > likeliest.0 {
+                        likeliest = (number, s);
+                    }
+                }
                 None if self.decides(s) => {
                     out.verdict = VerdictRange::UNRATED;
                     let species = self.scene.spectra[s].species;
@@ -416,12 +433,16 @@ impl<'a, 's> Judge<'a, 's> {
             out.verdict = VerdictRange::UNRATED;
             out.remarks.push("nothing is held of a species that was asked for".into());
         }
-        self.chance(1.0 - (-expected).exp(), out);
+        let species = self.scene.spectra[likeliest.1].species;
+        self.chance(1.0 - (-expected).exp(), species, out);
     }
 
-    fn chance(&self, chance: f64, out: &mut WindowFeature) {
+    fn chance(&self, chance: f64, likeliest: Species, out: &mut WindowFeature) {
         out.unlisted_chance = chance;
-        let said = format!("{:.0} % chance that an unlisted line interferes", 100.0 * chance);
+        let said = format!(
+            "{:.0} % chance that an unlisted line interferes, most likely of {likeliest}",
+            100.0 * chance
+        );
         if chance > CHANCE_UNRATED {
             out.verdict = VerdictRange::UNRATED;
             out.remarks.push(said);

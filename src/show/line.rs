@@ -4,7 +4,7 @@ use serde_json::{Map, Value, json};
 use vocabulary::light::PositionMedium;
 use vocabulary::spectrum::{Level, Line, LineKind, PositionOrigin, RateOrigin};
 
-use super::number::{plus_minus, rate, with_uncertainty};
+use super::number::{in_table, plus_minus, rate};
 use crate::advise::{Placed, VerdictRange, Worst};
 
 /// `air` or `vacuum`.
@@ -95,23 +95,55 @@ pub(super) fn put_verdict(
     object.insert("worst".into(), worst.unwrap_or(Value::Null));
 }
 
-/// `587.5621(3) air`.
-pub(super) fn position_cell(placed: &Placed) -> String {
-    let medium = medium_word(placed.medium);
-    format!("{} {medium}", with_uncertainty(placed.wavelength_nm, placed.uncertainty_nm))
+/// `587.5621(3)`; the medium behind it where the table's heading does not say it.
+pub(super) fn position_cell(placed: &Placed, name_medium: bool) -> String {
+    let position = in_table(placed.wavelength_nm, placed.uncertainty_nm);
+    if name_medium { format!("{position}\n{}", medium_word(placed.medium)) } else { position }
 }
 
-/// `1s 2p 3Po 2 → 1s 3d 3D 3`; `?` for a level that is not known.
+/// `1s 2p 3Po 2 → 1s 3d 3D 3`; `?` for a level that is not known. Core shells that both ends share
+/// are left out.
 pub(super) fn transition_cell(line: &Line) -> String {
-    format!("{} → {}", level_cell(line.lower.as_deref()), level_cell(line.upper.as_deref()))
+    transition(line, true)
 }
 
-fn level_cell(level: Option<&Level>) -> String {
+/// The transition without J.
+pub(super) fn multiplet_cell(line: &Line) -> String {
+    transition(line, false)
+}
+
+fn transition(line: &Line, with_j: bool) -> String {
+    let shells = |level: &Option<std::sync::Arc<Level>>| -> Vec<String> {
+        let text = level.as_ref().and_then(|l| l.configuration.clone());
+        let mut shells: Vec<String> =
+            text.iter().flat_map(|t| t.split_whitespace()).map(str::to_owned).collect();
+        let closed = shells.iter().take_while(|s| is_closed(s)).count();
+        shells.drain(..closed.min(shells.len().saturating_sub(1)));
+        shells
+    };
+    let (mut lower, mut upper) = (shells(&line.lower), shells(&line.upper));
+    while lower.len() > 1 && upper.len() > 1 && lower[0] == upper[0] {
+        lower.remove(0);
+        upper.remove(0);
+    }
+    let cell = |level: &Option<std::sync::Arc<Level>>, shells: &[String]| {
+        level_cell(level.as_deref(), &shells.join(" "), with_j)
+    };
+    format!("{} →\n{}", cell(&line.lower, &lower), cell(&line.upper, &upper))
+}
+
+fn is_closed(shell: &str) -> bool {
+    ["s2", "p6", "d10", "f14"].iter().any(|full| {
+        shell.strip_suffix(full).is_some_and(|n| !n.is_empty() && n.bytes().all(|b| b.is_ascii_digit()))
+    })
+}
+
+fn level_cell(level: Option<&Level>, configuration: &str, with_j: bool) -> String {
     let Some(level) = level else { return "?".into() };
-    let j = level.j.map(|j| j.to_string());
-    let parts = [level.configuration.as_deref(), level.term.as_deref(), j.as_deref()];
-    let known: Vec<&str> = parts.into_iter().flatten().collect();
-    if known.is_empty() { format!("{:.0}", level.energy_per_cm) } else { known.join(" ") }
+    let j = level.j.filter(|_| with_j).map(|j| j.to_string()).unwrap_or_default();
+    let parts = [configuration, level.term.as_deref().unwrap_or_default(), &j];
+    let known: Vec<&str> = parts.into_iter().filter(|p| !p.is_empty()).collect();
+    if known.is_empty() { format!("{:.0} cm⁻¹", level.energy_per_cm) } else { known.join(" ") }
 }
 
 /// `7.07e7 ±1 %`, `?` where no rate is known.

@@ -42,7 +42,7 @@ pub fn imported(summary: &ImportSummary, dry_run: bool) -> Sheet {
     Sheet {
         headline: vec![import_words(summary, dry_run)],
         columns: ["place", "column", "text", "refused because"]
-            .map(|title| Column { title, align: Align::Left })
+            .map(|title| Column::wrapped(title, Align::Left))
             .to_vec(),
         rows: summary.refused.iter().map(refused_row).collect(),
         notes: summary.warnings.clone(),
@@ -84,13 +84,13 @@ pub fn forgotten(key: &str, reports: u64) -> Sheet {
 }
 
 const SOURCE_COLUMNS: [Column; 7] = [
-    Column { title: "key", align: Align::Left },
-    Column { title: "kind", align: Align::Left },
-    Column { title: "species", align: Align::Right },
-    Column { title: "levels", align: Align::Right },
-    Column { title: "lines", align: Align::Right },
-    Column { title: "licence", align: Align::Left },
-    Column { title: "citation", align: Align::Left },
+    Column::whole("key", Align::Left),
+    Column::whole("kind", Align::Left),
+    Column::whole("species", Align::Right),
+    Column::whole("levels", Align::Right),
+    Column::whole("lines", Align::Right),
+    Column::whole("licence", Align::Left),
+    Column::wrapped("citation", Align::Left),
 ];
 
 /// What is loaded.

@@ -16,6 +16,16 @@ pub fn with_uncertainty(value: f64, sigma: f64) -> String {
     format!("{value:.decimals$}({last:.0})")
 }
 
+/// As [`with_uncertainty`], with five decimals at most: a smaller σ shows as one unit of the fifth.
+pub fn in_table(value: f64, sigma: f64) -> String {
+    with_uncertainty(value, if sigma > 0.0 { sigma.max(1e-5) } else { sigma })
+}
+
+/// As [`percent`], without the blank, for narrow columns.
+pub fn percent_in_table(fraction: f64) -> String {
+    percent(fraction).replace(' ', "")
+}
+
 /// A rate such as `6.16e7`, three significant digits.
 pub fn rate(rate_per_s: f64) -> String {
     format!("{rate_per_s:.2e}")
@@ -37,9 +47,9 @@ pub fn percent(fraction: f64) -> String {
     }
 }
 
-/// A relative uncertainty: ` ±1 %`, nothing where it is not stated.
+/// A relative uncertainty in whole per cent, at least 1: ` ±1%`; ` ±?` where it is not stated.
 pub fn plus_minus(relative: Option<f64>) -> String {
-    relative.map_or_else(|| " ±?".into(), |r| format!(" ±{}", percent(r)))
+    relative.map_or_else(|| " ±?".into(), |r| format!(" ±{:.0}%", (100.0 * r).max(1.0)))
 }
 
 #[cfg(test)]

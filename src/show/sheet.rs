@@ -38,6 +38,20 @@ pub struct Column {
     pub title: &'static str,
     /// Its side.
     pub align: Align,
+    /// Its cells may be broken into lines.
+    pub wraps: bool,
+}
+
+impl Column {
+    /// A column whose cells stay on one line.
+    pub const fn whole(title: &'static str, align: Align) -> Self {
+        Self { title, align, wraps: false }
+    }
+
+    /// A column whose cells are broken where space is short.
+    pub const fn wrapped(title: &'static str, align: Align) -> Self {
+        Self { title, align, wraps: true }
+    }
 }
 
 /// What every answer states beside its rows.

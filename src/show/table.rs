@@ -3,7 +3,7 @@
 use std::io::{self, Write};
 
 use comfy_table::presets::NOTHING;
-use comfy_table::{CellAlignment, ContentArrangement, LineStyle, Table};
+use comfy_table::{CellAlignment, ColumnConstraint, ContentArrangement, LineStyle, Table};
 
 use super::sheet::{Align, Sheet};
 use super::text::{safe, wrap};
@@ -43,7 +43,10 @@ fn fill(table: &mut Table, sheet: &Sheet, width: u16) {
     }
     for (index, column) in sheet.columns.iter().enumerate() {
         if let Some(cells) = table.column_mut(index) {
-            cells.set_padding((0, 2));
+            cells.set_padding((0, 1));
+            if !column.wraps {
+                cells.set_constraint(ColumnConstraint::ContentWidth);
+            }
             if column.align == Align::Right {
                 cells.set_cell_alignment(CellAlignment::Right);
             }

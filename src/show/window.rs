@@ -3,24 +3,28 @@
 use std::collections::BTreeSet;
 
 use serde_json::{Map, Value, json};
+use vocabulary::light::PositionMedium;
 use vocabulary::spectrum::Line;
 
-use super::line::{line_object, position_cell, put_verdict, rate_cell, transition_cell};
-use super::number::percent;
+use super::line::{
+    line_object, multiplet_cell, position_cell, put_verdict, rate_cell, transition_cell,
+};
+use super::number::{percent, percent_in_table};
 use super::sheet::{Align, Column, Context, Sheet};
 use crate::advise::Verdict;
 use crate::advise::window::{Answer, WindowFeature, WindowLine};
 
+/// Columns; the heading of the first names the medium where it is one for all rows.
 const COLUMNS: [Column; 9] = [
-    Column { title: "position / nm", align: Align::Left },
-    Column { title: "species", align: Align::Left },
-    Column { title: "lower → upper", align: Align::Left },
-    Column { title: "lower / cm⁻¹", align: Align::Right },
-    Column { title: "rate / s⁻¹", align: Align::Left },
-    Column { title: "light", align: Align::Right },
-    Column { title: "verdict", align: Align::Left },
-    Column { title: "worst interferer", align: Align::Left },
-    Column { title: "source", align: Align::Left },
+    Column::whole("position\nnm", Align::Left),
+    Column::whole("species", Align::Left),
+    Column::wrapped("lower → upper", Align::Left),
+    Column::whole("lower\ncm⁻¹", Align::Right),
+    Column::whole("rate\ns⁻¹", Align::Left),
+    Column::whole("light", Align::Right),
+    Column::whole("verdict", Align::Left),
+    Column::wrapped("worst\ninterferer", Align::Left),
+    Column::whole("source", Align::Left),
 ];
 
 /// How the answer is to be shown.
@@ -41,15 +45,22 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
         let (some, all) = (shown.len(), answer.features.len());
         notes.insert(0, format!("Shown: the {some} brightest of {all} features."));
     }
+    let medium = one_medium(answer, &shown);
     let rows = if wish.components {
-        component_rows(answer, &shown)
+        component_rows(answer, &shown, medium.is_none())
     } else {
-        shown.iter().map(|&f| feature_row(answer, f)).collect()
+        shown.iter().map(|&f| feature_row(answer, f, medium.is_none())).collect()
+    };
+    let mut columns = COLUMNS.to_vec();
+    columns[0].title = match medium {
+        Some(PositionMedium::Air) => "position\nnm in air",
+        Some(PositionMedium::Vacuum) => "position\nnm in vacuum",
+        None => "position\nnm",
     };
     let object = object(answer, &shown, context, &notes);
     Sheet {
         headline: headline(answer, wish),
-        columns: COLUMNS.to_vec(),
+        columns,
         rows,
         notes,
         object,
@@ -69,13 +80,19 @@ fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<usize> {
     all
 }
 
+/// The medium of all positions shown, where it is one.
+fn one_medium(answer: &Answer, shown: &[usize]) -> Option<PositionMedium> {
+    let mut media = shown.iter().map(|&f| answer.features[f].placed.medium);
+    let first = media.next()?;
+    media.all(|m| m == first).then_some(first)
+}
+
 fn headline(answer: &Answer, wish: &Wish) -> Vec<String> {
     if answer.features.is_empty() {
-        let judged = answer.unrated.iter().all(|u| !u.decides);
-        let end = if judged {
-            "within the declared scope of the sources there is none".to_owned()
-        } else {
+        let end = if answer.unrated.iter().any(|u| u.decides) {
             "and the window cannot be judged (see below)".to_owned()
+        } else {
+            beyond_scope(answer)
         };
         return vec![format!("{}: no line is held for these species; {end}.", wish.typed)];
     }
@@ -90,6 +107,23 @@ fn headline(answer: &Answer, wish: &Wish) -> Vec<String> {
         out.extend(verdict_words(answer, verdict));
     }
     out
+}
+
+/// What may be there although nothing is listed.
+fn beyond_scope(answer: &Answer) -> String {
+    let partly: Vec<String> = answer
+        .complete_down_to
+        .iter()
+        .filter(|(_, limit)| *limit > 0.0)
+        .map(|(species, limit)| format!("{species} {}", percent(*limit)))
+        .collect();
+    if partly.is_empty() {
+        return "and their sources claim to list them all".into();
+    }
+    format!(
+        "lines weaker than this part of the strongest may be there unlisted: {}",
+        partly.join(", ")
+    )
 }
 
 /// How many features a verdict's line of words names.
@@ -112,7 +146,7 @@ fn verdict_words(answer: &Answer, verdict: Verdict) -> Option<String> {
     Some(format!("{verdict}: {}{more}.", names.join(", ")))
 }
 
-fn feature_row(answer: &Answer, index: usize) -> Vec<String> {
+fn feature_row(answer: &Answer, index: usize, name_medium: bool) -> Vec<String> {
     let feature = &answer.features[index];
     let lines: Vec<&WindowLine> = feature.components.iter().map(|&l| &answer.lines[l]).collect();
     let strongest = lines.iter().copied().max_by(|a, b| {
@@ -121,29 +155,20 @@ fn feature_row(answer: &Answer, index: usize) -> Vec<String> {
     let Some(strongest) = strongest else { return vec![String::new(); COLUMNS.len()] };
     let transition = match lines.len() {
         1 => transition_cell(&strongest.line),
-        n => format!("{} ({n} components)", multiplet_cell(&strongest.line)),
+        n => format!("{}\n({n} components)", multiplet_cell(&strongest.line)),
     };
     let rate = rate_cell(feature.rate_per_s, feature.rate_relative_uncertainty);
-    let mut row = vec![position_cell(&feature.placed), feature.species.to_string(), transition];
+    let mut row = vec![position_cell(&feature.placed, name_medium), feature.species.to_string(), transition];
     row.push(lower_cell(&strongest.line));
     row.push(rate);
-    row.push(feature.light_fraction.map_or_else(|| "?".into(), percent));
+    row.push(feature.light_fraction.map_or_else(|| "?".into(), percent_in_table));
     row.push(feature.verdict.to_string());
     row.push(worst_cell(feature));
     row.push(sources_cell(lines.iter().map(|l| &l.line)));
     row
 }
 
-/// The transition without J: `1s 2p 3Po → 1s 3d 3D`.
-fn multiplet_cell(line: &Line) -> String {
-    let mut bare = line.clone();
-    for level in [&mut bare.lower, &mut bare.upper].into_iter().flatten() {
-        std::sync::Arc::make_mut(level).j = None;
-    }
-    transition_cell(&bare)
-}
-
-fn component_rows(answer: &Answer, shown: &[usize]) -> Vec<Vec<String>> {
+fn component_rows(answer: &Answer, shown: &[usize], name_medium: bool) -> Vec<Vec<String>> {
     let of_shown = |l: &&WindowLine| shown.contains(&l.feature);
     answer
         .lines
@@ -152,12 +177,12 @@ fn component_rows(answer: &Answer, shown: &[usize]) -> Vec<Vec<String>> {
         .map(|line| {
             let feature = &answer.features[line.feature];
             vec![
-                position_cell(&line.placed),
+                position_cell(&line.placed, name_medium),
                 feature.species.to_string(),
                 transition_cell(&line.line),
                 lower_cell(&line.line),
                 rate_cell(line.line.rate_per_s, line.line.rate_relative_uncertainty),
-                line.light_fraction.map_or_else(|| "?".into(), percent),
+                line.light_fraction.map_or_else(|| "?".into(), percent_in_table),
                 feature.verdict.to_string(),
                 worst_cell(feature),
                 sources_cell(std::iter::once(&line.line)),
@@ -167,17 +192,20 @@ fn component_rows(answer: &Answer, shown: &[usize]) -> Vec<Vec<String>> {
 }
 
 fn lower_cell(line: &Line) -> String {
-    line.lower.as_ref().map_or_else(|| "?".into(), |l| format!("{:.1}", l.energy_per_cm))
+    line.lower.as_ref().map_or_else(|| "?".into(), |l| format!("{:.0}", l.energy_per_cm))
 }
 
+/// Below this part of the target's light an interferer is not worth a cell.
+const WORTH_NAMING: f64 = 1e-5;
+
 fn worst_cell(feature: &WindowFeature) -> String {
-    match &feature.worst {
-        None => "none".into(),
-        Some(worst) => {
-            let wing = if worst.wing { " (wing)" } else { "" };
-            let nm = feature.worst_placed.map_or(worst.vacuum_nm, |p| p.wavelength_nm);
-            format!("{} {nm:.3}{wing} {}", worst.species, percent(worst.fraction))
+    match feature.worst.as_ref().zip(feature.worst_placed) {
+        Some((worst, placed)) if worst.fraction >= WORTH_NAMING => {
+            let wing = if worst.wing { " wing" } else { "" };
+            let part = percent_in_table(worst.fraction);
+            format!("{} {:.3}\n{part}{wing}", worst.species, placed.wavelength_nm)
         }
+        _ => "none".into(),
     }
 }
 
@@ -191,7 +219,15 @@ fn sources_cell<'l>(lines: impl Iterator<Item = &'l Line>) -> String {
             }
         }
     }
-    keys.join(" ")
+    keys.iter().map(|key| broken(key)).collect::<Vec<_>>().join("\n")
+}
+
+/// A long key is broken behind its first hyphen.
+fn broken(key: &str) -> String {
+    match key.split_once('-') {
+        Some((head, tail)) if key.len() > 10 => format!("{head}-\n{tail}"),
+        _ => key.to_owned(),
+    }
 }
 
 fn notes(answer: &Answer, context: &Context) -> Vec<String> {
