@@ -3,8 +3,8 @@
 pub use importers;
 pub use vocabulary;
 
+pub mod advise;
 pub mod calc;
 pub mod catalogue;
-pub mod advise;
 pub mod cli;
 pub mod show;

@@ -45,7 +45,9 @@ impl Coverage {
             return Self::Nothing { ground_term: false };
         };
         match scope.completeness.limit() {
-            None => Self::Nothing { ground_term: scope.completeness == Completeness::GroundTerm },
+            None => Self::Nothing {
+                ground_term: scope.completeness == Completeness::GroundTerm,
+            },
             Some(fraction) => Self::DownTo {
                 fraction,
                 limit: fraction * emitter.strongest(spectrum, scope.from_nm, scope.to_nm),

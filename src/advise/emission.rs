@@ -49,12 +49,22 @@ impl Emitter {
     /// level is not known.
     pub fn light(&self, line: &Line) -> Option<f64> {
         let upper = line.upper.as_ref()?;
-        self.power(line.wavenumber_per_cm, line.rate_per_s?, upper.energy_per_cm, upper.g?)
+        self.power(
+            line.wavenumber_per_cm,
+            line.rate_per_s?,
+            upper.energy_per_cm,
+            upper.g?,
+        )
     }
 
     fn of_strength(&self, spectrum: &Spectrum, strength: &Strength) -> Option<f64> {
         let upper = spectrum.levels.get(strength.upper? as usize)?;
-        self.power(strength.wavenumber_per_cm, strength.rate_per_s?, upper.energy_per_cm, upper.g?)
+        self.power(
+            strength.wavenumber_per_cm,
+            strength.rate_per_s?,
+            upper.energy_per_cm,
+            upper.g?,
+        )
     }
 
     fn power(&self, wavenumber: f64, rate: f64, upper_energy: f64, upper_g: f64) -> Option<f64> {
@@ -75,7 +85,9 @@ impl Emitter {
 
     /// Whether levels that are not held may raise the partition function by more than 1 %.
     pub fn is_lower_bound(&self) -> bool {
-        self.partition.as_ref().is_some_and(Partition::is_lower_bound)
+        self.partition
+            .as_ref()
+            .is_some_and(Partition::is_lower_bound)
     }
 }
 
@@ -91,17 +103,25 @@ pub fn emitters(
         kt_per_cm: conditions.kt_per_cm,
         electron_density_per_m3: conditions.electron_density_per_m3,
     };
-    let partitions =
-        spectra.iter().map(|s| partition(s, plasma)).collect::<Result<Vec<_>, _>>()?;
+    let partitions = spectra
+        .iter()
+        .map(|s| partition(s, plasma))
+        .collect::<Result<Vec<_>, _>>()?;
     let balanced = match (conditions.model, conditions.electron_density_per_m3) {
-        (EmissionModel::Lte, Some(density)) => {
-            Some(fractions(spectra, &partitions, conditions.kt_per_cm, density)?)
-        }
+        (EmissionModel::Lte, Some(density)) => Some(fractions(
+            spectra,
+            &partitions,
+            conditions.kt_per_cm,
+            density,
+        )?),
         _ => None,
     };
     let mut out = Vec::with_capacity(spectra.len());
     for (index, (spectrum, partition)) in spectra.iter().zip(partitions).enumerate() {
-        let mut emitter = Emitter { partition, factor: 1.0 };
+        let mut emitter = Emitter {
+            partition,
+            factor: 1.0,
+        };
         emitter.factor = match (&conditions.model, &balanced) {
             (EmissionModel::Visible, _) => visible_factor(spectrum, &emitter),
             (EmissionModel::Lte, None) => spectrum.amount,
@@ -114,15 +134,21 @@ pub fn emitters(
 
 /// Levels that can be counted: those with a weight. A species without one has no populations.
 fn partition(spectrum: &Spectrum, plasma: Plasma) -> Result<Option<Partition>, AdviseError> {
-    let weighted: Vec<(f64, f64)> =
-        spectrum.levels.iter().filter_map(|l| Some((l.energy_per_cm, l.g?))).collect();
+    let weighted: Vec<(f64, f64)> = spectrum
+        .levels
+        .iter()
+        .filter_map(|l| Some((l.energy_per_cm, l.g?)))
+        .collect();
     if weighted.is_empty() {
         return Ok(None);
     }
     let charge = spectrum.species.charge();
     partition_function(weighted, spectrum.limit_per_cm, charge, plasma)
         .map(Some)
-        .map_err(|cause| AdviseError::Plasma { species: spectrum.species, cause })
+        .map_err(|cause| AdviseError::Plasma {
+            species: spectrum.species,
+            cause,
+        })
 }
 
 fn visible_factor(spectrum: &Spectrum, emitter: &Emitter) -> f64 {
@@ -130,7 +156,11 @@ fn visible_factor(spectrum: &Spectrum, emitter: &Emitter) -> f64 {
         s if s > 0.0 => s,
         _ => emitter.strongest(spectrum, 0.0, f64::INFINITY),
     };
-    if seen > 0.0 { spectrum.amount / seen } else { 0.0 }
+    if seen > 0.0 {
+        spectrum.amount / seen
+    } else {
+        0.0
+    }
 }
 
 /// The part of its element that each species is, by Saha over all stages up to the highest whose
@@ -148,12 +178,18 @@ fn fractions(
             let species = spectrum.species;
             let held = |stage: u8| {
                 let same = |s: &Spectrum| s.species == Species { stage, ..species };
-                spectra.iter().position(same).and_then(|i| partitions[i].as_ref())
+                spectra
+                    .iter()
+                    .position(same)
+                    .and_then(|i| partitions[i].as_ref())
             };
             let stages = stages_of(species, held)?;
             let all = ionisation_balance(&stages, kt_per_cm, density_per_m3)
                 .map_err(|cause| AdviseError::Plasma { species, cause })?;
-            Ok(all.get(usize::from(species.charge())).copied().unwrap_or(0.0))
+            Ok(all
+                .get(usize::from(species.charge()))
+                .copied()
+                .unwrap_or(0.0))
         })
         .collect()
 }
@@ -173,11 +209,17 @@ fn stages_of<'p>(
             return Err(AdviseError::NoLimit { species: this });
         }
         let partition = held(stage).map_or(1.0, |p| p.value);
-        stages.push(Stage { partition, limit_per_cm });
+        stages.push(Stage {
+            partition,
+            limit_per_cm,
+        });
         if limit_per_cm.is_none() {
             return Ok(stages);
         }
     }
-    stages.push(Stage { partition: 1.0, limit_per_cm: None });
+    stages.push(Stage {
+        partition: 1.0,
+        limit_per_cm: None,
+    });
     Ok(stages)
 }

@@ -37,5 +37,11 @@ pub fn placed(
             (vacuum_nm / index.index, index.extrapolated)
         }
     };
-    Ok(Placed { wavelength_nm, uncertainty_nm, medium, vacuum_nm, extrapolated })
+    Ok(Placed {
+        wavelength_nm,
+        uncertainty_nm,
+        medium,
+        vacuum_nm,
+        extrapolated,
+    })
 }

@@ -82,8 +82,13 @@ impl<'s> Scene<'s> {
         for (index, spectrum) in spectra.iter().enumerate() {
             let decays = spectrum.decay_rates();
             for line in &spectrum.lines {
-                let profile = profile(spectrum, line, &decays, conditions, width)
-                    .map_err(|cause| AdviseError::Shape { species: spectrum.species, cause })?;
+                let profile =
+                    profile(spectrum, line, &decays, conditions, width).map_err(|cause| {
+                        AdviseError::Shape {
+                            species: spectrum.species,
+                            cause,
+                        }
+                    })?;
                 let nm = 1e7 / line.wavenumber_per_cm;
                 emissions.push(Emission {
                     spectrum: index,
@@ -91,7 +96,9 @@ impl<'s> Scene<'s> {
                     nm,
                     sigma_nm: nm * line.wavenumber_uncertainty_per_cm / line.wavenumber_per_cm,
                     light: emitters[index].light(line),
-                    light_sigma: line.rate_relative_uncertainty.unwrap_or(UNSTATED_RATE_SIGMA),
+                    light_sigma: line
+                        .rate_relative_uncertainty
+                        .unwrap_or(UNSTATED_RATE_SIGMA),
                     profile,
                     feature: 0,
                 });
@@ -99,7 +106,13 @@ impl<'s> Scene<'s> {
         }
         emissions.sort_by(|a, b| a.nm.total_cmp(&b.nm).then(a.spectrum.cmp(&b.spectrum)));
         let features = features(&mut emissions, width);
-        Ok(Self { spectra, emitters, emissions, features, width })
+        Ok(Self {
+            spectra,
+            emitters,
+            emissions,
+            features,
+            width,
+        })
     }
 
     /// Emissions whose wavelength lies within `reach_nm` of a position.
@@ -119,19 +132,30 @@ fn profile(
     width: SpectralWidth,
 ) -> Result<Profile, crate::calc::shape::ShapeError> {
     let decay = |level: &Option<std::sync::Arc<vocabulary::spectrum::Level>>| {
-        level.as_ref().and_then(|l| decays.get(l.number as usize)).copied().unwrap_or(0.0)
+        level
+            .as_ref()
+            .and_then(|l| decays.get(l.number as usize))
+            .copied()
+            .unwrap_or(0.0)
     };
     let nm = 1e7 / line.wavenumber_per_cm;
     let natural = natural_fwhm_hz(decay(&line.upper), decay(&line.lower))?;
     let widths = LineWidths::new(nm, conditions.gas_temperature_k, spectrum.mass_u, natural)?;
-    Profile::new(widths, Some(&Instrument::Gaussian { fwhm_nm: width.at_nm(nm) }))
+    Profile::new(
+        widths,
+        Some(&Instrument::Gaussian {
+            fwhm_nm: width.at_nm(nm),
+        }),
+    )
 }
 
 fn features(emissions: &mut [Emission<'_>], width: SpectralWidth) -> Vec<Feature> {
     let lines: Vec<(f64, &Line)> = emissions.iter().map(|e| (e.nm, e.line)).collect();
     let groups = feature::group(&lines, |nm| width.at_nm(nm));
-    let features: Vec<Feature> =
-        groups.into_iter().map(|components| seen_as_one(emissions, components)).collect();
+    let features: Vec<Feature> = groups
+        .into_iter()
+        .map(|components| seen_as_one(emissions, components))
+        .collect();
     for (index, feature) in features.iter().enumerate() {
         for &component in &feature.components {
             emissions[component].feature = index;
@@ -158,7 +182,11 @@ fn seen_as_one(emissions: &[Emission<'_>], components: Vec<usize>) -> Feature {
         nm,
         light: is_rated.then_some(light),
         signal: is_rated.then_some(signal),
-        signal_sigma: if signal > 0.0 { variance.sqrt() / signal } else { 0.0 },
+        signal_sigma: if signal > 0.0 {
+            variance.sqrt() / signal
+        } else {
+            0.0
+        },
         components,
     }
 }

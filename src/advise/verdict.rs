@@ -62,8 +62,11 @@ pub struct VerdictRange {
 
 impl VerdictRange {
     /// No number can be given.
-    pub const UNRATED: Self =
-        Self { central: Verdict::Unrated, low: Verdict::Unrated, high: Verdict::Unrated };
+    pub const UNRATED: Self = Self {
+        central: Verdict::Unrated,
+        low: Verdict::Unrated,
+        high: Verdict::Unrated,
+    };
 }
 
 impl fmt::Display for VerdictRange {
@@ -92,7 +95,11 @@ impl Interference {
     /// A fraction with a relative 1 σ, taken as log-normal: fraction · e^(±s), s² = ln(1 + σ²).
     pub fn new(fraction: f64, relative_uncertainty: f64) -> Self {
         let spread = (relative_uncertainty.powi(2)).ln_1p().sqrt().exp();
-        Self { fraction, low: fraction / spread, high: fraction * spread }
+        Self {
+            fraction,
+            low: fraction / spread,
+            high: fraction * spread,
+        }
     }
 
     /// The verdict with the words that the interval reaches.
@@ -140,8 +147,14 @@ mod tests {
 
     #[test]
     fn an_interval_over_a_border_shows_both_words() {
-        assert_eq!(Interference::new(0.008, 0.5).verdict().to_string(), "clear–tinged");
+        assert_eq!(
+            Interference::new(0.008, 0.5).verdict().to_string(),
+            "clear–tinged"
+        );
         assert_eq!(Interference::new(0.001, 0.2).verdict().to_string(), "clear");
-        assert_eq!(Interference::new(0.008, 0.5).verdict().central, Verdict::Clear);
+        assert_eq!(
+            Interference::new(0.008, 0.5).verdict().central,
+            Verdict::Clear
+        );
     }
 }

@@ -8,8 +8,8 @@ use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
 use super::emission::Conditions;
 use super::error::AdviseError;
 use super::position::{Placed, placed};
-use super::scene::Scene;
 pub use super::scene::REACH_WIDTHS;
+use super::scene::Scene;
 use super::spectrum::Spectrum;
 use super::verdict::{Interference, VerdictRange, Worst};
 
@@ -113,7 +113,12 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     let judge = Judge::new(&scene, question);
     let inside = |nm: f64| question.range.contains_per_cm(1e7 / nm);
     let chosen: Vec<usize> = (0..scene.features.len())
-        .filter(|&f| scene.features[f].components.iter().any(|&c| inside(scene.emissions[c].nm)))
+        .filter(|&f| {
+            scene.features[f]
+                .components
+                .iter()
+                .any(|&c| inside(scene.emissions[c].nm))
+        })
         .collect();
     let total: f64 = chosen.iter().filter_map(|&f| scene.features[f].light).sum();
     let air = Air::standard();
@@ -122,7 +127,14 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     for &index in &chosen {
         let feature = judge.feature(index, total, question.medium, &air)?;
         let position = features.len();
-        lines.extend(components(&scene, index, position, total, question.medium, &air)?);
+        lines.extend(components(
+            &scene,
+            index,
+            position,
+            total,
+            question.medium,
+            &air,
+        )?);
         features.push(feature);
     }
     in_order(&mut features, &mut lines);
@@ -135,9 +147,9 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
             .filter(|&s| emits(s) && scene.emitters[s].is_lower_bound())
             .map(|s| spectra[s].species)
             .collect(),
-        unstated_rates: lines
-            .iter()
-            .any(|l: &WindowLine| l.line.rate_per_s.is_some() && l.line.rate_relative_uncertainty.is_none()),
+        unstated_rates: lines.iter().any(|l: &WindowLine| {
+            l.line.rate_per_s.is_some() && l.line.rate_relative_uncertainty.is_none()
+        }),
         air_extrapolated: lines.iter().any(|l| l.placed.extrapolated),
         lines,
         features,
@@ -148,7 +160,10 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
 fn in_order(features: &mut Vec<WindowFeature>, lines: &mut [WindowLine]) {
     let mut order: Vec<usize> = (0..features.len()).collect();
     order.sort_by(|&a, &b| {
-        features[a].placed.vacuum_nm.total_cmp(&features[b].placed.vacuum_nm)
+        features[a]
+            .placed
+            .vacuum_nm
+            .total_cmp(&features[b].placed.vacuum_nm)
     });
     let mut rank = vec![0; order.len()];
     for (new, &old) in order.iter().enumerate() {
@@ -158,12 +173,17 @@ fn in_order(features: &mut Vec<WindowFeature>, lines: &mut [WindowLine]) {
         line.feature = rank[line.feature];
     }
     lines.sort_by(|a, b| {
-        a.placed.vacuum_nm.total_cmp(&b.placed.vacuum_nm).then(a.feature.cmp(&b.feature))
+        a.placed
+            .vacuum_nm
+            .total_cmp(&b.placed.vacuum_nm)
+            .then(a.feature.cmp(&b.feature))
     });
     let mut old: Vec<Option<WindowFeature>> = features.drain(..).map(Some).collect();
     features.extend(order.iter().filter_map(|&i| old[i].take()));
     for (index, feature) in features.iter_mut().enumerate() {
-        feature.components = (0..lines.len()).filter(|&l| lines[l].feature == index).collect();
+        feature.components = (0..lines.len())
+            .filter(|&l| lines[l].feature == index)
+            .collect();
     }
 }
 
@@ -190,7 +210,11 @@ fn components(
             line: line.clone(),
         })
     };
-    scene.features[feature].components.iter().map(place).collect()
+    scene.features[feature]
+        .components
+        .iter()
+        .map(place)
+        .collect()
 }
 
 /// Judges the features of a scene.
@@ -207,7 +231,11 @@ impl<'a, 's> Judge<'a, 's> {
         let coverage = (0..scene.spectra.len())
             .map(|s| Coverage::at(&scene.spectra[s], &scene.emitters[s], centre))
             .collect();
-        Self { scene, coverage, nothing_held: !question.not_held.is_empty() }
+        Self {
+            scene,
+            coverage,
+            nothing_held: !question.not_held.is_empty(),
+        }
     }
 
     /// Whether a species without knowledge spoils the verdicts of others: it does where its stage
@@ -236,7 +264,12 @@ impl<'a, 's> Judge<'a, 's> {
             Coverage::DownTo { fraction, .. } => Some((spectrum.species, fraction)),
             Coverage::Nothing { .. } => None,
         };
-        self.scene.spectra.iter().zip(&self.coverage).filter_map(known).collect()
+        self.scene
+            .spectra
+            .iter()
+            .zip(&self.coverage)
+            .filter_map(known)
+            .collect()
     }
 
     fn unjudged(&self, not_held: &[String]) -> Vec<Unjudged> {
@@ -249,7 +282,9 @@ impl<'a, 's> Judge<'a, 's> {
             })
             .collect();
         for (index, coverage) in self.coverage.iter().enumerate() {
-            let Coverage::Nothing { ground_term } = *coverage else { continue };
+            let Coverage::Nothing { ground_term } = *coverage else {
+                continue;
+            };
             let reason = if ground_term {
                 "only lines from its ground term are held here"
             } else {
@@ -294,8 +329,11 @@ impl<'a, 's> Judge<'a, 's> {
             unlisted_chance: 0.0,
         };
         self.interfere(index, &mut out);
-        out.worst_placed =
-            out.worst.as_ref().map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air)).transpose()?;
+        out.worst_placed = out
+            .worst
+            .as_ref()
+            .map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air))
+            .transpose()?;
         Ok(out)
     }
 
@@ -305,7 +343,9 @@ impl<'a, 's> Judge<'a, 's> {
         let (mut sum, mut variance, mut stated) = (0.0, 0.0, true);
         for &component in &self.scene.features[index].components {
             let line = self.scene.emissions[component].line;
-            let Some((rate, upper)) = line.rate_per_s.zip(line.upper.as_ref()) else { continue };
+            let Some((rate, upper)) = line.rate_per_s.zip(line.upper.as_ref()) else {
+                continue;
+            };
             let Some(g) = upper.g else { continue };
             if !uppers.iter().any(|(number, _)| *number == upper.number) {
                 uppers.push((upper.number, g));
@@ -352,7 +392,9 @@ impl<'a, 's> Judge<'a, 's> {
                 sum.own += part;
                 continue;
             }
-            let relative = emission.light_sigma.hypot(self.shift_sigma(index, i, width_nm));
+            let relative = emission
+                .light_sigma
+                .hypot(self.shift_sigma(index, i, width_nm));
             sum.add(part, relative);
             if part > out.worst.as_ref().map_or(0.0, |w| w.fraction) {
                 out.worst = Some(Worst {
@@ -387,7 +429,11 @@ impl<'a, 's> Judge<'a, 's> {
         let offset = other.nm - target.nm;
         let [near, at, far] =
             [offset - sigma, offset, offset + sigma].map(|o| other.profile.density(o));
-        if at > 0.0 { (near - far).abs() / (2.0 * at) } else { 0.0 }
+        if at > 0.0 {
+            (near - far).abs() / (2.0 * at)
+        } else {
+            0.0
+        }
     }
 
     /// What is missing makes the verdict `unrated`, or is said beside it.
@@ -404,7 +450,10 @@ impl<'a, 's> Judge<'a, 's> {
                 .map(|e| format!("{} {:.3} nm", self.scene.spectra[e.spectrum].species, e.nm))
                 .collect();
             out.verdict = VerdictRange::UNRATED;
-            out.remarks.push(format!("no rate is known for {} (vacuum)", names.join(", ")));
+            out.remarks.push(format!(
+                "no rate is known for {} (vacuum)",
+                names.join(", ")
+            ));
         }
         let light = target.light.unwrap_or(0.0);
         let width_nm = self.scene.width.at_nm(target.nm);
@@ -431,7 +480,8 @@ impl<'a, 's> Judge<'a, 's> {
         }
         if self.nothing_held {
             out.verdict = VerdictRange::UNRATED;
-            out.remarks.push("nothing is held of a species that was asked for".into());
+            out.remarks
+                .push("nothing is held of a species that was asked for".into());
         }
         let species = self.scene.spectra[likeliest.1].species;
         self.chance(1.0 - (-expected).exp(), species, out);
@@ -467,7 +517,11 @@ impl Sum {
     }
 
     fn interference(&self, target_sigma: f64) -> Interference {
-        let own = if self.other > 0.0 { self.variance.sqrt() / self.other } else { 0.0 };
+        let own = if self.other > 0.0 {
+            self.variance.sqrt() / self.other
+        } else {
+            0.0
+        };
         Interference::new(self.other, own.hypot(target_sigma))
     }
 }

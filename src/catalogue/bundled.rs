@@ -62,21 +62,34 @@ fn checksum(folder: Option<&str>) -> String {
             hash.update(file.metadata.sha256_hash());
         }
     }
-    hash.finalize().iter().map(|byte| format!("{byte:02x}")).collect()
+    hash.finalize()
+        .iter()
+        .map(|byte| format!("{byte:02x}"))
+        .collect()
 }
 
 fn bundled(folder: &str) -> Result<Bundled> {
-    let damaged = |what: String| CatalogueError::Damaged { path: folder.into(), what };
+    let damaged = |what: String| CatalogueError::Damaged {
+        path: folder.into(),
+        what,
+    };
     let file = Tables::get(&format!("{folder}/source.toml"))
         .ok_or_else(|| damaged("its source.toml is missing".into()))?;
     let text = std::str::from_utf8(&file.data).map_err(|e| damaged(e.to_string()))?;
     let description = SourceDescription::parse(text, &format!("{folder}/source.toml"))?;
-    Ok(Bundled { folder: folder.to_owned(), description, checksum: checksum(Some(folder)) })
+    Ok(Bundled {
+        folder: folder.to_owned(),
+        description,
+        checksum: checksum(Some(folder)),
+    })
 }
 
 /// Fills an empty catalogue with all bundled sources, in one transaction.
 pub(super) fn load(catalogue: &mut Catalogue, progress: &mut dyn FnMut(u64, u64)) -> Result<()> {
-    let sources = folders().iter().map(|f| bundled(f)).collect::<Result<Vec<_>>>()?;
+    let sources = folders()
+        .iter()
+        .map(|f| bundled(f))
+        .collect::<Result<Vec<_>>>()?;
     replace(catalogue, &[], &sources, progress)
 }
 
@@ -88,7 +101,9 @@ pub(super) fn refresh(
     let read = failed(&catalogue.path, "read");
     let built_from: Option<String> = catalogue
         .connection
-        .query_row("SELECT value FROM about WHERE name = 'bundle'", [], |row| row.get(0))
+        .query_row("SELECT value FROM about WHERE name = 'bundle'", [], |row| {
+            row.get(0)
+        })
         .optional()
         .map_err(&read)?;
     if built_from.as_deref() == Some(checksum(None).as_str()) {
@@ -103,14 +118,22 @@ pub(super) fn refresh(
                 .collect()
         })
         .map_err(&read)?;
-    let ours = folders().iter().map(|f| bundled(f)).collect::<Result<Vec<_>>>()?;
+    let ours = folders()
+        .iter()
+        .map(|f| bundled(f))
+        .collect::<Result<Vec<_>>>()?;
     let same = |(_, key, sum): &(i64, String, String), b: &Bundled| {
         *key == b.description.key && *sum == b.checksum
     };
-    let stale: Vec<i64> =
-        held.iter().filter(|h| !ours.iter().any(|b| same(h, b))).map(|h| h.0).collect();
-    let fresh: Vec<Bundled> =
-        ours.into_iter().filter(|b| !held.iter().any(|h| same(h, b))).collect();
+    let stale: Vec<i64> = held
+        .iter()
+        .filter(|h| !ours.iter().any(|b| same(h, b)))
+        .map(|h| h.0)
+        .collect();
+    let fresh: Vec<Bundled> = ours
+        .into_iter()
+        .filter(|b| !held.iter().any(|h| same(h, b)))
+        .collect();
     replace(catalogue, &stale, &fresh, progress)?;
     Ok(true)
 }
@@ -127,7 +150,10 @@ fn replace(
     let transaction = catalogue
         .connection
         .transaction_with_behavior(TransactionBehavior::Immediate)
-        .map_err(failed(&path, "locked for writing (is another import running?)"))?;
+        .map_err(failed(
+            &path,
+            "locked for writing (is another import running?)",
+        ))?;
     let mut labels = Labels::load(&transaction).map_err(&written)?;
     let mut species = BTreeSet::new();
     for &source in stale {
@@ -143,7 +169,10 @@ fn replace(
         derive::species(&transaction, &path, code, &mut labels)?;
     }
     transaction
-        .execute("INSERT OR REPLACE INTO about VALUES ('bundle', ?1)", [checksum(None)])
+        .execute(
+            "INSERT OR REPLACE INTO about VALUES ('bundle', ?1)",
+            [checksum(None)],
+        )
         .map_err(&written)?;
     transaction.commit().map_err(&written)?;
     progress(total, total);
@@ -156,9 +185,14 @@ fn store(
     source: &Bundled,
     labels: &mut Labels,
 ) -> Result<BTreeSet<i64>> {
-    let incoming =
-        Incoming { description: &source.description, checksum: &source.checksum, bundled: true };
-    let stored = ingest::store_reports(connection, path, &incoming, labels, |sink| source.read(sink))?;
+    let incoming = Incoming {
+        description: &source.description,
+        checksum: &source.checksum,
+        bundled: true,
+    };
+    let stored = ingest::store_reports(connection, path, &incoming, labels, |sink| {
+        source.read(sink)
+    })?;
     Ok(stored.species)
 }
 
@@ -167,19 +201,22 @@ fn store(
 pub(super) fn write_atomically(catalogue: &Catalogue, path: &Path) -> Result<()> {
     let file = |action: &'static str| {
         let path = path.to_owned();
-        move |cause: std::io::Error| CatalogueError::File { path: path.clone(), action, cause }
+        move |cause: std::io::Error| CatalogueError::File {
+            path: path.clone(),
+            action,
+            cause,
+        }
     };
     if let Some(folder) = path.parent().filter(|f| !f.as_os_str().is_empty()) {
         std::fs::create_dir_all(folder).map_err(file("created"))?;
     }
     let partial = partial_name(path);
-    let copied = copy_into(catalogue, &partial).and_then(|()| {
-        match std::fs::hard_link(&partial, path) {
+    let copied =
+        copy_into(catalogue, &partial).and_then(|()| match std::fs::hard_link(&partial, path) {
             Err(e) if e.kind() == std::io::ErrorKind::AlreadyExists => Ok(()),
             Err(_) => std::fs::rename(&partial, path).map_err(file("written")),
             Ok(()) => Ok(()),
-        }
-    });
+        });
     let _ = std::fs::remove_file(&partial); // gone already where it was renamed
     copied
 }
@@ -193,7 +230,9 @@ fn partial_name(path: &Path) -> PathBuf {
 fn copy_into(catalogue: &Catalogue, partial: &Path) -> Result<()> {
     let _ = std::fs::remove_file(partial); // of a process that died under the same number
     let copy = || -> rusqlite::Result<()> {
-        catalogue.connection.execute("VACUUM INTO ?1", [partial.to_string_lossy()])?;
+        catalogue
+            .connection
+            .execute("VACUUM INTO ?1", [partial.to_string_lossy()])?;
         let written = Connection::open(partial)?;
         written.pragma_update(None, "journal_mode", "WAL")?;
         written.close().map_err(|(_, e)| e)

@@ -43,7 +43,9 @@ impl Labels {
         if let Some(&id) = self.ids.get(text) {
             return Ok(id);
         }
-        connection.prepare_cached("INSERT INTO label (text) VALUES (?1)")?.execute([text])?;
+        connection
+            .prepare_cached("INSERT INTO label (text) VALUES (?1)")?
+            .execute([text])?;
         let id = connection.last_insert_rowid();
         self.keep(id, Arc::from(text));
         Ok(id)
@@ -89,8 +91,10 @@ pub(super) fn conclude(
     })?;
     let mut reports = read(connection, code, labels).map_err(failed(path, "read"))?;
     reconcile::rank(&mut reports);
-    let own_rows =
-        reports.iter().map(|r| r.levels.iter().map(|l| l.own_row).collect()).collect();
+    let own_rows = reports
+        .iter()
+        .map(|r| r.levels.iter().map(|l| l.own_row).collect())
+        .collect();
     Ok((reconcile::derive(species, reports), own_rows))
 }
 
@@ -141,7 +145,11 @@ fn read(
         let source = source?;
         let levels = read_levels(connection, code, source.id, labels)?;
         let lines = read_lines(connection, code, source.id)?;
-        reports.push(SourceReports { source, levels, lines });
+        reports.push(SourceReports {
+            source,
+            levels,
+            lines,
+        });
     }
     Ok(reports)
 }
@@ -262,8 +270,12 @@ fn write(
     derived: &Derived,
     labels: &mut Labels,
 ) -> rusqlite::Result<()> {
-    connection.prepare_cached("DELETE FROM level WHERE species = ?1")?.execute([code])?;
-    connection.prepare_cached("DELETE FROM line WHERE species = ?1")?.execute([code])?;
+    connection
+        .prepare_cached("DELETE FROM level WHERE species = ?1")?
+        .execute([code])?;
+    connection
+        .prepare_cached("DELETE FROM line WHERE species = ?1")?
+        .execute([code])?;
     write_levels(connection, code, derived, labels)?;
     write_lines(connection, code, derived)
 }
@@ -281,7 +293,9 @@ fn write_levels(
     )?;
     for (number, level) in derived.levels.iter().enumerate() {
         let mut id = |text: &Option<Arc<str>>| {
-            text.as_deref().map(|text| labels.id(connection, text)).transpose()
+            text.as_deref()
+                .map(|text| labels.id(connection, text))
+                .transpose()
         };
         insert.execute(params![
             code,

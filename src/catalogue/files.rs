@@ -26,7 +26,11 @@ impl SourceFiles {
     /// A file that cannot be read, a description that cannot be used, a table that is not the one
     /// that the description states.
     pub fn find(path: &Path) -> Result<Self> {
-        let file = if path.is_dir() { path.join("source.toml") } else { path.to_owned() };
+        let file = if path.is_dir() {
+            path.join("source.toml")
+        } else {
+            path.to_owned()
+        };
         let text = std::fs::read_to_string(&file).map_err(unreadable(&file))?;
         let description = SourceDescription::parse(&text, &file.display().to_string())?;
         let folder = file.parent().map(Path::to_owned).unwrap_or_default();
@@ -35,14 +39,26 @@ impl SourceFiles {
         for table in &description.table {
             let path = folder.join(&table.file);
             let found = sha256(&path).map_err(unreadable(&path))?;
-            if let Some(stated) = table.sha256.as_ref().filter(|s| !s.eq_ignore_ascii_case(&found)) {
+            if let Some(stated) = table
+                .sha256
+                .as_ref()
+                .filter(|s| !s.eq_ignore_ascii_case(&found))
+            {
                 let stated = stated.clone();
-                return Err(CatalogueError::OtherFile { path, found, stated });
+                return Err(CatalogueError::OtherFile {
+                    path,
+                    found,
+                    stated,
+                });
             }
             all.update(found.as_bytes());
         }
         let checksum = hex(&all.finalize());
-        Ok(Self { description, folder, checksum })
+        Ok(Self {
+            description,
+            folder,
+            checksum,
+        })
     }
 
     /// States the licence where the description names none.
@@ -54,7 +70,9 @@ impl SourceFiles {
             licence.clone_into(&mut self.description.licence);
         }
         if self.description.licence.trim().is_empty() {
-            return Err(CatalogueError::NoLicence { key: self.description.key });
+            return Err(CatalogueError::NoLicence {
+                key: self.description.key,
+            });
         }
         Ok(self)
     }
@@ -80,9 +98,15 @@ impl SourceFiles {
             checksum: &self.checksum,
             bundled: false,
         };
-        let options = ReadOptions { skip_bad, ..ReadOptions::default() };
+        let options = ReadOptions {
+            skip_bad,
+            ..ReadOptions::default()
+        };
         let mut open = |name: &str| -> io::Result<Box<dyn Read>> {
-            Ok(Box::new(BufReader::with_capacity(1 << 18, File::open(self.folder.join(name))?)))
+            Ok(Box::new(BufReader::with_capacity(
+                1 << 18,
+                File::open(self.folder.join(name))?,
+            )))
         };
         let read = |sink: &mut dyn importers::Sink| {
             read_source(&self.description, &mut open, &options, sink)
@@ -93,7 +117,11 @@ impl SourceFiles {
 
 fn unreadable(path: &Path) -> impl Fn(io::Error) -> CatalogueError + use<> {
     let path = path.to_owned();
-    move |cause| CatalogueError::File { path: path.clone(), action: "read", cause }
+    move |cause| CatalogueError::File {
+        path: path.clone(),
+        action: "read",
+        cause,
+    }
 }
 
 fn sha256(path: &Path) -> io::Result<String> {

@@ -60,7 +60,10 @@ impl Catalogue {
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)
-            .map_err(failed(&path, "locked for writing (is another import running?)"))?;
+            .map_err(failed(
+                &path,
+                "locked for writing (is another import running?)",
+            ))?;
         if let Some(summary) = already_held(&transaction, &path, incoming)? {
             return Ok(summary);
         }
@@ -93,7 +96,13 @@ fn already_held(
             |row| Ok((row.get(0)?, row.get(1)?)),
         )
         .map(Some)
-        .or_else(|e| if e == rusqlite::Error::QueryReturnedNoRows { Ok(None) } else { Err(e) })
+        .or_else(|e| {
+            if e == rusqlite::Error::QueryReturnedNoRows {
+                Ok(None)
+            } else {
+                Err(e)
+            }
+        })
         .map_err(failed(path, "read"))?;
     match held {
         None => Ok(None),
@@ -143,7 +152,12 @@ pub(super) fn store_reports(
         warnings: report.warnings,
         ..ImportSummary::default()
     };
-    Ok(Stored { summary, source, records, species })
+    Ok(Stored {
+        summary,
+        source,
+        records,
+        species,
+    })
 }
 
 /// A failed write inside the sink comes back as itself, not as a fault of the table.
@@ -205,9 +219,14 @@ fn insert_scopes(
 fn covers(scope: &importers::source::Scope, code: i64) -> bool {
     let named = |entry: &String| {
         let request = entry.parse::<SpeciesRequest>().ok();
-        request.zip(Species::from_code(code)).is_some_and(|(r, species)| r.matches(species))
+        request
+            .zip(Species::from_code(code))
+            .is_some_and(|(r, species)| r.matches(species))
     };
-    scope.species.iter().any(|entry| entry == "*" || named(entry))
+    scope
+        .species
+        .iter()
+        .any(|entry| entry == "*" || named(entry))
 }
 
 const fn completeness_word(scope: &importers::source::Scope) -> &'static str {
@@ -258,14 +277,17 @@ struct KnownLevel {
 }
 
 impl<'c> ReportWriter<'c> {
-    fn new(
-        connection: &'c Connection,
-        path: PathBuf,
-        source: i64,
-        labels: &'c mut Labels,
-    ) -> Self {
+    fn new(connection: &'c Connection, path: PathBuf, source: i64, labels: &'c mut Labels) -> Self {
         let (numbers, levels) = (HashMap::new(), HashMap::new());
-        Self { connection, path, source, labels, numbers, levels, records: 0 }
+        Self {
+            connection,
+            path,
+            source,
+            labels,
+            numbers,
+            levels,
+            records: 0,
+        }
     }
 
     fn species(&self) -> BTreeSet<i64> {
@@ -301,12 +323,17 @@ impl<'c> ReportWriter<'c> {
                 own_row,
             ])?;
         let key = (species, record.energy_per_cm.to_bits(), twice_j);
-        self.levels.entry(key).or_default().push(KnownLevel { number, configuration, term });
+        self.levels.entry(key).or_default().push(KnownLevel {
+            number,
+            configuration,
+            term,
+        });
         Ok(number)
     }
 
     fn label(&mut self, text: Option<&str>) -> rusqlite::Result<Option<i64>> {
-        text.map(|text| self.labels.id(self.connection, text)).transpose()
+        text.map(|text| self.labels.id(self.connection, text))
+            .transpose()
     }
 
     fn line(&mut self, record: &LineRecord) -> rusqlite::Result<()> {
@@ -356,9 +383,8 @@ impl<'c> ReportWriter<'c> {
         let term = self.label(end.term.as_deref())?;
         let twice_j = end.j.map(HalfInteger::twice);
         let key = (line.species.code(), energy_per_cm.to_bits(), twice_j);
-        let agrees = |ours: Option<i64>, theirs: Option<i64>| {
-            ours.zip(theirs).is_none_or(|(a, b)| a == b)
-        };
+        let agrees =
+            |ours: Option<i64>, theirs: Option<i64>| ours.zip(theirs).is_none_or(|(a, b)| a == b);
         let known = self.levels.get(&key).and_then(|all| {
             all.iter()
                 .find(|k| agrees(configuration, k.configuration) && agrees(term, k.term))
@@ -376,7 +402,10 @@ impl<'c> ReportWriter<'c> {
             j: end.j,
             g: end.g,
             computed: line.computed,
-            place: Place { file: line.place.file.clone(), line: line.place.line },
+            place: Place {
+                file: line.place.file.clone(),
+                line: line.place.line,
+            },
         };
         self.level(&record, false).map(Some)
     }
@@ -399,7 +428,12 @@ impl Sink for ReportWriter<'_> {
 
 impl std::fmt::Debug for ReportWriter<'_> {
     fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
-        write!(f, "reports of source {} into {}", self.source, self.path.display())
+        write!(
+            f,
+            "reports of source {} into {}",
+            self.source,
+            self.path.display()
+        )
     }
 }
 

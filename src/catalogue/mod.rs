@@ -11,8 +11,8 @@ mod sources;
 mod store;
 
 pub use error::{CatalogueError, Result};
+pub use files::SourceFiles;
 pub use ingest::{ImportSummary, Incoming, ReportWriter};
 pub use query::Levels;
-pub use files::SourceFiles;
 pub use sources::SourceRow;
 pub use store::{Catalogue, Opened};

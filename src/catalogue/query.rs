@@ -5,9 +5,7 @@ use std::sync::Arc;
 
 use rusqlite::Row;
 use vocabulary::atom::{HalfInteger, Species};
-use vocabulary::spectrum::{
-    Completeness, Level, Line, Parity, PositionOrigin, Scope, Strength,
-};
+use vocabulary::spectrum::{Completeness, Level, Line, Parity, PositionOrigin, Scope, Strength};
 
 use super::derive::{line_kind, position_origin, rate_origin};
 use super::error::Result;
@@ -48,7 +46,9 @@ impl Catalogue {
     fn source_keys(&self) -> rusqlite::Result<HashMap<i64, Arc<str>>> {
         self.connection
             .prepare_cached("SELECT id, key FROM source")?
-            .query_map([], |row| Ok((row.get(0)?, Arc::from(row.get_ref(1)?.as_str()?))))?
+            .query_map([], |row| {
+                Ok((row.get(0)?, Arc::from(row.get_ref(1)?.as_str()?)))
+            })?
             .collect()
     }
 
@@ -66,7 +66,9 @@ impl Catalogue {
                       WHERE species = ?1
                       ORDER BY number",
                 )?
-                .query_map([species.code()], |row| level(row, species, &keys).map(Arc::new))?
+                .query_map([species.code()], |row| {
+                    level(row, species, &keys).map(Arc::new)
+                })?
                 .collect()
         };
         read().map_err(self.failed("read"))
@@ -179,13 +181,22 @@ fn completeness(word: &str) -> Completeness {
     }
 }
 
-fn level(row: &Row<'_>, species: Species, keys: &HashMap<i64, Arc<str>>) -> rusqlite::Result<Level> {
+fn level(
+    row: &Row<'_>,
+    species: Species,
+    keys: &HashMap<i64, Arc<str>>,
+) -> rusqlite::Result<Level> {
     let text = |index: usize| -> rusqlite::Result<Option<Arc<str>>> {
         Ok(row.get_ref(index)?.as_str_or_null()?.map(Arc::from))
     };
     let (configuration, term) = (text(3)?, text(4)?);
-    let label = super::reconcile::Label { configuration, term };
-    let parity = label.odd().map(|odd| if odd { Parity::Odd } else { Parity::Even });
+    let label = super::reconcile::Label {
+        configuration,
+        term,
+    };
+    let parity = label
+        .odd()
+        .map(|odd| if odd { Parity::Odd } else { Parity::Even });
     let computed: bool = row.get(7)?;
     Ok(Level {
         number: row.get(0)?,
@@ -197,7 +208,11 @@ fn level(row: &Row<'_>, species: Species, keys: &HashMap<i64, Arc<str>>) -> rusq
         j: row.get::<_, Option<u16>>(5)?.map(HalfInteger::from_twice),
         g: row.get(6)?,
         parity,
-        origin: if computed { PositionOrigin::Computed } else { PositionOrigin::Measured },
+        origin: if computed {
+            PositionOrigin::Computed
+        } else {
+            PositionOrigin::Measured
+        },
         source: key(keys, row.get(8)?),
     })
 }

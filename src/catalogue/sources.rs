@@ -78,12 +78,19 @@ impl Catalogue {
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)
-            .map_err(failed(&path, "locked for writing (is another import running?)"))?;
+            .map_err(failed(
+                &path,
+                "locked for writing (is another import running?)",
+            ))?;
         let source: i64 = transaction
-            .query_row("SELECT id FROM source WHERE key = ?1", [key], |row| row.get(0))
+            .query_row("SELECT id FROM source WHERE key = ?1", [key], |row| {
+                row.get(0)
+            })
             .optional()
             .map_err(&written)?
-            .ok_or_else(|| CatalogueError::NoSuchSource { key: key.to_owned() })?;
+            .ok_or_else(|| CatalogueError::NoSuchSource {
+                key: key.to_owned(),
+            })?;
         let (species, reports) = retract(&transaction, source).map_err(&written)?;
         let mut labels = Labels::load(&transaction).map_err(&written)?;
         for code in species {

@@ -6,8 +6,8 @@ use std::time::Duration;
 use rusqlite::{Connection, OpenFlags};
 use rusqlite_migration::{M, Migrations};
 
-use super::error::{CatalogueError, Result};
 use super::bundled;
+use super::error::{CatalogueError, Result};
 
 const MIGRATION_STEPS: &[M<'_>] = &[M::up(include_str!("../../schema/0001_catalogue.sql"))];
 const MIGRATIONS: Migrations<'_> = Migrations::from_slice(MIGRATION_STEPS);
@@ -41,8 +41,7 @@ impl Catalogue {
     /// A catalogue in memory, without any source.
     pub fn empty_in_memory() -> Result<Self> {
         let path = PathBuf::from("(memory)");
-        let connection =
-            Connection::open_in_memory().map_err(failed(&path, "opened"))?;
+        let connection = Connection::open_in_memory().map_err(failed(&path, "opened"))?;
         let mut catalogue = Self { connection, path };
         catalogue.migrate()?;
         Ok(catalogue)
@@ -57,11 +56,18 @@ impl Catalogue {
 
     /// Opens a catalogue for reading and writing; builds it from the bundled tables where there is
     /// none, and from memory where the folder cannot be written.
-    pub fn open_or_build(path: &Path, progress: &mut dyn FnMut(u64, u64)) -> Result<(Self, Opened)> {
+    pub fn open_or_build(
+        path: &Path,
+        progress: &mut dyn FnMut(u64, u64),
+    ) -> Result<(Self, Opened)> {
         if path.exists() {
             let mut catalogue = Self::open(path)?;
             let refreshed = bundled::refresh(&mut catalogue, progress)?;
-            let opened = if refreshed { Opened::Refreshed } else { Opened::Held };
+            let opened = if refreshed {
+                Opened::Refreshed
+            } else {
+                Opened::Held
+            };
             return Ok((catalogue, opened));
         }
         let built = Self::bundled_in_memory(progress)?;
@@ -86,7 +92,10 @@ impl Catalogue {
         let connection = Connection::open_with_flags(path, writable)
             .or_else(|_| Connection::open_with_flags(path, read_only))
             .map_err(failed(path, "opened"))?;
-        let mut catalogue = Self { connection, path: path.to_owned() };
+        let mut catalogue = Self {
+            connection,
+            path: path.to_owned(),
+        };
         catalogue.check_kind()?;
         catalogue.migrate()?;
         Ok(catalogue)
@@ -98,9 +107,12 @@ impl Catalogue {
     }
 
     fn check_kind(&self) -> Result<()> {
-        let not_one = || CatalogueError::NotACatalogue { path: self.path.clone() };
+        let not_one = || CatalogueError::NotACatalogue {
+            path: self.path.clone(),
+        };
         let pragma = |name: &str| {
-            self.connection.pragma_query_value(None, name, |row| row.get::<_, i64>(0))
+            self.connection
+                .pragma_query_value(None, name, |row| row.get::<_, i64>(0))
         };
         if pragma("application_id").map_err(|_| not_one())? != i64::from(APPLICATION_ID) {
             return Err(not_one());
@@ -108,7 +120,11 @@ impl Catalogue {
         let found = pragma("user_version").map_err(|_| not_one())?;
         let known = MIGRATION_STEPS.len() as i64;
         if found > known {
-            return Err(CatalogueError::Newer { path: self.path.clone(), found, known });
+            return Err(CatalogueError::Newer {
+                path: self.path.clone(),
+                found,
+                known,
+            });
         }
         Ok(())
     }
@@ -117,8 +133,12 @@ impl Catalogue {
         let path = self.path.clone();
         let set = |catalogue: &mut Self| -> rusqlite::Result<()> {
             catalogue.connection.busy_timeout(PATIENCE)?;
-            catalogue.connection.pragma_update(None, "foreign_keys", false)?;
-            catalogue.connection.pragma_update(None, "temp_store", "MEMORY")
+            catalogue
+                .connection
+                .pragma_update(None, "foreign_keys", false)?;
+            catalogue
+                .connection
+                .pragma_update(None, "temp_store", "MEMORY")
         };
         set(self).map_err(failed(&path, "opened"))?;
         let version: i64 = self
@@ -128,17 +148,22 @@ impl Catalogue {
         if version == MIGRATION_STEPS.len() as i64 {
             return Ok(());
         }
-        MIGRATIONS.to_latest(&mut self.connection).map_err(|error| CatalogueError::Damaged {
-            path: path.clone(),
-            what: format!("its tables could not be brought up to date ({error})"),
-        })?;
+        MIGRATIONS
+            .to_latest(&mut self.connection)
+            .map_err(|error| CatalogueError::Damaged {
+                path: path.clone(),
+                what: format!("its tables could not be brought up to date ({error})"),
+            })?;
         self.connection
             .pragma_update(None, "application_id", APPLICATION_ID)
             .map_err(failed(&path, "marked"))
     }
 
     /// Turns an SQLite error into one of the catalogue.
-    pub(super) fn failed(&self, action: &'static str) -> impl Fn(rusqlite::Error) -> CatalogueError + use<> {
+    pub(super) fn failed(
+        &self,
+        action: &'static str,
+    ) -> impl Fn(rusqlite::Error) -> CatalogueError + use<> {
         failed(&self.path, action)
     }
 }
@@ -148,5 +173,9 @@ pub(super) fn failed(
     action: &'static str,
 ) -> impl Fn(rusqlite::Error) -> CatalogueError + use<> {
     let path = path.to_owned();
-    move |cause| CatalogueError::Sqlite { path: path.clone(), action, cause }
+    move |cause| CatalogueError::Sqlite {
+        path: path.clone(),
+        action,
+        cause,
+    }
 }

@@ -25,7 +25,11 @@ impl From<Exit> for ExitCode {
 
 /// Help and version are answers; all else is wrong usage, already put into words by the parser.
 pub(super) fn of_clap(error: &clap::Error) -> Result<Exit, CliError> {
-    let exit = if error.use_stderr() { Exit::Usage } else { Exit::Answered };
+    let exit = if error.use_stderr() {
+        Exit::Usage
+    } else {
+        Exit::Answered
+    };
     match error.print() {
         Err(cause) if cause.kind() != std::io::ErrorKind::BrokenPipe => {
             Err(CliError::Output(cause))

@@ -21,5 +21,9 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
     let mut catalogue = context.open()?;
     let reports = catalogue.forget(&arguments.key)?;
     let sheet = show::forgotten(&arguments.key, reports);
-    Ok(Outcome { sheet, format: arguments.output.format, exit: Exit::Answered })
+    Ok(Outcome {
+        sheet,
+        format: arguments.output.format,
+        exit: Exit::Answered,
+    })
 }

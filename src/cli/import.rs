@@ -34,13 +34,16 @@ pub struct Arguments {
 }
 
 pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
-    let files =
-        SourceFiles::find(&arguments.source)?.with_licence(arguments.licence.as_deref())?;
+    let files = SourceFiles::find(&arguments.source)?.with_licence(arguments.licence.as_deref())?;
     let mut catalogue = context.open()?;
     let bar = Bar::new(context.quiet(), "importing");
     bar.pulse();
     let summary = files.import(&mut catalogue, arguments.skip_bad, arguments.dry_run);
     bar.finish();
     let sheet = show::imported(&summary?, arguments.dry_run);
-    Ok(Outcome { sheet, format: arguments.output.format, exit: Exit::Answered })
+    Ok(Outcome {
+        sheet,
+        format: arguments.output.format,
+        exit: Exit::Answered,
+    })
 }

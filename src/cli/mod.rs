@@ -59,6 +59,9 @@ pub fn run() -> Result<Exit, CliError> {
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,
     };
-    outcome.sheet.print(outcome.format).map_err(CliError::Output)?;
+    outcome
+        .sheet
+        .print(outcome.format)
+        .map_err(CliError::Output)?;
     Ok(outcome.exit)
 }

@@ -7,8 +7,8 @@ use etcetera::{BaseStrategy, choose_base_strategy};
 use vocabulary::atom::{Species, SpeciesRequest};
 use vocabulary::light::{Medium, NumberDensity, SpectralRange, SpectralWidth, Temperature};
 
-use super::progress::Bar;
 use super::CliError;
+use super::progress::Bar;
 use crate::advise::{Conditions, EmissionModel};
 use crate::catalogue::{Catalogue, Opened};
 use crate::show::Format;
@@ -59,7 +59,10 @@ impl CatalogueOptions {
 
 fn default_path() -> Result<PathBuf, CliError> {
     let strategy = choose_base_strategy().map_err(|_| CliError::NoDataFolder)?;
-    Ok(strategy.data_dir().join("lineclear").join("catalogue.sqlite"))
+    Ok(strategy
+        .data_dir()
+        .join("lineclear")
+        .join("catalogue.sqlite"))
 }
 
 /// How the answer is written.
@@ -140,14 +143,23 @@ impl ConditionOptions {
             Some(power) => resolving(power, range)?,
             None => or_assume(&self.fwhm, "0.1nm", "instrument width (FWHM)").parse()?,
         };
-        let ne = self.ne.as_deref().map(str::parse::<NumberDensity>).transpose()?;
+        let ne = self
+            .ne
+            .as_deref()
+            .map(str::parse::<NumberDensity>)
+            .transpose()?;
         if ne.is_some() && self.model == ModelName::Visible {
             return Err(CliError::Options(
                 "--ne sets the ionisation balance, which --model visible does not use; \
                  add --model lte or leave --ne out",
             ));
         }
-        let amounts = self.mix.as_deref().map(parse_mix).transpose()?.unwrap_or_default();
+        let amounts = self
+            .mix
+            .as_deref()
+            .map(parse_mix)
+            .transpose()?
+            .unwrap_or_default();
         if amounts.is_empty() {
             assumed.push("equal amounts".to_owned());
         }
@@ -160,7 +172,14 @@ impl ConditionOptions {
             electron_density_per_m3: ne.map(NumberDensity::per_m3),
             gas_temperature_k: gas.kelvin(),
         };
-        Ok(Checked { conditions, te, gas, width, amounts, assumed })
+        Ok(Checked {
+            conditions,
+            te,
+            gas,
+            width,
+            amounts,
+            assumed,
+        })
     }
 }
 
@@ -168,18 +187,27 @@ fn resolving(power: f64, range: &SpectralRange) -> Result<SpectralWidth, CliErro
     if power.is_finite() && power >= 1.0 {
         Ok(SpectralWidth::from_nm(range.centre_vacuum_nm() / power))
     } else {
-        Err(CliError::Options("--resolving takes a number from 1 upwards, such as 20000"))
+        Err(CliError::Options(
+            "--resolving takes a number from 1 upwards, such as 20000",
+        ))
     }
 }
 
 fn parse_mix(text: &str) -> Result<Vec<(SpeciesRequest, f64)>, CliError> {
     let mut amounts = Vec::new();
     for entry in text.split(',') {
-        let bad = |problem| CliError::Mix { entry: entry.trim().to_owned(), problem };
-        let (species, amount) =
-            entry.split_once('=').ok_or_else(|| bad("no amount behind `=`"))?;
+        let bad = |problem| CliError::Mix {
+            entry: entry.trim().to_owned(),
+            problem,
+        };
+        let (species, amount) = entry
+            .split_once('=')
+            .ok_or_else(|| bad("no amount behind `=`"))?;
         let request: SpeciesRequest = species.trim().parse()?;
-        let amount: f64 = amount.trim().parse().map_err(|_| bad("the amount is no number"))?;
+        let amount: f64 = amount
+            .trim()
+            .parse()
+            .map_err(|_| bad("the amount is no number"))?;
         if !amount.is_finite() || amount < 0.0 {
             return Err(bad("an amount is zero or above"));
         }
@@ -187,14 +215,21 @@ fn parse_mix(text: &str) -> Result<Vec<(SpeciesRequest, f64)>, CliError> {
     }
     if amounts.iter().all(|(_, amount)| *amount == 0.0) {
         let problem = "all amounts are zero";
-        return Err(CliError::Mix { entry: text.to_owned(), problem });
+        return Err(CliError::Mix {
+            entry: text.to_owned(),
+            problem,
+        });
     }
     Ok(amounts)
 }
 
 /// The amount of a species: of the most exact entry that matches it, else 1.
 pub fn amount_of(species: Species, amounts: &[(SpeciesRequest, f64)]) -> f64 {
-    let matching = || amounts.iter().filter(|(request, _)| request.matches(species));
+    let matching = || {
+        amounts
+            .iter()
+            .filter(|(request, _)| request.matches(species))
+    };
     matching()
         .find(|(request, _)| request.single().is_some())
         .or_else(|| matching().next())
@@ -203,5 +238,6 @@ pub fn amount_of(species: Species, amounts: &[(SpeciesRequest, f64)]) -> f64 {
 
 /// Reads `--medium`.
 pub fn medium(text: &str) -> Result<Medium, String> {
-    text.parse().map_err(|e: vocabulary::light::QuantityError| e.to_string())
+    text.parse()
+        .map_err(|e: vocabulary::light::QuantityError| e.to_string())
 }

@@ -12,8 +12,11 @@ impl Bar {
     /// A bar with a word in front; it appears only if the work takes longer than a moment.
     pub fn new(quiet: bool, what: &'static str) -> Self {
         let hidden = quiet || !std::io::stderr().is_terminal();
-        let target =
-            if hidden { ProgressDrawTarget::hidden() } else { ProgressDrawTarget::stderr() };
+        let target = if hidden {
+            ProgressDrawTarget::hidden()
+        } else {
+            ProgressDrawTarget::stderr()
+        };
         let bar = ProgressBar::with_draw_target(None, target).with_message(what);
         if let Ok(style) = ProgressStyle::with_template("{msg} {bar:30} {percent}%") {
             bar.set_style(style);

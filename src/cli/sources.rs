@@ -16,6 +16,13 @@ pub struct Arguments {
 
 pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
     let catalogue = context.open()?;
-    let sheet = show::sources(&catalogue.sources()?, &catalogue.path().display().to_string());
-    Ok(Outcome { sheet, format: arguments.output.format, exit: Exit::Answered })
+    let sheet = show::sources(
+        &catalogue.sources()?,
+        &catalogue.path().display().to_string(),
+    );
+    Ok(Outcome {
+        sheet,
+        format: arguments.output.format,
+        exit: Exit::Answered,
+    })
 }

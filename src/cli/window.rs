@@ -18,9 +18,11 @@ use crate::show::{self, Context, Wish};
 /// their light and a verdict each: clear below 1 % of light from other species, tinged to 10 %,
 /// blended to 50 %, swamped beyond, unrated where the data do not allow a number.
 #[derive(Args, Debug)]
-#[command(after_help = "Examples:\n  lineclear window 585..590nm --of Na,Ne,He\n  \
+#[command(
+    after_help = "Examples:\n  lineclear window 585..590nm --of Na,Ne,He\n  \
     lineclear window 656.28+-0.5nm --of H,D,C --fwhm 0.05nm --te 3eV\n  \
-    lineclear window 15230..15245cm-1 --of \"H I, Fe I..II\" --as csv")]
+    lineclear window 15230..15245cm-1 --of \"H I, Fe I..II\" --as csv"
+)]
 pub struct Arguments {
     /// Range with its unit: 585..590nm, 656.28+-0.3nm, 15230..15245cm-1, 2.1..2.2eV
     #[arg(value_name = "RANGE", allow_hyphen_values = true)]
@@ -93,8 +95,16 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
         components: arguments.components,
         strongest: arguments.strongest.map(|n| n as usize),
     };
-    let sheet = show::window(&answer, describe(&catalogue, &answer, &question, &checked)?, &wish);
-    Ok(Outcome { sheet, format: arguments.output.format, exit })
+    let sheet = show::window(
+        &answer,
+        describe(&catalogue, &answer, &question, &checked)?,
+        &wish,
+    );
+    Ok(Outcome {
+        sheet,
+        format: arguments.output.format,
+        exit,
+    })
 }
 
 /// Species of repeated and comma-separated options.
@@ -109,7 +119,10 @@ pub(super) fn species(lists: &[String]) -> Result<Vec<SpeciesRequest>, CliError>
 /// `--require` asks for the upper end of the interval; an answer without a feature requires that
 /// the window could be judged.
 fn meets(answer: &Answer, required: Required) -> bool {
-    answer.features.iter().all(|f| required.allows(f.verdict.high))
+    answer
+        .features
+        .iter()
+        .all(|f| required.allows(f.verdict.high))
         && answer.unrated.iter().all(|u| !u.decides)
 }
 
@@ -136,9 +149,10 @@ fn describe(
         ..Context::default()
     };
     let used = |key: &str| {
-        answer.lines.iter().any(|l| {
-            &*l.line.position_source == key || l.line.rate_source.as_deref() == Some(key)
-        })
+        answer
+            .lines
+            .iter()
+            .any(|l| &*l.line.position_source == key || l.line.rate_source.as_deref() == Some(key))
     };
     for (key, citation, licence) in catalogue.citations()? {
         if used(&key) {
@@ -154,13 +168,28 @@ fn conditions(question: &Question, checked: &Checked) -> Map<String, Value> {
     let model = format!("{:?}", question.conditions.model).to_lowercase();
     put("model", json!(model));
     put("electron_temperature_ev", json!(checked.te.ev()));
-    put("electron_density_per_m3", json!(question.conditions.electron_density_per_m3));
+    put(
+        "electron_density_per_m3",
+        json!(question.conditions.electron_density_per_m3),
+    );
     put("gas_temperature_k", json!(checked.gas.kelvin()));
-    put("fwhm_nm", json!(question.width.at_nm(question.range.centre_vacuum_nm())));
-    put("range_vacuum_nm", json!([question.range.vacuum_low_nm, question.range.vacuum_high_nm]));
-    put("air", json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"));
-    let amounts: Map<String, Value> =
-        checked.amounts.iter().map(|(species, a)| (species.to_string(), json!(a))).collect();
+    put(
+        "fwhm_nm",
+        json!(question.width.at_nm(question.range.centre_vacuum_nm())),
+    );
+    put(
+        "range_vacuum_nm",
+        json!([question.range.vacuum_low_nm, question.range.vacuum_high_nm]),
+    );
+    put(
+        "air",
+        json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"),
+    );
+    let amounts: Map<String, Value> = checked
+        .amounts
+        .iter()
+        .map(|(species, a)| (species.to_string(), json!(a)))
+        .collect();
     put("mix", Value::Object(amounts));
     out
 }

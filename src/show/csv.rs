@@ -27,14 +27,22 @@ pub(super) fn write(sheet: &Sheet, out: &mut dyn Write) -> io::Result<()> {
     let headed: Vec<&str> = header
         .iter()
         .copied()
-        .filter(|key| !header.iter().any(|k| k.starts_with(&format!("{key}_")) && is_gap(&rows, key)))
+        .filter(|key| {
+            !header
+                .iter()
+                .any(|k| k.starts_with(&format!("{key}_")) && is_gap(&rows, key))
+        })
         .collect();
     let mut writer = ::csv::Writer::from_writer(out);
     if !headed.is_empty() {
         writer.write_record(&headed)?;
     }
     for row in &rows {
-        let cell = |key: &&str| row.iter().find(|(k, _)| k == key).map_or("", |(_, v)| v.as_str());
+        let cell = |key: &&str| {
+            row.iter()
+                .find(|(k, _)| k == key)
+                .map_or("", |(_, v)| v.as_str())
+        };
         writer.write_record(headed.iter().map(cell))?;
     }
     writer.flush()
@@ -42,12 +50,19 @@ pub(super) fn write(sheet: &Sheet, out: &mut dyn Write) -> io::Result<()> {
 
 /// A key that is empty wherever it stands.
 fn is_gap(rows: &[Vec<(String, String)>], key: &str) -> bool {
-    rows.iter().flatten().filter(|(k, _)| k == key).all(|(_, value)| value.is_empty())
+    rows.iter()
+        .flatten()
+        .filter(|(k, _)| k == key)
+        .all(|(_, value)| value.is_empty())
 }
 
 fn flatten(prefix: &str, object: &Map<String, Value>, cells: &mut Vec<(String, String)>) {
     for (key, value) in object {
-        let key = if prefix.is_empty() { key.clone() } else { format!("{prefix}_{key}") };
+        let key = if prefix.is_empty() {
+            key.clone()
+        } else {
+            format!("{prefix}_{key}")
+        };
         match value {
             Value::Object(inner) => flatten(&key, inner, cells),
             Value::Array(list) => {

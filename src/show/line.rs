@@ -63,12 +63,27 @@ pub(super) fn line_object(line: &Line, placed: &Placed) -> Map<String, Value> {
     put("medium", json!(medium_word(placed.medium)));
     put("vacuum_wavelength_nm", json!(placed.vacuum_nm));
     put("wavenumber_per_cm", json!(line.wavenumber_per_cm));
-    put("wavenumber_uncertainty_per_cm", json!(line.wavenumber_uncertainty_per_cm));
-    put("lower", line.lower.as_deref().map_or(Value::Null, level_object));
-    put("upper", line.upper.as_deref().map_or(Value::Null, level_object));
+    put(
+        "wavenumber_uncertainty_per_cm",
+        json!(line.wavenumber_uncertainty_per_cm),
+    );
+    put(
+        "lower",
+        line.lower.as_deref().map_or(Value::Null, level_object),
+    );
+    put(
+        "upper",
+        line.upper.as_deref().map_or(Value::Null, level_object),
+    );
     put("rate_per_s", json!(line.rate_per_s));
-    put("rate_relative_uncertainty", json!(line.rate_relative_uncertainty));
-    put("position_origin", json!(position_word(line.position_origin)));
+    put(
+        "rate_relative_uncertainty",
+        json!(line.rate_relative_uncertainty),
+    );
+    put(
+        "position_origin",
+        json!(position_word(line.position_origin)),
+    );
     put("rate_origin", json!(line.rate_origin.map(rate_word)));
     put("position_source", json!(&*line.position_source));
     put("rate_source", json!(line.rate_source.as_deref()));
@@ -98,7 +113,11 @@ pub(super) fn put_verdict(
 /// `587.5621(3)`; the medium behind it where the table's heading does not say it.
 pub(super) fn position_cell(placed: &Placed, name_medium: bool) -> String {
     let position = in_table(placed.wavelength_nm, placed.uncertainty_nm);
-    if name_medium { format!("{position}\n{}", medium_word(placed.medium)) } else { position }
+    if name_medium {
+        format!("{position}\n{}", medium_word(placed.medium))
+    } else {
+        position
+    }
 }
 
 /// `1s 2p 3Po 2 → 1s 3d 3D 3`; `?` for a level that is not known. Core shells that both ends share
@@ -115,8 +134,11 @@ pub(super) fn multiplet_cell(line: &Line) -> String {
 fn transition(line: &Line, with_j: bool) -> String {
     let shells = |level: &Option<std::sync::Arc<Level>>| -> Vec<String> {
         let text = level.as_ref().and_then(|l| l.configuration.clone());
-        let mut shells: Vec<String> =
-            text.iter().flat_map(|t| t.split_whitespace()).map(str::to_owned).collect();
+        let mut shells: Vec<String> = text
+            .iter()
+            .flat_map(|t| t.split_whitespace())
+            .map(str::to_owned)
+            .collect();
         let closed = shells.iter().take_while(|s| is_closed(s)).count();
         shells.drain(..closed.min(shells.len().saturating_sub(1)));
         shells
@@ -129,21 +151,37 @@ fn transition(line: &Line, with_j: bool) -> String {
     let cell = |level: &Option<std::sync::Arc<Level>>, shells: &[String]| {
         level_cell(level.as_deref(), &shells.join(" "), with_j)
     };
-    format!("{} →\n{}", cell(&line.lower, &lower), cell(&line.upper, &upper))
+    format!(
+        "{} →\n{}",
+        cell(&line.lower, &lower),
+        cell(&line.upper, &upper)
+    )
 }
 
 fn is_closed(shell: &str) -> bool {
     ["s2", "p6", "d10", "f14"].iter().any(|full| {
-        shell.strip_suffix(full).is_some_and(|n| !n.is_empty() && n.bytes().all(|b| b.is_ascii_digit()))
+        shell
+            .strip_suffix(full)
+            .is_some_and(|n| !n.is_empty() && n.bytes().all(|b| b.is_ascii_digit()))
     })
 }
 
 fn level_cell(level: Option<&Level>, configuration: &str, with_j: bool) -> String {
-    let Some(level) = level else { return "?".into() };
-    let j = level.j.filter(|_| with_j).map(|j| j.to_string()).unwrap_or_default();
+    let Some(level) = level else {
+        return "?".into();
+    };
+    let j = level
+        .j
+        .filter(|_| with_j)
+        .map(|j| j.to_string())
+        .unwrap_or_default();
     let parts = [configuration, level.term.as_deref().unwrap_or_default(), &j];
     let known: Vec<&str> = parts.into_iter().filter(|p| !p.is_empty()).collect();
-    if known.is_empty() { format!("{:.0} cm⁻¹", level.energy_per_cm) } else { known.join(" ") }
+    if known.is_empty() {
+        format!("{:.0} cm⁻¹", level.energy_per_cm)
+    } else {
+        known.join(" ")
+    }
 }
 
 /// `7.07e7 ±1 %`, `?` where no rate is known.

@@ -6,7 +6,10 @@ use super::sheet::{Align, Column, Context, Sheet};
 use crate::catalogue::{ImportSummary, SourceRow};
 
 fn context(command: &'static str) -> Context {
-    Context { command, ..Context::default() }
+    Context {
+        command,
+        ..Context::default()
+    }
 }
 
 /// What an import did.
@@ -20,8 +23,11 @@ pub fn imported(summary: &ImportSummary, dry_run: bool) -> Sheet {
             json!({"place": place, "column": r.column, "text": r.text, "reason": r.reason})
         })
         .collect();
-    let skipped: Vec<Value> =
-        summary.skipped.iter().map(|(why, n)| json!({"reason": why, "rows": n})).collect();
+    let skipped: Vec<Value> = summary
+        .skipped
+        .iter()
+        .map(|(why, n)| json!({"reason": why, "rows": n}))
+        .collect();
     for (key, value) in [
         ("source", json!(summary.source)),
         ("dry_run", json!(dry_run)),
@@ -37,7 +43,12 @@ pub fn imported(summary: &ImportSummary, dry_run: bool) -> Sheet {
     }
     let refused_row = |r: &importers::Refusal| {
         let column = r.column.clone().unwrap_or_default();
-        vec![format!("{}:{}", r.file, r.line), column, r.text.clone(), r.reason.clone()]
+        vec![
+            format!("{}:{}", r.file, r.line),
+            column,
+            r.text.clone(),
+            r.reason.clone(),
+        ]
     };
     Sheet {
         headline: vec![import_words(summary, dry_run)],
@@ -57,8 +68,16 @@ fn import_words(summary: &ImportSummary, dry_run: bool) -> String {
         return format!("{key}: these very tables are held already; nothing was changed.");
     }
     let skipped: u64 = summary.skipped.iter().map(|(_, n)| n).sum();
-    let left_out = if skipped > 0 { format!(", {skipped} skipped by rule") } else { String::new() };
-    let end = if dry_run { " Dry run: nothing was changed." } else { "" };
+    let left_out = if skipped > 0 {
+        format!(", {skipped} skipped by rule")
+    } else {
+        String::new()
+    };
+    let end = if dry_run {
+        " Dry run: nothing was changed."
+    } else {
+        ""
+    };
     format!(
         "{key}: {} rows read, {} kept, {} merged with what was held{left_out}, {} refused.{end}",
         summary.read,
@@ -121,7 +140,10 @@ pub fn sources(rows: &[SourceRow], path: &str) -> Sheet {
     };
     let lines: u64 = rows.iter().map(|r| r.lines).sum();
     Sheet {
-        headline: vec![format!("{} sources with {lines} line reports in {path}.", rows.len())],
+        headline: vec![format!(
+            "{} sources with {lines} line reports in {path}.",
+            rows.len()
+        )],
         columns: SOURCE_COLUMNS.to_vec(),
         rows: rows.iter().map(cells).collect(),
         notes: Vec::new(),

@@ -26,7 +26,11 @@ pub(super) fn write(sheet: &Sheet, out: &mut dyn Write) -> io::Result<()> {
 
 fn row<'t>(out: &mut dyn Write, cells: impl Iterator<Item = &'t str>) -> io::Result<()> {
     for cell in cells {
-        write!(out, "| {} ", safe(&cell.replace('|', "\\|").replace('\n', " ")))?;
+        write!(
+            out,
+            "| {} ",
+            safe(&cell.replace('|', "\\|").replace('\n', " "))
+        )?;
     }
     writeln!(out, "|")
 }

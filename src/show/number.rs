@@ -49,7 +49,10 @@ pub fn percent(fraction: f64) -> String {
 
 /// A relative uncertainty in whole per cent, at least 1: ` ±1%`; ` ±?` where it is not stated.
 pub fn plus_minus(relative: Option<f64>) -> String {
-    relative.map_or_else(|| " ±?".into(), |r| format!(" ±{:.0}%", (100.0 * r).max(1.0)))
+    relative.map_or_else(
+        || " ±?".into(),
+        |r| format!(" ±{:.0}%", (100.0 * r).max(1.0)),
+    )
 }
 
 #[cfg(test)]

@@ -45,12 +45,20 @@ pub struct Column {
 impl Column {
     /// A column whose cells stay on one line.
     pub const fn whole(title: &'static str, align: Align) -> Self {
-        Self { title, align, wraps: false }
+        Self {
+            title,
+            align,
+            wraps: false,
+        }
     }
 
     /// A column whose cells are broken where space is short.
     pub const fn wrapped(title: &'static str, align: Align) -> Self {
-        Self { title, align, wraps: true }
+        Self {
+            title,
+            align,
+            wraps: true,
+        }
     }
 }
 
@@ -115,7 +123,10 @@ impl Sheet {
 
     /// The rows of the machine-readable forms.
     pub(super) fn list(&self) -> &[Value] {
-        self.object.get(self.list).and_then(Value::as_array).map_or(&[], Vec::as_slice)
+        self.object
+            .get(self.list)
+            .and_then(Value::as_array)
+            .map_or(&[], Vec::as_slice)
     }
 }
 
@@ -130,7 +141,10 @@ impl Context {
         object.insert("assumed".into(), self.assumed.into());
         object.insert("notes".into(), notes.into());
         let sources = self.sources.into_iter().map(|(key, (citation, licence))| {
-            (key, serde_json::json!({"citation": citation, "licence": licence}))
+            (
+                key,
+                serde_json::json!({"citation": citation, "licence": licence}),
+            )
         });
         object.insert("sources".into(), Value::Object(sources.collect()));
         object

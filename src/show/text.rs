@@ -13,7 +13,11 @@ pub fn safe(text: &str) -> Cow<'_, str> {
     }
     let mut out = String::with_capacity(text.len() + 8);
     for c in text.chars() {
-        if obeyed(c) { out.extend(c.escape_unicode()) } else { out.push(c) }
+        if obeyed(c) {
+            out.extend(c.escape_unicode())
+        } else {
+            out.push(c)
+        }
     }
     Cow::Owned(out)
 }

@@ -49,7 +49,10 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     let rows = if wish.components {
         component_rows(answer, &shown, medium.is_none())
     } else {
-        shown.iter().map(|&f| feature_row(answer, f, medium.is_none())).collect()
+        shown
+            .iter()
+            .map(|&f| feature_row(answer, f, medium.is_none()))
+            .collect()
     };
     let mut columns = COLUMNS.to_vec();
     columns[0].title = match medium {
@@ -94,16 +97,31 @@ fn headline(answer: &Answer, wish: &Wish) -> Vec<String> {
         } else {
             beyond_scope(answer)
         };
-        return vec![format!("{}: no line is held for these species; {end}.", wish.typed)];
+        return vec![format!(
+            "{}: no line is held for these species; {end}.",
+            wish.typed
+        )];
     }
-    let species: BTreeSet<String> = answer.features.iter().map(|f| f.species.to_string()).collect();
+    let species: BTreeSet<String> = answer
+        .features
+        .iter()
+        .map(|f| f.species.to_string())
+        .collect();
     let count = answer.features.len();
     let plural = if count == 1 { "feature" } else { "features" };
-    let first = format!("{}: {count} {plural} of {} species.", wish.typed, species.len());
+    let first = format!(
+        "{}: {count} {plural} of {} species.",
+        wish.typed,
+        species.len()
+    );
     let mut out = vec![first];
-    for verdict in
-        [Verdict::Clear, Verdict::Tinged, Verdict::Blended, Verdict::Swamped, Verdict::Unrated]
-    {
+    for verdict in [
+        Verdict::Clear,
+        Verdict::Tinged,
+        Verdict::Blended,
+        Verdict::Swamped,
+        Verdict::Unrated,
+    ] {
         out.extend(verdict_words(answer, verdict));
     }
     out
@@ -130,38 +148,65 @@ fn beyond_scope(answer: &Answer) -> String {
 const NAMED: usize = 5;
 
 fn verdict_words(answer: &Answer, verdict: Verdict) -> Option<String> {
-    let mut of: Vec<&WindowFeature> =
-        answer.features.iter().filter(|f| f.verdict.central == verdict).collect();
+    let mut of: Vec<&WindowFeature> = answer
+        .features
+        .iter()
+        .filter(|f| f.verdict.central == verdict)
+        .collect();
     if of.is_empty() {
         return None;
     }
-    of.sort_by(|a, b| b.light_fraction.unwrap_or(0.0).total_cmp(&a.light_fraction.unwrap_or(0.0)));
+    of.sort_by(|a, b| {
+        b.light_fraction
+            .unwrap_or(0.0)
+            .total_cmp(&a.light_fraction.unwrap_or(0.0))
+    });
     let names: Vec<String> = of
         .iter()
         .take(NAMED)
         .map(|f| format!("{} {:.3}", f.species, f.placed.wavelength_nm))
         .collect();
     let rest = of.len().saturating_sub(NAMED);
-    let more = if rest > 0 { format!(" and {rest} more") } else { String::new() };
+    let more = if rest > 0 {
+        format!(" and {rest} more")
+    } else {
+        String::new()
+    };
     Some(format!("{verdict}: {}{more}.", names.join(", ")))
 }
 
 fn feature_row(answer: &Answer, index: usize, name_medium: bool) -> Vec<String> {
     let feature = &answer.features[index];
-    let lines: Vec<&WindowLine> = feature.components.iter().map(|&l| &answer.lines[l]).collect();
+    let lines: Vec<&WindowLine> = feature
+        .components
+        .iter()
+        .map(|&l| &answer.lines[l])
+        .collect();
     let strongest = lines.iter().copied().max_by(|a, b| {
-        a.light_fraction.unwrap_or(-1.0).total_cmp(&b.light_fraction.unwrap_or(-1.0))
+        a.light_fraction
+            .unwrap_or(-1.0)
+            .total_cmp(&b.light_fraction.unwrap_or(-1.0))
     });
-    let Some(strongest) = strongest else { return vec![String::new(); COLUMNS.len()] };
+    let Some(strongest) = strongest else {
+        return vec![String::new(); COLUMNS.len()];
+    };
     let transition = match lines.len() {
         1 => transition_cell(&strongest.line),
         n => format!("{}\n({n} components)", multiplet_cell(&strongest.line)),
     };
     let rate = rate_cell(feature.rate_per_s, feature.rate_relative_uncertainty);
-    let mut row = vec![position_cell(&feature.placed, name_medium), feature.species.to_string(), transition];
+    let mut row = vec![
+        position_cell(&feature.placed, name_medium),
+        feature.species.to_string(),
+        transition,
+    ];
     row.push(lower_cell(&strongest.line));
     row.push(rate);
-    row.push(feature.light_fraction.map_or_else(|| "?".into(), percent_in_table));
+    row.push(
+        feature
+            .light_fraction
+            .map_or_else(|| "?".into(), percent_in_table),
+    );
     row.push(feature.verdict.to_string());
     row.push(worst_cell(feature));
     row.push(sources_cell(lines.iter().map(|l| &l.line)));
@@ -182,7 +227,8 @@ fn component_rows(answer: &Answer, shown: &[usize], name_medium: bool) -> Vec<Ve
                 transition_cell(&line.line),
                 lower_cell(&line.line),
                 rate_cell(line.line.rate_per_s, line.line.rate_relative_uncertainty),
-                line.light_fraction.map_or_else(|| "?".into(), percent_in_table),
+                line.light_fraction
+                    .map_or_else(|| "?".into(), percent_in_table),
                 feature.verdict.to_string(),
                 worst_cell(feature),
                 sources_cell(std::iter::once(&line.line)),
@@ -192,7 +238,9 @@ fn component_rows(answer: &Answer, shown: &[usize], name_medium: bool) -> Vec<Ve
 }
 
 fn lower_cell(line: &Line) -> String {
-    line.lower.as_ref().map_or_else(|| "?".into(), |l| format!("{:.0}", l.energy_per_cm))
+    line.lower
+        .as_ref()
+        .map_or_else(|| "?".into(), |l| format!("{:.0}", l.energy_per_cm))
 }
 
 /// Below this part of the target's light an interferer is not worth a cell.
@@ -203,7 +251,10 @@ fn worst_cell(feature: &WindowFeature) -> String {
         Some((worst, placed)) if worst.fraction >= WORTH_NAMING => {
             let wing = if worst.wing { " wing" } else { "" };
             let part = percent_in_table(worst.fraction);
-            format!("{} {:.3}\n{part}{wing}", worst.species, placed.wavelength_nm)
+            format!(
+                "{} {:.3}\n{part}{wing}",
+                worst.species, placed.wavelength_nm
+            )
         }
         _ => "none".into(),
     }
@@ -213,13 +264,19 @@ fn worst_cell(feature: &WindowFeature) -> String {
 fn sources_cell<'l>(lines: impl Iterator<Item = &'l Line>) -> String {
     let mut keys: Vec<&str> = Vec::new();
     for line in lines {
-        for key in [Some(&*line.position_source), line.rate_source.as_deref()].into_iter().flatten() {
+        for key in [Some(&*line.position_source), line.rate_source.as_deref()]
+            .into_iter()
+            .flatten()
+        {
             if !keys.contains(&key) {
                 keys.push(key);
             }
         }
     }
-    keys.iter().map(|key| broken(key)).collect::<Vec<_>>().join("\n")
+    keys.iter()
+        .map(|key| broken(key))
+        .collect::<Vec<_>>()
+        .join("\n")
 }
 
 /// A long key is broken behind its first hyphen.
@@ -241,7 +298,10 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
     join_like(&mut notes);
     let (deciding, others): (Vec<_>, Vec<_>) = answer.unrated.iter().partition(|u| u.decides);
     for species in deciding {
-        notes.push(format!("{}: {}, so the window cannot be judged for it.", species.species, species.reason));
+        notes.push(format!(
+            "{}: {}, so the window cannot be judged for it.",
+            species.species, species.reason
+        ));
     }
     if !others.is_empty() {
         let names: Vec<&str> = others.iter().map(|u| u.species.as_str()).collect();
@@ -260,7 +320,11 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
             .into(),
     );
     if !answer.lower_bounds.is_empty() {
-        let names: Vec<String> = answer.lower_bounds.iter().map(ToString::to_string).collect();
+        let names: Vec<String> = answer
+            .lower_bounds
+            .iter()
+            .map(ToString::to_string)
+            .collect();
         notes.push(format!(
             "Levels are missing that could raise the partition function by over 1 % (it is a lower \
              bound): {}.",
@@ -281,7 +345,9 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
 fn join_like(notes: &mut Vec<String>) {
     let mut joined: Vec<(String, Vec<String>)> = Vec::new();
     for note in notes.drain(..) {
-        let Some((name, said)) = note.split_once(": ") else { continue };
+        let Some((name, said)) = note.split_once(": ") else {
+            continue;
+        };
         match joined.iter_mut().find(|(known, _)| known == said) {
             Some((_, names)) => names.push(name.to_owned()),
             None => joined.push((said.to_owned(), vec![name.to_owned()])),
@@ -289,8 +355,15 @@ fn join_like(notes: &mut Vec<String>) {
     }
     notes.extend(joined.into_iter().map(|(said, names)| {
         let more = names.len().saturating_sub(NAMED);
-        let end = if more > 0 { format!(" and {more} more") } else { String::new() };
-        format!("{}{end}: {said}", names[..names.len().min(NAMED)].join(", "))
+        let end = if more > 0 {
+            format!(" and {more} more")
+        } else {
+            String::new()
+        };
+        format!(
+            "{}{end}: {said}",
+            names[..names.len().min(NAMED)].join(", ")
+        )
     }));
 }
 
@@ -301,8 +374,9 @@ fn object(
     notes: &[String],
 ) -> Map<String, Value> {
     let mut object = context.object(notes);
-    let kept: Vec<usize> =
-        (0..answer.lines.len()).filter(|&l| shown.contains(&answer.lines[l].feature)).collect();
+    let kept: Vec<usize> = (0..answer.lines.len())
+        .filter(|&l| shown.contains(&answer.lines[l].feature))
+        .collect();
     let new_index = |old: usize| kept.iter().position(|&k| k == old);
     let lines: Vec<Value> = kept
         .iter()
@@ -342,15 +416,30 @@ fn feature_object(feature: &WindowFeature, components: &[Option<usize>]) -> Valu
     let mut put = |key: &str, value: Value| object.insert(key.to_owned(), value);
     put("species", json!(feature.species.to_string()));
     put("wavelength_nm", json!(feature.placed.wavelength_nm));
-    put("medium", json!(super::line::medium_word(feature.placed.medium)));
+    put(
+        "medium",
+        json!(super::line::medium_word(feature.placed.medium)),
+    );
     put("vacuum_wavelength_nm", json!(feature.placed.vacuum_nm));
     put("components", json!(components));
     put("rate_per_s", json!(feature.rate_per_s));
-    put("rate_relative_uncertainty", json!(feature.rate_relative_uncertainty));
+    put(
+        "rate_relative_uncertainty",
+        json!(feature.rate_relative_uncertainty),
+    );
     put("light_fraction", json!(feature.light_fraction));
-    put("interference_fraction", json!(feature.interference.map(|i| i.fraction)));
-    put("interference_low", json!(feature.interference.map(|i| i.low)));
-    put("interference_high", json!(feature.interference.map(|i| i.high)));
+    put(
+        "interference_fraction",
+        json!(feature.interference.map(|i| i.fraction)),
+    );
+    put(
+        "interference_low",
+        json!(feature.interference.map(|i| i.low)),
+    );
+    put(
+        "interference_high",
+        json!(feature.interference.map(|i| i.high)),
+    );
     put("own_species_fraction", json!(feature.own_species_fraction));
     put("unlisted_chance", json!(feature.unlisted_chance));
     put("remarks", json!(feature.remarks));

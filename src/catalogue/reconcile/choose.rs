@@ -29,7 +29,9 @@ fn octave(uncertainty: Option<f64>) -> i32 {
 
 /// Smallest 1 σ; at like σ a measurement before a calculation, a paper before memory, then the
 /// rank of the source. A computed value never displaces a measured one.
-pub(super) fn best_by_uncertainty(candidates: impl Iterator<Item = Candidate>) -> Option<Candidate> {
+pub(super) fn best_by_uncertainty(
+    candidates: impl Iterator<Item = Candidate>,
+) -> Option<Candidate> {
     candidates.min_by(|a, b| {
         (a.computed.cmp(&b.computed))
             .then(octave(a.uncertainty).cmp(&octave(b.uncertainty)))
@@ -44,7 +46,13 @@ mod tests {
     use super::*;
 
     fn candidate(computed: bool, kind: SourceKind, uncertainty: f64, source: usize) -> Candidate {
-        Candidate { computed, kind, uncertainty: Some(uncertainty), source, report: 0 }
+        Candidate {
+            computed,
+            kind,
+            uncertainty: Some(uncertainty),
+            source,
+            report: 0,
+        }
     }
 
     #[test]
@@ -55,7 +63,10 @@ mod tests {
             candidate(false, SourceKind::Paper, 0.012, 1),
             candidate(false, SourceKind::Paper, 0.1, 0),
         ];
-        assert_eq!(best_by_uncertainty(all.into_iter()).map(|c| c.source), Some(1));
+        assert_eq!(
+            best_by_uncertainty(all.into_iter()).map(|c| c.source),
+            Some(1)
+        );
         let alone = best_by_uncertainty(all[..1].iter().copied());
         assert_eq!(alone.map(|c| c.source), Some(3));
     }

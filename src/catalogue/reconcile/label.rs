@@ -49,9 +49,10 @@ impl Label {
 
     /// Whether both name the same multiplet, letter by letter after normalisation.
     pub fn same_multiplet(&self, other: &Label) -> bool {
-        let (Some((c1, c2)), Some((t1, t2))) =
-            (both(&self.configuration, &other.configuration), both(&self.term, &other.term))
-        else {
+        let (Some((c1, c2)), Some((t1, t2))) = (
+            both(&self.configuration, &other.configuration),
+            both(&self.term, &other.term),
+        ) else {
             return false;
         };
         bare_term(t1) == bare_term(t2) && shells_agree(&shells(c1), &shells(c2))
@@ -144,7 +145,10 @@ mod tests {
 
     fn label(configuration: &str, term: &str) -> Label {
         let text = |t: &str| (!t.is_empty()).then(|| Arc::from(t));
-        Label { configuration: text(configuration), term: text(term) }
+        Label {
+            configuration: text(configuration),
+            term: text(term),
+        }
     }
 
     const FE_II: Species = Species::new(26, 2);
@@ -154,27 +158,42 @@ mod tests {
         let a = label("3d6 (5D) 4s", "a 6D");
         assert_eq!(a.agreement(&label("3d6 4s", "6D"), FE_II), Agreement::Same);
         let al = label("3s2 3p", "2Po");
-        assert_eq!(al.agreement(&label("3p", "2Po"), Species::new(13, 1)), Agreement::Same);
+        assert_eq!(
+            al.agreement(&label("3p", "2Po"), Species::new(13, 1)),
+            Agreement::Same
+        );
     }
 
     #[test]
     fn another_term_of_the_same_configuration_is_another_level() {
         let a = label("1s 4f", "3Fo");
-        assert_eq!(a.agreement(&label("1s 4f", "1Fo"), Species::new(2, 1)), Agreement::Different);
+        assert_eq!(
+            a.agreement(&label("1s 4f", "1Fo"), Species::new(2, 1)),
+            Agreement::Different
+        );
     }
 
     #[test]
     fn another_parity_is_another_level_and_a_mixed_name_is_not() {
         let a = label("3d6 4p", "z 4Fo");
-        assert_eq!(a.agreement(&label("3d7", "4F"), FE_II), Agreement::Different);
-        assert_eq!(a.agreement(&label("3d5 4s 4p", "z 4Do"), FE_II), Agreement::Otherwise);
+        assert_eq!(
+            a.agreement(&label("3d7", "4F"), FE_II),
+            Agreement::Different
+        );
+        assert_eq!(
+            a.agreement(&label("3d5 4s 4p", "z 4Do"), FE_II),
+            Agreement::Otherwise
+        );
         assert_eq!(a.agreement(&Label::default(), FE_II), Agreement::Unknown);
     }
 
     #[test]
     fn one_electron_levels_go_by_shell() {
         let a = label("4f", "2Fo");
-        assert_eq!(a.agreement(&label("4f", ""), Species::new(1, 1)), Agreement::Same);
+        assert_eq!(
+            a.agreement(&label("4f", ""), Species::new(1, 1)),
+            Agreement::Same
+        );
     }
 
     #[test]

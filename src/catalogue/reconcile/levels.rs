@@ -2,7 +2,7 @@
 
 use vocabulary::atom::Species;
 
-use super::choose::{best_by_uncertainty, Candidate};
+use super::choose::{Candidate, best_by_uncertainty};
 use super::label::Agreement;
 use super::{Apart, ApartReason, DerivedLevel, Label, LevelReport, SourceReports};
 
@@ -37,7 +37,11 @@ pub(super) fn join(species: Species, reports: &[SourceReports]) -> Joined {
     for (source, of) in reports.iter().enumerate() {
         let mut taken = pairings(species, of, &anchors, source, &mut apart);
         let mut order: Vec<usize> = (0..of.levels.len()).collect();
-        order.sort_by(|&a, &b| of.levels[a].energy_per_cm.total_cmp(&of.levels[b].energy_per_cm));
+        order.sort_by(|&a, &b| {
+            of.levels[a]
+                .energy_per_cm
+                .total_cmp(&of.levels[b].energy_per_cm)
+        });
         let mut fresh = Vec::new();
         for report in order {
             let place = taken[report].unwrap_or_else(|| {
@@ -73,7 +77,11 @@ fn same_in_source(of: &SourceReports, report: usize, fresh: &[(usize, usize)]) -
 /// Keeps anchors sorted by energy, so that neighbours are found by halving.
 fn anchors_in_order(anchors: &mut Vec<Anchor>, anchor_of: &mut [Vec<usize>]) {
     let mut order: Vec<usize> = (0..anchors.len()).collect();
-    order.sort_by(|&a, &b| anchors[a].energy_per_cm.total_cmp(&anchors[b].energy_per_cm));
+    order.sort_by(|&a, &b| {
+        anchors[a]
+            .energy_per_cm
+            .total_cmp(&anchors[b].energy_per_cm)
+    });
     let mut place = vec![0; anchors.len()];
     for (new, &old) in order.iter().enumerate() {
         place[old] = new;
@@ -114,7 +122,12 @@ fn pairings(
         let open = |p: &&Pairing| p.class == pair.class && !claimed[p.anchor];
         if pair.class > 0 && by_report[pair.report].iter().filter(open).count() > 1 {
             let reason = ApartReason::SeveralCandidates;
-            apart.push(Apart { source, report: pair.report, is_level: true, reason });
+            apart.push(Apart {
+                source,
+                report: pair.report,
+                is_level: true,
+                reason,
+            });
             ambiguous[pair.report] = true;
             continue;
         }
@@ -135,7 +148,9 @@ fn candidates(
     let mut out = Vec::new();
     let level = &of.levels[report];
     let own_scale = of.source.scale_at(level.energy_per_cm);
-    let reach = 3.0 * level.uncertainty_per_cm + own_scale + widest
+    let reach = 3.0 * level.uncertainty_per_cm
+        + own_scale
+        + widest
         + one_electron_reach(species, level.energy_per_cm);
     let from = anchors.partition_point(|a| a.energy_per_cm < level.energy_per_cm - reach);
     for (offset, anchor) in anchors[from..].iter().enumerate() {
@@ -152,12 +167,22 @@ fn candidates(
             Agreement::Different => continue,
         };
         let sigma = level.uncertainty_per_cm.hypot(anchor.uncertainty_per_cm);
-        let scale = own_scale + anchor.scale_per_cm
-            + if class == 0 { one_electron_reach(species, level.energy_per_cm) } else { 0.0 };
+        let scale = own_scale
+            + anchor.scale_per_cm
+            + if class == 0 {
+                one_electron_reach(species, level.energy_per_cm)
+            } else {
+                0.0
+            };
         let difference = (level.energy_per_cm - anchor.energy_per_cm).abs();
         if difference <= 3.0 * sigma + scale {
             let deviation = difference / (sigma + scale).max(f64::MIN_POSITIVE);
-            out.push(Pairing { class, deviation, report, anchor: from + offset });
+            out.push(Pairing {
+                class,
+                deviation,
+                report,
+                anchor: from + offset,
+            });
         }
     }
     out
@@ -165,7 +190,11 @@ fn candidates(
 
 /// One-electron levels are named by n, l, j alone: scales of tables differ by 1e-5 at the most.
 fn one_electron_reach(species: Species, energy_per_cm: f64) -> f64 {
-    if species.is_one_electron() { 1e-5 * energy_per_cm.abs() } else { 0.0 }
+    if species.is_one_electron() {
+        1e-5 * energy_per_cm.abs()
+    } else {
+        0.0
+    }
 }
 
 fn weights_agree(level: &LevelReport, anchor: &Anchor) -> bool {
@@ -200,8 +229,11 @@ impl Anchor {
             self.label = level.label.clone();
         }
         self.label.term = self.label.term.take().or_else(|| level.label.term.clone());
-        self.label.configuration =
-            self.label.configuration.take().or_else(|| level.label.configuration.clone());
+        self.label.configuration = self
+            .label
+            .configuration
+            .take()
+            .or_else(|| level.label.configuration.clone());
     }
 }
 
@@ -230,9 +262,15 @@ fn conclude(
     for (new, (old, _)) in levels.iter().enumerate() {
         place[*old] = Some(new);
     }
-    let level_of =
-        anchor_of.into_iter().map(|of| of.into_iter().map(|a| place[a]).collect()).collect();
-    (levels.into_iter().map(|(_, level)| level).collect(), level_of, apart)
+    let level_of = anchor_of
+        .into_iter()
+        .map(|of| of.into_iter().map(|a| place[a]).collect())
+        .collect();
+    (
+        levels.into_iter().map(|(_, level)| level).collect(),
+        level_of,
+        apart,
+    )
 }
 
 fn concluded(reports: &[SourceReports], anchor: &Anchor) -> DerivedLevel {

@@ -29,7 +29,12 @@ pub(super) fn join(
                 Linked::Loose => loose.push((source, report)),
                 Linked::Mean => {
                     let reason = ApartReason::ComponentsHeld;
-                    apart.push(Apart { source, report, is_level: false, reason });
+                    apart.push(Apart {
+                        source,
+                        report,
+                        is_level: false,
+                        reason,
+                    });
                 }
             }
         }
@@ -129,7 +134,11 @@ fn best_position(reports: &[SourceReports], members: &Reports) -> Option<Positio
     for &(source, report) in members {
         let line = &reports[source].lines[report];
         positions.extend(ritz(&reports[source], source, line));
-        let into = if line.kind == LineKind::Blend { &mut blended } else { &mut positions };
+        let into = if line.kind == LineKind::Blend {
+            &mut blended
+        } else {
+            &mut positions
+        };
         into.extend(given(source, line));
     }
     best_of(reports, &positions).or_else(|| best_of(reports, &blended))
@@ -170,7 +179,11 @@ fn ritz(of: &SourceReports, source: usize, line: &LineReport) -> Option<Position
     Some(Position {
         wavenumber_per_cm: (upper.energy_per_cm - lower.energy_per_cm).abs(),
         uncertainty_per_cm: lower.uncertainty_per_cm.hypot(upper.uncertainty_per_cm),
-        origin: if computed { PositionOrigin::Computed } else { PositionOrigin::Ritz },
+        origin: if computed {
+            PositionOrigin::Computed
+        } else {
+            PositionOrigin::Ritz
+        },
         source,
     })
 }
@@ -206,11 +219,16 @@ fn join_loose(
     apart: &mut Vec<Apart>,
 ) {
     for of_source in loose.chunk_by(|a, b| a.0 == b.0) {
-        let widest = lines.iter().map(|l| l.uncertainty_per_cm).fold(0.0, f64::max);
+        let widest = lines
+            .iter()
+            .map(|l| l.uncertainty_per_cm)
+            .fold(0.0, f64::max);
         let mut fresh = Vec::new();
         for &(source, report) in of_source {
             let of = &reports[source].lines[report];
-            let Some(position) = best_position(reports, &vec![(source, report)]) else { continue };
+            let Some(position) = best_position(reports, &vec![(source, report)]) else {
+                continue;
+            };
             match near(lines, levels, of, &position, widest).as_slice() {
                 [] => fresh.push(standing_alone(reports, source, report, &position)),
                 [single] => {
@@ -221,7 +239,12 @@ fn join_loose(
                 }
                 _ => {
                     let reason = ApartReason::SeveralCandidates;
-                    apart.push(Apart { source, report, is_level: false, reason });
+                    apart.push(Apart {
+                        source,
+                        report,
+                        is_level: false,
+                        reason,
+                    });
                 }
             }
         }
@@ -279,8 +302,7 @@ fn near(
     widest: f64,
 ) -> Vec<usize> {
     let reach = 3.0 * position.uncertainty_per_cm.hypot(widest);
-    let from = lines
-        .partition_point(|l| l.wavenumber_per_cm < position.wavenumber_per_cm - reach);
+    let from = lines.partition_point(|l| l.wavenumber_per_cm < position.wavenumber_per_cm - reach);
     let fits = |l: &DerivedLine| {
         let sigma = l.uncertainty_per_cm.hypot(position.uncertainty_per_cm);
         (l.wavenumber_per_cm - position.wavenumber_per_cm).abs() <= 3.0 * sigma
