@@ -4,7 +4,9 @@
 usage: curated.py [DATA]        (default: the data folder of this checkout)
 
 Reads data/curated-<ion>/entered_levels.csv and entered_lines.csv (what two separate entries from memory agree on) and
-`curated_decisions.toml`; writes levels.csv, lines.csv and source.toml beside them. Standard library only; nothing is fetched.
+`curated_decisions.toml`; writes levels.csv, lines.csv and source.toml beside them. later_levels.csv and later_lines.csv, where they
+are, hold values that one of the two entries had and a third recollection, made without a look at it, confirmed. Standard library
+only; nothing is fetched.
 
 Levels: those that a remembered line confirms (`line`), whose term is confirmed (`term`, three times the entry's uncertainty),
 of the lowest configuration (`ground`), or known through a coarse line only (`coarse`, widened to what the line allows);
@@ -59,19 +61,32 @@ class Ion:
         self.name = ion_name(os.path.basename(folder))
         self.species = self.name.replace("_", " ")
         self.settings = {**decisions["defaults"], **decisions["ion"][self.name]}
-        self.entered_levels = read(os.path.join(folder, "entered_levels.csv"))
-        self.entered_lines = read(os.path.join(folder, "entered_lines.csv"))
+        self.entered_levels = self.rows("levels.csv")
+        self.entered_lines = self.rows("lines.csv")
         self.by_fractions = self.fraction_rates()
         self.left_out = []
-        self.levels = [level for level in map(self.level, self.entered_levels) if level]
+        self.levels = sorted((level for level in map(self.level, self.entered_levels) if level), key=lambda level: level["e"])
         self.by_key = {(level["text"], level["j"]): level for level in self.levels}
         self.lines = self.make_lines()
 
+    def rows(self, table):
+        """Rows of entered_TABLE and later_TABLE, numbered, with the J that the decisions correct."""
+        out = []
+        for prefix, mark in (("entered_", ""), ("later_", "later ")):
+            path = os.path.join(self.folder, prefix + table)
+            found = read(path) if os.path.exists(path) else []
+            out += [{**row, "row": f"{mark}{number}"} for number, row in enumerate(found, start=1)]
+        for choice in decided(self.decisions, "j", self.name):
+            for row in out:
+                for energy, j in (("energy_per_cm", "j"), ("lower_energy_per_cm", "lower_j"), ("upper_energy_per_cm", "upper_j")):
+                    if row.get(energy) == choice["energy"] and row[j] == choice["entered"]:
+                        row[j] = choice["j"]
+        return out
+
     def fraction_rates(self):
         """{level pair: how many of the two entries took its rate from the multiplet by LS fractions}."""
-        path = os.path.join(self.folder, "entered_rates.csv")
         out = {}
-        for row in read(path) if os.path.exists(path) else []:
+        for row in self.rows("rates.csv"):
             pair = row["lower_energy_per_cm"], row["lower_j"], row["upper_energy_per_cm"], row["upper_j"]
             out[pair] = (row["first_entry"], row["second_entry"]).count(BY_FRACTIONS)
         return out
@@ -136,7 +151,7 @@ class Ion:
     def make_lines(self):
         """Bundled rows: entered lines, the blends among them twice, then derived components."""
         rows, rated, seen = [], {}, set()
-        for number, row in enumerate(self.entered_lines, start=1):
+        for row in self.entered_lines:
             pair = row["lower_energy_per_cm"], row["lower_j"], row["upper_energy_per_cm"], row["upper_j"]
             if pair[:2] not in self.by_key or pair[2:] not in self.by_key:
                 self.left_out.append((row["wavelength_nm"], "a level of it is left out"))
@@ -145,7 +160,7 @@ class Ion:
             if rate:
                 rated[pair] = rate
             seen.add(pair)
-            rows += self.line_rows(row, pair, number)
+            rows += self.line_rows(row, pair, row["row"])
         trusted = {pair: rate for pair, rate in rated.items() if not self.by_fractions.get(pair)}
         derived = rates.derive(self.levels, trusted, lambda pair: pair not in rated)
         out = [self.with_rate(row, rated, derived) for row in rows]

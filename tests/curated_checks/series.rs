@@ -1,7 +1,7 @@
 //! Rydberg-Ritz regularity: along a series the quantum defect is a smooth function of 1/n*^2 (Ritz 1903; Seaton 1983, Rep. Prog.
 //! Phys. 46, 167, eq. 2.1), except where another configuration of the same symmetry lies among its members.
 
-use super::support::{Ion, ion, ions};
+use super::support::{Ion, ion};
 use std::collections::BTreeMap;
 
 /// Rydberg constant for infinite mass, cm-1 (CODATA 2022); the reduced mass changes n* by less than 7e-5 of it (He) and only smoothly.

@@ -40,6 +40,8 @@ pub struct Ion {
     pub lines: Vec<Line>,
     /// Rows of entered_lines.csv.
     pub entered_lines: Vec<HashMap<String, String>>,
+    /// Rows of later_lines.csv, where there is one.
+    pub later_lines: Vec<HashMap<String, String>>,
 }
 
 impl Ion {
@@ -47,6 +49,15 @@ impl Ion {
     pub fn level(&self, end: &(String, String)) -> Option<&Level> {
         let j = end.1.parse::<f64>().ok();
         self.levels.iter().find(|l| l.text == end.0 && l.j == j)
+    }
+
+    /// The kept row that a bundled line comes from; `None` for a component that follows from its multiplet.
+    pub fn kept_row(&self, line: &Line) -> Option<&HashMap<String, String>> {
+        let (table, number) = match line.row.strip_prefix("later ") {
+            Some(number) => (&self.later_lines, number),
+            None => (&self.entered_lines, line.row.as_str()),
+        };
+        number.parse::<usize>().ok().map(|n| &table[n - 1])
     }
 
     /// Vacuum wavenumber that a line's levels give, cm⁻¹.
@@ -100,6 +111,16 @@ fn read_ion(folder: &Path) -> Ion {
         levels: levels.iter().map(level).collect(),
         lines: lines.iter().map(line).collect(),
         entered_lines: rows(&folder.join("entered_lines.csv")),
+        later_lines: rows_if_there(&folder.join("later_lines.csv")),
+    }
+}
+
+/// The same of a file that need not be there.
+pub fn rows_if_there(path: &Path) -> Vec<HashMap<String, String>> {
+    if path.is_file() {
+        rows(path)
+    } else {
+        Vec::new()
     }
 }
 
