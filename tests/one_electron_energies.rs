@@ -5,7 +5,7 @@
 use lineclear::calc::one_electron::{
     NuclearMoment, Nucleus, OneElectronError, energy, gross_energy, hyperfine_levels, levels,
 };
-use vocabulary::atom::HalfInteger;
+use vocabulary::atom::{HalfInteger, Species};
 use vocabulary::light::constants::{
     FINE_STRUCTURE, PER_CM_PER_EV, RYDBERG_PER_CM, SPEED_OF_LIGHT_M_PER_S,
 };
@@ -404,4 +404,29 @@ fn nuclear_mass_from_the_atom() {
         let error = made.mass_electrons() / exact.mass_electrons() - 1.0;
         assert!(error.abs() < 1e-9, "{mass}: {error:e}");
     }
+}
+
+/// From the species: H is the proton, a natural mixture its commonest isotope; a stage with more electrons is refused.
+#[test]
+fn species_lead_to_their_nuclei() {
+    let of = |text: &str| Nucleus::of(text.parse::<Species>().unwrap());
+    assert_eq!(of("H I").unwrap(), Nucleus::PROTON);
+    assert_eq!(of("D I").unwrap(), Nucleus::DEUTERON);
+    assert_eq!(of("He II").unwrap(), Nucleus::ALPHA);
+    assert_eq!(of("3He II").unwrap(), Nucleus::HELION);
+    for (text, mass_number, radius_fm) in [("Li III", 7, 2.444), ("C VI", 12, 2.470), ("Fe XXVI", 56, 3.738)] {
+        let nucleus = of(text).unwrap();
+        assert_eq!(nucleus.mass_number(), mass_number, "{text}");
+        assert_eq!(nucleus.radius_fm(), radius_fm, "{text}");
+    }
+    // Every element that the model takes has a nucleus, natural or not.
+    for number in 1..=110 {
+        let nucleus = Nucleus::of(Species::new(number, number)).unwrap();
+        assert!(energy(&nucleus, 1, 0, half(1)).unwrap().binding_per_cm > 1e5);
+    }
+    let refused = of("He I").unwrap_err().to_string();
+    assert_eq!(refused, "He I has 2 electrons: the one-electron model needs exactly one");
+    let moment = |text: &str| NuclearMoment::of(text.parse().unwrap());
+    assert_eq!(moment("D I"), Some(NuclearMoment::DEUTERON));
+    assert_eq!(moment("He II"), None);
 }

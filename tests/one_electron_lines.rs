@@ -3,7 +3,7 @@
 #![allow(clippy::unwrap_used, reason = "in a test a panic is the report")]
 
 use lineclear::calc::one_electron::{
-    Nucleus, OneElectronLevel, OneElectronLine, level_index, levels, lines, orbital_letter,
+    Nucleus, OneElectronLevel, OneElectronLine, level_index, levels, lines,
     rate_relative_uncertainty, series_name,
 };
 
@@ -154,9 +154,6 @@ fn levels_stand_in_order_and_carry_labels() {
     assert_eq!(all[0].energy_per_cm, 0.0);
     // Fine structure: higher j lies higher; l does not matter but for the Lamb shift.
     assert!(all[3].energy_per_cm > all[2].energy_per_cm);
-    let letters: String = (0..12).map(orbital_letter).collect();
-    assert_eq!(letters, "spdfghiklmno");
-    assert_eq!(orbital_letter(25), "[25]");
 }
 
 #[test]

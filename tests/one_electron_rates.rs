@@ -7,7 +7,7 @@ use std::f64::consts::PI;
 use lineclear::calc::angular::multiplet_share;
 use lineclear::calc::one_electron::{
     ContinuumPair, Nucleus, OneElectronError, ShellPair, component_rate, decay_rate, lifetime_s,
-    lines, mean_square_radius, orbital_rate, oscillator_strength, radial_integral,
+    lines, mean_square_radius, orbital_rate, oscillator_strength, radial_integral, rate_relative_uncertainty,
     shell_oscillator_strength, shell_rate, two_photon_rate,
 };
 use vocabulary::atom::HalfInteger;
@@ -380,4 +380,22 @@ fn oscillator_strength_and_rate_agree() {
     let ours = orbital_rate(&heavy, (2, 1), (1, 0)).unwrap();
     assert!((ours / rate - 1.0).abs() < 1e-11, "{ours:e} {rate:e}");
     assert!((ours - 6.268e8).abs() < 5e5, "{ours:e}");
+}
+
+/// The stated 1 σ against rates of Dirac wave functions with retardation (`relativistic_rates.py`) for Z = 1 … 26: at least 68 % of the
+/// components within 1 σ, 95 % within 2 σ (normal expectation), none beyond 3 σ.
+#[test]
+fn stated_uncertainty_covers_the_relativistic_rates() {
+    let table = include_str!("reference/one_electron/relativistic_rates.csv");
+    let mut pulls = Vec::new();
+    for row in table.lines().skip(1) {
+        let cells: Vec<f64> = row.split(',').map(|c| c.parse().unwrap()).collect();
+        let charge = cells[0] as u8;
+        let nucleus = Nucleus::new(charge, 4000.0 * cells[0], 0.0).unwrap();
+        pulls.push((cells[5] - 1.0).abs() / rate_relative_uncertainty(&nucleus));
+    }
+    assert_eq!(pulls.len(), 165);
+    let within = |limit: f64| pulls.iter().filter(|p| **p <= limit).count() as f64 / pulls.len() as f64;
+    println!("rates within 1 σ: {:.3}, 2 σ: {:.3}, 3 σ: {:.3}", within(1.0), within(2.0), within(3.0));
+    assert!(within(1.0) >= 0.68 && within(2.0) >= 0.95 && within(3.0) >= 1.0);
 }

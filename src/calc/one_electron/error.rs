@@ -55,4 +55,10 @@ pub enum OneElectronError {
         /// Number of electrons.
         electrons: u8,
     },
+    /// A species without a known nuclear mass.
+    #[error("no nuclear mass is known for {symbol}: give a mass number that is in the isotope table")]
+    NoMass {
+        /// How the trade writes the species.
+        symbol: String,
+    },
 }

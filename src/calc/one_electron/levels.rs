@@ -1,6 +1,6 @@
 //! All levels of a one-electron system, their labels and series.
 
-use vocabulary::atom::HalfInteger;
+use vocabulary::atom::{HalfInteger, OneElectronLabel};
 
 use super::dirac::State;
 use super::energy::{Budget, Energy, binding, gross};
@@ -33,15 +33,22 @@ pub struct OneElectronLevel {
 }
 
 impl OneElectronLevel {
+    /// The label n l j in the words of the catalogue.
+    pub fn label(&self) -> Option<OneElectronLabel> {
+        let n = u16::try_from(self.n).ok()?;
+        OneElectronLabel::new(n, u8::try_from(self.l).ok()?, self.j)
+    }
+
     /// Configuration, `2p`.
     pub fn configuration(&self) -> String {
-        format!("{}{}", self.n, orbital_letter(self.l))
+        self.label()
+            .map_or_else(String::new, OneElectronLabel::configuration)
     }
 
     /// Term, `2Po`.
     pub fn term(&self) -> String {
-        let letter = orbital_letter(self.l).to_uppercase();
-        format!("2{letter}{}", if self.l % 2 == 1 { "o" } else { "" })
+        self.label()
+            .map_or_else(String::new, |label| label.term().to_string())
     }
 
     /// Statistical weight 2j + 1.
@@ -57,18 +64,6 @@ impl OneElectronLevel {
             self.budget.of_difference(&lower.budget),
         )
     }
-}
-
-/// Letter of an orbital: s, p, d, f, g, h, i, k, l … (no j, and without a second s or p), from l = 21 on
-/// `[l]` (as the trade writes high l).
-pub fn orbital_letter(l: u32) -> String {
-    const LETTERS: [char; 21] = [
-        's', 'p', 'd', 'f', 'g', 'h', 'i', 'k', 'l', 'm', 'n', 'o', 'q', 'r', 't', 'u', 'v', 'w',
-        'x', 'y', 'z',
-    ];
-    LETTERS
-        .get(l as usize)
-        .map_or_else(|| format!("[{l}]"), char::to_string)
 }
 
 /// Name of the series of hydrogen lines that end on n (Lyman 1 … Humphreys 6).

@@ -36,13 +36,14 @@ mod qed;
 mod radial;
 mod rates;
 mod remainders;
+mod species;
 
 pub use energy::Energy;
 pub use error::OneElectronError;
 pub use hyperfine::{HyperfineLevel, NuclearMoment, hyperfine_levels};
 pub use levels::{
     HIGHEST_FINE_N, HIGHEST_GROSS_N, OneElectronLevel, energy, gross_energy, level_index, levels,
-    orbital_letter, series_name,
+    series_name,
 };
 pub use nucleus::{HIGHEST_ATOMIC_NUMBER, Nucleus, typical_radius_fm};
 pub use radial::{ContinuumPair, HIGHEST_RADIAL_N, ShellPair, mean_square_radius, radial_integral};
