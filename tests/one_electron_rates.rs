@@ -7,8 +7,8 @@ use std::f64::consts::PI;
 use lineclear::calc::angular::multiplet_share;
 use lineclear::calc::one_electron::{
     ContinuumPair, Nucleus, OneElectronError, ShellPair, component_rate, decay_rate, lifetime_s,
-    lines, mean_square_radius, orbital_rate, oscillator_strength, radial_integral, rate_relative_uncertainty,
-    shell_oscillator_strength, shell_rate, two_photon_rate,
+    lines, mean_square_radius, orbital_rate, oscillator_strength, radial_integral,
+    rate_relative_uncertainty, shell_oscillator_strength, shell_rate, two_photon_rate,
 };
 use vocabulary::atom::HalfInteger;
 use vocabulary::light::constants::{BOHR_RADIUS_M, FINE_STRUCTURE};
@@ -395,7 +395,13 @@ fn stated_uncertainty_covers_the_relativistic_rates() {
         pulls.push((cells[5] - 1.0).abs() / rate_relative_uncertainty(&nucleus));
     }
     assert_eq!(pulls.len(), 165);
-    let within = |limit: f64| pulls.iter().filter(|p| **p <= limit).count() as f64 / pulls.len() as f64;
-    println!("rates within 1 σ: {:.3}, 2 σ: {:.3}, 3 σ: {:.3}", within(1.0), within(2.0), within(3.0));
+    let within =
+        |limit: f64| pulls.iter().filter(|p| **p <= limit).count() as f64 / pulls.len() as f64;
+    println!(
+        "rates within 1 σ: {:.3}, 2 σ: {:.3}, 3 σ: {:.3}",
+        within(1.0),
+        within(2.0),
+        within(3.0)
+    );
     assert!(within(1.0) >= 0.68 && within(2.0) >= 0.95 && within(3.0) >= 1.0);
 }

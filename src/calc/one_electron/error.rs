@@ -56,7 +56,9 @@ pub enum OneElectronError {
         electrons: u8,
     },
     /// A species without a known nuclear mass.
-    #[error("no nuclear mass is known for {symbol}: give a mass number that is in the isotope table")]
+    #[error(
+        "no nuclear mass is known for {symbol}: give a mass number that is in the isotope table"
+    )]
     NoMass {
         /// How the trade writes the species.
         symbol: String,

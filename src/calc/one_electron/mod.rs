@@ -18,11 +18,11 @@
 //! Fine structure is given for n ≤ 50, mean shell energies for n ≤ 1000. The 1 σ of a level is built from
 //! the Rydberg constant and mass, the charge radius, the table values, and for every truncated series the size
 //! of what was left out; the parts that levels have in common cancel in the 1 σ of a line. For hydrogen 1s it is
-//! about 4 kHz; it grows with Z⁴ to Z⁶ and is dominated above Z ≈ 30 by the remembered table of F and by the
+//! about 7 kHz; it grows with Z⁴ to Z⁶ and is dominated above Z ≈ 30 by the remembered table of F and by the
 //! nuclear radius. Screening, other electrons and outside fields are not in the model.
 //!
 //! Rates are nonrelativistic electric-dipole rates, exact to 1e-12 within that model, with a stated relative
-//! 1 σ of (Zα)². Two-photon and magnetic-dipole decay are included for 2s alone.
+//! 1 σ of 1.5 (Zα)². Two-photon and magnetic-dipole decay are included for 2s alone.
 
 mod bethe;
 mod bethe_table;
