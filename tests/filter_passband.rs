@@ -42,8 +42,8 @@ fn every_shape_has_its_peak_and_half_width() {
     assert_eq!(at(&slab, HEAD_ON, 656.9), 0.0);
 }
 
-/// 1/(1 + x²N): at one FWHM from the centre (x = 2) 1/5, 1/17, 1/65 of the peak for 1, 2, 3 cavities,
-/// and the Lorentzian of one cavity is that of a Voigt profile without Gaussian part.
+/// 1/(1 + x²N): at one FWHM from the centre (x = 2) 1/5, 1/17, 1/65 of the peak for 1, 2, 3
+/// cavities, and the Lorentzian of one cavity is that of a Voigt profile without Gaussian part.
 #[test]
 fn more_cavities_fall_off_more_steeply() {
     for (cavities, part) in [(1, 5.0), (2, 17.0), (3, 65.0)] {
@@ -67,9 +67,9 @@ fn more_cavities_fall_off_more_steeply() {
     }
 }
 
-/// Lissberger & Wilcock 1959: λ(θ) = λ₀ √(1 − sin²θ/n²); for small angles the shift is λ₀ θ²/(2 n²),
-/// and that of a cone's centre half that of its steepest rays. Worked by hand for 656.3 nm, n = 2.05, 10°:
-/// sin 10° = 0.173648, ratio 0.996406, shift 2.36 nm.
+/// Lissberger & Wilcock 1959: λ(θ) = λ₀ √(1 − sin²θ/n²); for small angles the shift is λ₀ θ²/(2
+/// n²), and that of a cone's centre half that of its steepest rays. Worked by hand for 656.3 nm, n
+/// = 2.05, 10°: sin 10° = 0.173648, ratio 0.996406, shift 2.36 nm.
 #[test]
 fn tilt_and_cone_shift_as_published() {
     let ratio = tilt_ratio(10.0, 2.05).unwrap();
@@ -137,6 +137,8 @@ fn warming_moves_the_passband() {
         1e-12,
         "centre",
     );
+    let moved = filter.seen(HEAD_ON).unwrap().shifted(0.3);
+    assert_close(moved.transmission(656.6).unwrap(), 0.6, 1e-12, "shifted");
 }
 
 #[test]

@@ -12,8 +12,11 @@ use lineclear::calc::plasma::{
     kt_per_cm_from_ev, kt_per_cm_from_kelvin, line_centre_optical_depth, mean_gaunt,
     radiative_recombination, recombination_into_shell, self_absorption_factor,
 };
-use lineclear::calc::shape::{LineWidths, doppler_sigma_relative};
+use lineclear::calc::shape::{LineWidths, OuterElectron, doppler_sigma_relative};
+use lineclear::vocabulary::atom::{HalfInteger, Species};
 use lineclear::vocabulary::light::constants::{PER_CM_PER_EV, RYDBERG_PER_CM};
+use lineclear::vocabulary::spectrum::{Level, Line, LineKind, PositionOrigin};
+use std::sync::Arc;
 use table::{assert_close, rows};
 
 fn kelvin(t: f64) -> f64 {
@@ -24,8 +27,8 @@ fn ev(t: f64) -> f64 {
     kt_per_cm_from_ev(t).unwrap()
 }
 
-/// van Regemorter 1962, equation 24: de-excitation 20.60 λ³ A T^(−1/2) P cm³/s (λ in cm, T in K), carried
-/// over to excitation by detailed balance: the same rate as from f.
+/// van Regemorter 1962, equation 24: de-excitation 20.60 λ³ A T^(−1/2) P cm³/s (λ in cm, T in K),
+/// carried over to excitation by detailed balance: the same rate as from f.
 #[test]
 fn excitation_agrees_with_the_form_of_the_paper() {
     let (rate_per_s, energy) = (6.265e8, 82_259.0);
@@ -45,7 +48,8 @@ fn excitation_agrees_with_the_form_of_the_paper() {
     }
 }
 
-/// Osterbrock & Ferland 2006, table 3.16 (from memory): Υ(1s–2p) = 0.51 at 1e4 K. The formula claims a factor 3.
+/// Osterbrock & Ferland 2006, table 3.16 (from memory): Υ(1s–2p) = 0.51 at 1e4 K. The formula
+/// claims a factor 3.
 #[test]
 fn lyman_alpha_excitation_is_within_its_uncertainty() {
     let kt = kelvin(1e4);
@@ -81,8 +85,8 @@ const HYDROGEN: Subshell = Subshell {
     lotz: HYDROGEN_LOTZ,
 };
 
-/// Peak of hydrogen's ionisation cross section near 55 eV: 0.7 π a₀² = 6.2e-21 m² (M. B. Shah et al. 1987, J. Phys. B
-/// 20, 3501, from memory; 10 % theirs and Lotz's).
+/// Peak of hydrogen's ionisation cross section near 55 eV: 0.7 π a₀² = 6.2e-21 m² (M. B. Shah et
+/// al. 1987, J. Phys. B 20, 3501, from memory; 10 % theirs and Lotz's).
 #[test]
 fn lotz_cross_section_of_hydrogen() {
     assert_close(HYDROGEN.cross_section_m2(55.0), 6.2e-21, 0.15, "peak");
@@ -98,7 +102,8 @@ fn ionisation_rate_is_the_cross_section_averaged() {
     };
     for shell in [HYDROGEN, plain] {
         for kt_ev in [1.0, 5.0, 100.0] {
-            // ⟨σ v⟩ = √(8/(π m)) (kT)^(−3/2) ∫ σ E e^(−E/kT) dE, substituting E = P + kT s²/(1 − s).
+            // ⟨σ v⟩ = √(8/(π m)) (kT)^(−3/2) ∫ σ E e^(−E/kT) dE, substituting E = P + kT s²/(1 −
+            // s).
             let steps = 200_000;
             let mut sum = 0.0;
             for k in 0..steps {
@@ -119,8 +124,8 @@ fn ionisation_rate_is_the_cross_section_averaged() {
     }
 }
 
-/// Hydrogen at 10 eV: 5.2e-15 m³/s (R. K. Janev et al. 1987, *Elementary Processes in Hydrogen–Helium
-/// Plasmas*, reaction 2.1.5, from memory).
+/// Hydrogen at 10 eV: 5.2e-15 m³/s (R. K. Janev et al. 1987, *Elementary Processes in
+/// Hydrogen–Helium Plasmas*, reaction 2.1.5, from memory).
 #[test]
 fn ionisation_rate_of_hydrogen() {
     assert_close(
@@ -131,7 +136,8 @@ fn ionisation_rate_of_hydrogen() {
     );
 }
 
-/// Osterbrock & Ferland 2006, table 2.1: at 1e4 K α_A = 4.18e-13, α_B = 2.59e-13, α(1s) = 1.58e-13 cm³/s.
+/// Osterbrock & Ferland 2006, table 2.1: at 1e4 K α_A = 4.18e-13, α_B = 2.59e-13, α(1s) = 1.58e-13
+/// cm³/s.
 #[test]
 fn recombination_of_hydrogen() {
     let kt = kelvin(1e4);
@@ -149,7 +155,8 @@ fn recombination_of_hydrogen() {
     assert_close(ion, 2.0 * all, 1e-12, "α(z, z² T) = z α(1, T)");
 }
 
-/// Dielectronic recombination of He⁺, S. M. V. Aldrovandi & D. Péquignot 1973, Astron. Astrophys. 25, 137:
+/// Dielectronic recombination of He⁺, S. M. V. Aldrovandi & D. Péquignot 1973, Astron. Astrophys.
+/// 25, 137:
 /// 1.9e-3 T^(−3/2) e^(−4.7e5/T) (1 + 0.3 e^(−9.4e4/T)) cm³/s; their fit follows the same theory with more care.
 #[test]
 fn dielectronic_recombination_of_helium() {
@@ -281,13 +288,14 @@ fn self_absorption_agrees_with_quadrature_of_the_reference_library() {
         assert_close(thin, row[3], 1e-6, "self-absorption");
         let escape = escape_probability(row[2], widths).unwrap();
         assert_close(escape, row[4], 1e-6, "escape");
-        // A column also takes back light from its near side: never less than the far photon's chance.
+        // A column also takes back light from its near side: never less than the far photon's
+        // chance.
         assert!(thin >= escape * (1.0 - 2e-6), "{row:?}");
     }
 }
 
-/// Lyman alpha at 1e4 K: σ₀ = 5.90e-18 m² (common practice: 5.9e-14 cm² T₄^(−1/2)). Weak Doppler line:
-/// 1 − τ/(2√2) and 1 − τ/√2.
+/// Lyman alpha at 1e4 K: σ₀ = 5.90e-18 m² (common practice: 5.9e-14 cm² T₄^(−1/2)). Weak Doppler
+/// line: 1 − τ/(2√2) and 1 − τ/√2.
 #[test]
 fn optical_depth_and_weak_limits() {
     let widths = LineWidths {
@@ -319,9 +327,9 @@ fn gaunt_factors_agree_with_the_exact_matrix_elements() {
     }
 }
 
-/// Karzas & Latter 1961: the frequency average ∫ g e^(−u) du has its highest value, 1.44 (from memory), near γ² = 0.2;
-/// it tends to 1.10 (Born, 2√3/π) when hot. And Born's g = (√3/π) e^(u/2) K₀(u/2) at small γ²: here
-/// u ≪ 1, (√3/π) ln(2.2459/u).
+/// Karzas & Latter 1961: the frequency average ∫ g e^(−u) du has its highest value, 1.44 (from
+/// memory), near γ² = 0.2; it tends to 1.10 (Born, 2√3/π) when hot. And Born's g = (√3/π) e^(u/2)
+/// K₀(u/2) at small γ²: here u ≪ 1, (√3/π) ln(2.2459/u).
 #[test]
 fn gaunt_factors_have_their_published_limits() {
     let average = |gamma2: f64| {
@@ -354,7 +362,8 @@ fn gaunt_factors_have_their_published_limits() {
     );
 }
 
-/// Rybicki & Lightman 1979, eq. 5.14: 6.8e-38 z² n_e n_i T^(−1/2) e^(−u) g erg s⁻¹ cm⁻³ Hz⁻¹ over 4π.
+/// Rybicki & Lightman 1979, eq. 5.14: 6.8e-38 z² n_e n_i T^(−1/2) e^(−u) g erg s⁻¹ cm⁻³ Hz⁻¹ over
+/// 4π.
 #[test]
 fn free_free_emission_agrees_with_the_textbook_constant() {
     let (nm, t) = (500.0, 3e4);
@@ -371,4 +380,55 @@ fn free_free_emission_agrees_with_the_textbook_constant() {
         0.0
     );
     assert!(free_free_w_per_m3_sr_nm(0.0, kt, 1, 1e20, 1e20).is_err());
+}
+
+fn known_level(energy_per_cm: f64, configuration: &str, term: &str, twice_j: u16) -> Arc<Level> {
+    Arc::new(Level {
+        number: 0,
+        species: Species::new(6, 3),
+        energy_per_cm,
+        energy_uncertainty_per_cm: 0.1,
+        configuration: Some(configuration.into()),
+        term: Some(term.into()),
+        j: Some(HalfInteger::from_twice(twice_j)),
+        g: Some(f64::from(twice_j) + 1.0),
+        parity: None,
+        origin: PositionOrigin::Measured,
+        source: "test".into(),
+    })
+}
+
+/// C III (energies common practice): 2s² ¹S–2s2p ¹P is allowed inside the shell, –2s3p ¹P into the
+/// next; –2s2p ³P is an intercombination line, 2s2p ³P–2p² ³P allowed again.
+#[test]
+fn the_levels_of_a_line_tell_how_it_is_excited() {
+    let ground = known_level(0.0, "2s2", "1S", 0);
+    let triplet = known_level(52_390.8, "2s 2p", "3Po", 2);
+    let resonance = known_level(102_352.0, "2s 2p", "1Po", 2);
+    let doubly = known_level(137_454.4, "2p2", "3P", 4);
+    let next = known_level(258_931.3, "2s 3p", "1Po", 2);
+    let target = |lower: &Arc<Level>, upper: &Arc<Level>| {
+        Target::of_line(&Line {
+            species: lower.species,
+            wavenumber_per_cm: upper.energy_per_cm - lower.energy_per_cm,
+            wavenumber_uncertainty_per_cm: 0.1,
+            position_origin: PositionOrigin::Ritz,
+            position_source: "test".into(),
+            lower: Some(Arc::clone(lower)),
+            upper: Some(Arc::clone(upper)),
+            rate_per_s: None,
+            rate_relative_uncertainty: None,
+            rate_origin: None,
+            rate_source: None,
+            kind: LineKind::Line,
+        })
+    };
+    assert_eq!(target(&ground, &resonance), Some(Target::IonWithinShell));
+    assert_eq!(target(&ground, &next), Some(Target::Ion));
+    assert_eq!(target(&triplet, &doubly), Some(Target::IonWithinShell));
+    assert_eq!(target(&ground, &triplet), None);
+    assert_eq!(target(&ground, &doubly), None);
+    let electron = OuterElectron::of_level(&resonance, 386_241.0).unwrap();
+    assert_eq!((electron.l, electron.core_charge), (1, 3));
+    assert!(OuterElectron::of_level(&resonance, 1e5).is_none());
 }

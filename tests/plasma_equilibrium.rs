@@ -1,4 +1,5 @@
-//! Boltzmann, Saha, partition functions: against textbooks, mpmath (`tests/reference/plasma`), limits.
+//! Boltzmann, Saha, partition functions: against textbooks, mpmath (`tests/reference/plasma`),
+//! limits.
 #![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
 
 #[path = "reference/table.rs"]
@@ -220,7 +221,8 @@ fn lowering_meets_debye_hueckel_and_the_ion_sphere() {
         0.02,
         "dense: 3/2 z e²/a",
     );
-    // λ_D = 7434 m √(kT/n_e) in eV and m⁻³ counts the electrons alone; ions add a factor 1/√2 (common practice).
+    // λ_D = 7434 m √(kT/n_e) in eV and m⁻³ counts the electrons alone; ions add a factor 1/√2
+    // (common practice).
     assert_close(
         debye_length_m(kt, 1e20),
         7434.0 * 1e-10 / 2_f64.sqrt(),

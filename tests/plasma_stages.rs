@@ -45,8 +45,8 @@ fn outermost_subshells() {
     }
 }
 
-/// Carbon in corona equilibrium: most abundant are C II near 3e4 K, C III near 7e4 K, helium-like C V from
-/// 2e5 to 8e5 K, bare nuclei above 2e6 K (C. Jordan 1969, MNRAS 142, 501, from memory).
+/// Carbon in corona equilibrium: most abundant are C II near 3e4 K, C III near 7e4 K, helium-like C
+/// V from 2e5 to 8e5 K, bare nuclei above 2e6 K (C. Jordan 1969, MNRAS 142, 501, from memory).
 #[test]
 fn coronal_carbon_passes_through_its_stages() {
     // Ionisation energies and strongest resonance transitions (eV, f), common practice.

@@ -1,5 +1,5 @@
-//! w(z) against scipy 1.17 `wofz` (`tests/reference/shape/make_reference.py`; spot-checked there with
-//! mpmath), and its known limits.
+//! w(z) against scipy 1.17 `wofz` (`tests/reference/shape/make_reference.py`; spot-checked there
+//! with mpmath), and its known limits.
 #![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
 
 #[path = "reference/table.rs"]

@@ -35,8 +35,8 @@ fn balmer_widths_of_the_published_fit() {
     assert_close(density, 3e22, 1e-4, "H-alpha, inverted");
 }
 
-/// Griem 1974: n_e = C(T) Δλ^(3/2), C = 3.58e14 cm⁻³ Å^(−3/2) for H-beta near 1e4 K, 1e17 cm⁻³ (from memory). The
-/// two theories differ by about 10 % (motion of the ions).
+/// Griem 1974: n_e = C(T) Δλ^(3/2), C = 3.58e14 cm⁻³ Å^(−3/2) for H-beta near 1e4 K, 1e17 cm⁻³
+/// (from memory). The two theories differ by about 10 % (motion of the ions).
 #[test]
 fn h_beta_agrees_with_the_older_theory() {
     for density in [1e22, 1e23] {
@@ -79,8 +79,8 @@ fn every_stark_width_grows_with_density_and_names_its_source() {
     assert!(lyman.method == WidthMethod::QuasiStatic && lyman.method.is_estimate());
 }
 
-/// He II 468.6 nm: n_e = 3.31e17 cm⁻³ (FWHM/nm)^1.21 (A. Pittman & C. Fleurier 1986, Phys. Rev. A 33,
-/// 1291; from memory). The estimate states a factor 2 for lines with n_u = n_l + 1.
+/// He II 468.6 nm: n_e = 3.31e17 cm⁻³ (FWHM/nm)^1.21 (A. Pittman & C. Fleurier 1986, Phys. Rev. A
+/// 33, 1291; from memory). The estimate states a factor 2 for lines with n_u = n_l + 1.
 #[test]
 fn ionised_helium_is_estimated() {
     for density in [3e22, 1e23, 3e23] {
@@ -153,7 +153,8 @@ fn quadratic_stark_estimates() {
     within_factor(ion.unwrap().fwhm_nm, 0.035, 2.5, "Ar II 480.6 nm");
 }
 
-/// H-beta in air at 1 atm: FWHM 3.6 nm/T^0.7 (C. O. Laux et al. 2003, Plasma Sources Sci. Technol. 12, 125).
+/// H-beta in air at 1 atm: FWHM 3.6 nm/T^0.7 (C. O. Laux et al. 2003, Plasma Sources Sci. Technol.
+/// 12, 125).
 #[test]
 fn van_der_waals_width_of_h_beta_in_air() {
     let rydberg = 109_677.6;
@@ -175,7 +176,8 @@ fn van_der_waals_width_of_h_beta_in_air() {
     }
 }
 
-/// FWHM (nm) = 8.61e-28 √(g_l/g_u) λ² λ_R f N (nm, cm⁻³), Laux et al. 2003: H-alpha broadened through its lower level by Lyman α.
+/// FWHM (nm) = 8.61e-28 √(g_l/g_u) λ² λ_R f N (nm, cm⁻³), Laux et al. 2003: H-alpha broadened
+/// through its lower level by Lyman α.
 #[test]
 fn resonance_width_agrees_with_the_form_in_use() {
     let lyman = ResonanceLine {

@@ -1,4 +1,5 @@
-//! Widths, Voigt profiles and instruments: against scipy 1.17 (`tests/reference/shape`), papers, limits.
+//! Widths, Voigt profiles and instruments: against scipy 1.17 (`tests/reference/shape`), papers,
+//! limits.
 #![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
 
 #[path = "reference/table.rs"]
@@ -97,7 +98,8 @@ fn doppler_widths() {
     assert!(doppler_sigma_relative(300.0, f64::NAN).is_err());
 }
 
-/// Na D2: upper level 16.25 ns, natural width 9.79 MHz (D. A. Steck, *Sodium D Line Data*), at 589 nm.
+/// Na D2: upper level 16.25 ns, natural width 9.79 MHz (D. A. Steck, *Sodium D Line Data*), at 589
+/// nm.
 #[test]
 fn natural_width_of_sodium() {
     let width_hz = natural_fwhm_hz(1.0 / 16.249e-9, 0.0).unwrap();

@@ -18,8 +18,8 @@ pub struct Illumination {
 
 /// λ(θ)/λ(0) = √(1 − (sin θ/n)²) of an interference filter of effective index n.
 ///
-/// P. H. Lissberger & W. L. Wilcock 1959, J. Opt. Soc. Am. 49, 126; good to about 20°–30°: beyond, the two
-/// polarisations part and the band widens, which is not modelled.
+/// P. H. Lissberger & W. L. Wilcock 1959, J. Opt. Soc. Am. 49, 126; good to about 20°–30°: beyond,
+/// the two polarisations part and the band widens, which is not modelled.
 ///
 /// # Errors
 /// An index that is not between 0.5 and 10; an angle that is negative or beyond total reflection.
@@ -53,8 +53,8 @@ const RAYS: usize = 48;
 const RINGS: usize = 48;
 const SECTORS: usize = 64;
 
-/// The rays of an illumination as one effective index shifts them. Making them for a tilted cone costs
-/// some 100 µs: a search over many filters makes them once.
+/// The rays of an illumination as one effective index shifts them. Making them for a tilted cone
+/// costs some 100 µs: a search over many filters makes them once.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Rays {
     /// λ(θ)/λ(0) of rays of equal weight, rising.
@@ -65,7 +65,8 @@ impl Rays {
     /// The rays of a tilt and f-number (`warming_k` plays no part).
     ///
     /// # Errors
-    /// An index outside 0.5–10, an f-number of 0.5 or less, an angle that is negative or beyond total reflection.
+    /// An index outside 0.5–10, an f-number of 0.5 or less, an angle that is negative or beyond
+    /// total reflection.
     pub fn new(light: Illumination, effective_index: f64) -> Result<Self, FilterError> {
         let half_angle_deg = match light.f_number {
             None => 0.0,

@@ -27,12 +27,13 @@ pub struct SpectralCurve {
 }
 
 impl SpectralCurve {
-    /// From (wavelength in nm, value). Wavelengths rise or fall throughout, without gaps: no step is
-    /// wider than ten times the median step. Values lie between 0 and 1 (or 100 %); negative ones down to
-    /// 1 % of the highest are noise and read as zero.
+    /// From (wavelength in nm, value). Wavelengths rise or fall throughout, without gaps: no step
+    /// is wider than ten times the median step. Values lie between 0 and 1 (or 100 %); negative
+    /// ones down to 1 % of the highest are noise and read as zero.
     ///
     /// # Errors
-    /// Fewer than two points, wavelengths out of order, gaps, values outside their range or not numbers.
+    /// Fewer than two points, wavelengths out of order, gaps, values outside their range or not
+    /// numbers.
     pub fn new(points: &[(f64, f64)], unit: CurveUnit) -> Result<Self, FilterError> {
         if points.len() < 2 {
             return Err(FilterError::FewPoints {

@@ -19,8 +19,9 @@ impl Detector {
         self
     }
 
-    /// With a photocathode of this work function (eV): light of longer vacuum wavelength than
-    /// h c/W frees no electrons (A. Einstein 1905, Ann. Phys. 322, 132). The sharp edge is that of a cold metal.
+    /// With a photocathode of this work function (eV): light of longer vacuum wavelength than h c/W
+    /// frees no electrons (A. Einstein 1905, Ann. Phys. 322, 132). The sharp edge is that of a cold
+    /// metal.
     ///
     /// # Errors
     /// A work function outside 0.1–20 eV.

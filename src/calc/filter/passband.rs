@@ -11,9 +11,10 @@ use crate::calc::shape::{LineWidths, ShapeError, Voigt, integrate};
 /// The form of a passband.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Shape {
-    /// Interference filter of N equal cavities: T = T₀/(1 + (2Δ/FWHM)^(2N)). For N = 1 it is the Lorentzian of a
-    /// narrow Fabry–Pérot. Maximally flat form; H. A. Macleod, *Thin-Film Optical Filters*, chapter on
-    /// band-pass filters (from memory). Ripple on top and the skirts' asymmetry are not modelled.
+    /// Interference filter of N equal cavities: T = T₀/(1 + (2Δ/FWHM)^(2N)). For N = 1 it is the
+    /// Lorentzian of a narrow Fabry–Pérot. Maximally flat form; H. A. Macleod, *Thin-Film Optical
+    /// Filters*, chapter on band-pass filters (from memory). Ripple on top and the skirts'
+    /// asymmetry are not modelled.
     Cavities(u8),
     /// A Gaussian.
     Gaussian,
@@ -46,7 +47,8 @@ pub struct Filter {
     drift_nm_per_k: f64,
 }
 
-/// Effective index assumed where none is given: common practice gives 1.45 to 2.1 by the spacer's material.
+/// Effective index assumed where none is given: common practice gives 1.45 to 2.1 by the spacer's
+/// material.
 const USUAL_INDEX: f64 = 2.0;
 
 impl Filter {
@@ -54,7 +56,8 @@ impl Filter {
     /// effective index 2.0, no drift, and its wings as the shape has them.
     ///
     /// # Errors
-    /// A centre, width or peak out of range; no cavities; a measured shape ([`Filter::measured`] takes those).
+    /// A centre, width or peak out of range; no cavities; a measured shape ([`Filter::measured`]
+    /// takes those).
     pub fn new(shape: Shape, centre_nm: f64, fwhm_nm: f64, peak: f64) -> Result<Self, FilterError> {
         let positive = (f64::MIN_POSITIVE, f64::MAX);
         let centre_nm = inside("the centre in nm", centre_nm, positive, "above 0")?;
@@ -179,7 +182,8 @@ impl Filter {
     /// The filter as it acts in this light.
     ///
     /// # Errors
-    /// An angle beyond total reflection, an f-number of 0.5 or less, a temperature that is no number.
+    /// An angle beyond total reflection, an f-number of 0.5 or less, a temperature that is no
+    /// number.
     pub fn seen(&self, light: Illumination) -> Result<SeenFilter<'_>, FilterError> {
         self.behind(&Rays::new(light, self.effective_index)?, light.warming_k)
     }
@@ -232,8 +236,9 @@ pub struct SeenFilter<'a> {
 impl SeenFilter<'_> {
     /// Transmission at a wavelength (nm), 0–1, the mean over all rays.
     ///
-    /// Inside the blocking's limits it is never taken below 10^(−OD): an upper bound of what leaks. `None` where nothing is
-    /// known: outside those limits, or outside a measured curve that no blocking extends.
+    /// Inside the blocking's limits it is never taken below 10^(−OD): an upper bound of what leaks.
+    /// `None` where nothing is known: outside those limits, or outside a measured curve that no
+    /// blocking extends.
     pub fn transmission(&self, wavelength_nm: f64) -> Option<f64> {
         let floor = match self.filter.blocking {
             Some(b) if (b.from_nm..=b.to_nm).contains(&wavelength_nm) => {
@@ -250,8 +255,9 @@ impl SeenFilter<'_> {
         Some((sum / self.ratios.len() as f64).max(floor.unwrap_or(0.0)))
     }
 
-    /// Mean transmission over a line of these widths at a wavelength (nm), to 1e-6: the part of the line's light that
-    /// passes. Light of its wings where the filter is not known counts as blocked.
+    /// Mean transmission over a line of these widths at a wavelength (nm), to 1e-6: the part of the
+    /// line's light that passes. Light of its wings where the filter is not known counts as
+    /// blocked.
     ///
     /// # Errors
     /// Widths that are negative or not finite.
@@ -287,6 +293,12 @@ impl SeenFilter<'_> {
         let border = |k: u32| -edge + 2.0 * edge * f64::from(k) / f64::from(steps);
         let sum = (0..steps).map(|k| integrate(&f, border(k), border(k + 1), 1e-8));
         Ok(Some(sum.sum()))
+    }
+
+    /// The same passband moved by so many nm, as drift or a maker's tolerance moves it.
+    pub fn shifted(mut self, by_nm: f64) -> Self {
+        self.drift_nm += by_nm;
+        self
     }
 
     /// Where the centre of the passband lies in this light, nm.

@@ -10,14 +10,14 @@ use vocabulary::light::constants::{
 use super::error::{PlasmaError, positive};
 use super::gaunt_table::LN_GAUNT;
 
-/// Free–free emission coefficient, W m⁻³ sr⁻¹ nm⁻¹, at a vacuum wavelength (nm) of electrons of density n_e
-/// and k T (cm⁻¹) on ions of charge z and density n_i (m⁻³):
-/// (c/λ²)(1/4π)(32π/3) (α ħ)³/m² √(2π m/(3 kT)) z² n_e n_i g e^(−hν/kT)
-/// (H. A. Kramers 1923, Phil. Mag. 46, 836; G. B. Rybicki & A. P. Lightman 1979, eq. 5.14).
+/// Free–free emission coefficient, W m⁻³ sr⁻¹ nm⁻¹, at a vacuum wavelength (nm) of electrons of
+/// density n_e and k T (cm⁻¹) on ions of charge z and density n_i (m⁻³): (c/λ²)(1/4π)(32π/3) (α
+/// ħ)³/m² √(2π m/(3 kT)) z² n_e n_i g e^(−hν/kT) (H. A. Kramers 1923, Phil. Mag. 46, 836; G. B.
+/// Rybicki & A. P. Lightman 1979, eq. 5.14).
 ///
-/// Maxwellian, non-relativistic (k T below some 10 keV), optically thin; Gaunt factor of [`free_free_gaunt`]. Recombination into
-/// bound levels and collisions with neutral atoms add to it and are *not* in it: below k T of about z² 5 eV the
-/// continuum is stronger than this.
+/// Maxwellian, non-relativistic (k T below some 10 keV), optically thin; Gaunt factor of
+/// [`free_free_gaunt`]. Recombination into bound levels and collisions with neutral atoms add to it
+/// and are *not* in it: below k T of about z² 5 eV the continuum is stronger than this.
 ///
 /// # Errors
 /// A wavelength, temperature or density that is not positive.
@@ -53,10 +53,11 @@ const STEP: f64 = 0.5;
 
 /// Free–free Gaunt factor, the mean over Maxwellian electrons, for γ² = z² R/kT and u = hν/kT.
 ///
-/// A. Sommerfeld 1931, Ann. Phys. 403, 257, averaged as W. J. Karzas & R. Latter 1961, Astrophys. J. Suppl. 6, 167 (the averages of
-/// P. A. M. van Hoof et al. 2014, MNRAS 444, 420 are the same quantity). Tabulated for γ² 1e-3–1e3 and u 1e-4–32,
-/// cubic between, 0.3 %; hotter plasmas take the value at 1e-3 (up to 4 % more), colder ones that at
-/// 1e3 (10 %), lower u continues as −(√3/π) ln u, higher u takes that at 32.
+/// A. Sommerfeld 1931, Ann. Phys. 403, 257, averaged as W. J. Karzas & R. Latter 1961, Astrophys.
+/// J. Suppl. 6, 167 (the averages of P. A. M. van Hoof et al. 2014, MNRAS 444, 420 are the same
+/// quantity). Tabulated for γ² 1e-3–1e3 and u 1e-4–32, cubic between, 0.3 %; hotter plasmas take
+/// the value at 1e-3 (up to 4 % more), colder ones that at 1e3 (10 %), lower u continues as −(√3/π)
+/// ln u, higher u takes that at 32.
 pub fn free_free_gaunt(gamma2: f64, u: f64) -> f64 {
     let row = (gamma2.log10() - FIRST.0) / STEP;
     let column = (u.log10() - FIRST.1) / STEP;

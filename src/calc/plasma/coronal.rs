@@ -21,8 +21,8 @@ pub struct CoronalLine {
     pub upper: usize,
     /// Emission rate A, s⁻¹.
     pub rate_per_s: f64,
-    /// For an electric-dipole line, what its f gives the excitation rate for; `None` for a forbidden
-    /// or spin-forbidden line, which only radiates.
+    /// For an electric-dipole line, what its f gives the excitation rate for; `None` for a
+    /// forbidden or spin-forbidden line, which only radiates.
     pub excitation: Option<Target>,
 }
 
@@ -31,23 +31,24 @@ pub struct CoronalLine {
 pub struct CoronalEmission {
     /// Photons per second, per atom of the species and per electron per m³ (so m³/s), line by line.
     pub photons_m3_per_s: Vec<f64>,
-    /// Levels that emit lines but that nothing in the model feeds: their lines come out as zero *because the
-    /// data lack a way to excite them*, and an answer names them as unrated.
+    /// Levels that emit lines but that nothing in the model feeds: their lines come out as zero
+    /// *because the data lack a way to excite them*, and an answer names them as unrated.
     pub unfed: Vec<usize>,
 }
 
 /// Emission in the corona model (excitation = radiative decay; R. W. P. McWhirter 1965, in *Plasma
 /// Diagnostic Techniques*, ch. 5).
 ///
-/// `populated` gives the levels that hold the atoms, with the fraction in each: the ground level, and
-/// metastable ones where their population is known. They excite by allowed lines
-/// ([`excitation_rate`]); each excited level passes on what it gets by its branching fractions, cascades included.
-/// Levels in `populated` keep their population: what cascades into them is not counted again.
-/// Branching is by the rates held: a missing strong decay makes a line too strong.
+/// `populated` gives the levels that hold the atoms, with the fraction in each: the ground level,
+/// and metastable ones where their population is known. They excite by allowed lines
+/// ([`excitation_rate`]); each excited level passes on what it gets by its branching fractions,
+/// cascades included. Levels in `populated` keep their population: what cascades into them is not
+/// counted again. Branching is by the rates held: a missing strong decay makes a line too strong.
 /// Valid while collisions out of a level are rare, n_e X ≪ A.
 ///
 /// # Errors
-/// k T not positive; a line between levels that do not exist or are in the wrong order; a negative rate.
+/// k T not positive; a line between levels that do not exist or are in the wrong order; a negative
+/// rate.
 pub fn coronal_emission(
     levels: &[CoronalLevel],
     lines: &[CoronalLine],

@@ -1,7 +1,8 @@
 //! Self-absorption: what a plasma takes back of its own line light.
 //!
-//! The models elsewhere are optically thin; these factors say how wrong that is. Emission and absorption
-//! have the same profile (complete redistribution), and the plasma is uniform along the column.
+//! The models elsewhere are optically thin; these factors say how wrong that is. Emission and
+//! absorption have the same profile (complete redistribution), and the plasma is uniform along the
+//! column.
 
 use std::f64::consts::{FRAC_PI_2, PI};
 
@@ -12,9 +13,10 @@ use crate::calc::shape::{LineWidths, ShapeError, Voigt, integrate};
 /// Classical electron radius α² a₀, m.
 const ELECTRON_RADIUS_M: f64 = FINE_STRUCTURE * FINE_STRUCTURE * BOHR_RADIUS_M;
 
-/// Optical depth at the centre of a line: N π r_e f λ² φ(0), for `lower_column_per_m2` atoms per m² in
-/// the lower level, absorption oscillator strength f, vacuum wavelength in nm
-/// (A. C. G. Mitchell & M. W. Zemansky 1934, *Resonance Radiation and Excited Atoms*, eq. 35). Stimulated emission is left out: an upper bound.
+/// Optical depth at the centre of a line: N π r_e f λ² φ(0), for `lower_column_per_m2` atoms per m²
+/// in the lower level, absorption oscillator strength f, vacuum wavelength in nm (A. C. G. Mitchell
+/// & M. W. Zemansky 1934, *Resonance Radiation and Excited Atoms*, eq. 35). Stimulated emission is
+/// left out: an upper bound.
 ///
 /// # Errors
 /// Widths that are negative, not finite or both zero.
@@ -31,11 +33,12 @@ pub fn line_centre_optical_depth(
     Ok(lower_column_per_m2 * cross_section_m2)
 }
 
-/// What is left of a line's light that comes out of a uniform column of optical depth τ₀ (line centre) along
-/// the line of sight, over what a thin column would give: ∫(1 − e^(−τ₀ h)) dλ/(τ₀ ∫ h dλ), h the
-/// profile with h(0) = 1. 1 at τ₀ = 0, 1 − τ₀/(2√2) for a weak Doppler line.
+/// What is left of a line's light that comes out of a uniform column of optical depth τ₀ (line
+/// centre) along the line of sight, over what a thin column would give: ∫(1 − e^(−τ₀ h)) dλ/(τ₀ ∫ h
+/// dλ), h the profile with h(0) = 1. 1 at τ₀ = 0, 1 − τ₀/(2√2) for a weak Doppler line.
 ///
-/// It is the curve of growth over its linear part (R. Ladenburg & F. Reiche 1913, Ann. Phys. 347, 181). Relative error 1e-6.
+/// It is the curve of growth over its linear part (R. Ladenburg & F. Reiche 1913, Ann. Phys. 347,
+/// 181). Relative error 1e-6.
 ///
 /// # Errors
 /// An optical depth that is negative or not finite; widths as for [`line_centre_optical_depth`].
@@ -49,7 +52,8 @@ pub fn self_absorption_factor(optical_depth: f64, widths: LineWidths) -> Result<
 
 /// Chance that a photon emitted at one place leaves along a path of optical depth τ₀ (line centre):
 /// ∫ h e^(−τ₀ h) dλ/∫ h dλ (T. Holstein 1947, Phys. Rev. 72, 1212; F. E. Irons 1979, J. Quant.
-/// Spectrosc. Radiat. Transfer 22, 1, equation for Λ = 0). 1 − τ₀/√2 for a weak Doppler line. Relative error 1e-6.
+/// Spectrosc. Radiat. Transfer 22, 1, equation for Λ = 0). 1 − τ₀/√2 for a weak Doppler line.
+/// Relative error 1e-6.
 ///
 /// # Errors
 /// As [`self_absorption_factor`].

@@ -2,7 +2,9 @@
 
 use std::f64::consts::PI;
 
+use vocabulary::atom::{Configuration, DipoleClass, Term, dipole_class};
 use vocabulary::light::constants::PER_CM_PER_EV;
+use vocabulary::spectrum::{Level, Line};
 
 use super::error::{PlasmaError, positive};
 use super::expint::scaled_e1;
@@ -18,9 +20,45 @@ pub enum Target {
     IonWithinShell,
 }
 
-/// Factor within which a rate coefficient of [`excitation_rate`] lies for an allowed line, 1 σ: 2 for ions,
-/// 3 for neutral atoms near threshold (van Regemorter 1962; D. H. Sampson & H. L. Zhang 1992,
-/// Phys. Rev. A 45, 1556, found the formula poor for other transitions).
+impl Target {
+    /// What excites a line's upper from its lower level; `None` where the formula has nothing to
+    /// say: a line whose spin, parity or J changes as no electric dipole allows, or whose levels
+    /// are not known well enough to tell. (Exchange excites intercombination lines, and their f
+    /// does not show it.)
+    pub fn of_line(line: &Line) -> Option<Self> {
+        let (lower, upper) = (line.lower.as_ref()?, line.upper.as_ref()?);
+        let terms = (term_of(lower)?, term_of(upper)?);
+        match dipole_class((&terms.0, lower.j), (&terms.1, upper.j)) {
+            // `None`: not LS terms; parity was checked below for those as well.
+            Some(DipoleClass::Allowed | DipoleClass::OrbitalForbidden) | None => {}
+            Some(_) => return None,
+        }
+        if terms.0.parity()? == terms.1.parity()? {
+            return None;
+        }
+        if line.species.charge() == 0 {
+            return Some(Self::Neutral);
+        }
+        let shell = |level: &Level| {
+            let configuration = Configuration::parse(level.configuration.as_deref()?)?;
+            Some(configuration.outer_electron()?.n)
+        };
+        let within = shell(lower).is_some_and(|n| Some(n) == shell(upper));
+        Some(if within {
+            Self::IonWithinShell
+        } else {
+            Self::Ion
+        })
+    }
+}
+
+fn term_of(level: &Level) -> Option<Term> {
+    level.term.as_deref().map(Term::parse)
+}
+
+/// Factor within which a rate coefficient of [`excitation_rate`] lies for an allowed line, 1 σ: 2
+/// for ions, 3 for neutral atoms near threshold (van Regemorter 1962; D. H. Sampson & H. L. Zhang
+/// 1992, Phys. Rev. A 45, 1556, found the formula poor for other transitions).
 pub const fn excitation_uncertainty_factor(target: Target) -> f64 {
     match target {
         Target::Neutral => 3.0,
@@ -28,12 +66,12 @@ pub const fn excitation_uncertainty_factor(target: Target) -> f64 {
     }
 }
 
-/// Rate coefficient (m³/s) of excitation by Maxwellian electrons of an electric-dipole transition of
-/// absorption oscillator strength f across `energy_per_cm`, at k T in cm⁻¹:
-/// X = 1.58e-11 f ḡ e^(−y)/(ΔE √T), ΔE and T in eV, y = ΔE/kT.
+/// Rate coefficient (m³/s) of excitation by Maxwellian electrons of an electric-dipole transition
+/// of absorption oscillator strength f across `energy_per_cm`, at k T in cm⁻¹: X = 1.58e-11 f ḡ
+/// e^(−y)/(ΔE √T), ΔE and T in eV, y = ΔE/kT.
 ///
-/// H. van Regemorter 1962, Astrophys. J. 136, 906 (his equation 24 in the form of the trade);
-/// the constant is (8π²/√3) a₀² R² √(8/π m). Only allowed transitions: spin-forbidden ones and ΔJ = 0–0
+/// H. van Regemorter 1962, Astrophys. J. 136, 906 (his equation 24 in the form of the trade); the
+/// constant is (8π²/√3) a₀² R² √(8/π m). Only allowed transitions: spin-forbidden ones and ΔJ = 0–0
 /// have rates of their own that no formula gives, and f = 0 gives 0.
 ///
 /// # Errors
@@ -63,9 +101,9 @@ const EXCITATION: f64 = 1.581_4e-11;
 
 /// Mean Gaunt factor of van Regemorter 1962 for y = ΔE/kT.
 ///
-/// Ions: 0.15 + 0.28 e^y E₁(y) (R. Mewe 1972, Astron. Astrophys. 20, 215; within a shell 0.6 for 0.15).
-/// Neutral atoms: van Regemorter's table 2 (from memory), straight in logarithms; below y = 0.01 Bethe's limit √3/(2π) E₁(y),
-/// above 10 as 1/√y.
+/// Ions: 0.15 + 0.28 e^y E₁(y) (R. Mewe 1972, Astron. Astrophys. 20, 215; within a shell 0.6 for
+/// 0.15). Neutral atoms: van Regemorter's table 2 (from memory), straight in logarithms; below y =
+/// 0.01 Bethe's limit √3/(2π) E₁(y), above 10 as 1/√y.
 pub fn mean_gaunt(y: f64, target: Target) -> f64 {
     match target {
         Target::Ion => 0.15 + 0.28 * scaled_e1(y),
@@ -104,8 +142,8 @@ fn neutral_gaunt(y: f64) -> f64 {
     g0 * (g1 / g0).powf((y / x0).ln() / (x1 / x0).ln())
 }
 
-/// Absorption oscillator strength from an emission rate (s⁻¹), weights and vacuum wavenumber (cm⁻¹):
-/// f = (g_u/g_l) A/(0.667 025 cm² s⁻¹ σ²).
+/// Absorption oscillator strength from an emission rate (s⁻¹), weights and vacuum wavenumber
+/// (cm⁻¹): f = (g_u/g_l) A/(0.667 025 cm² s⁻¹ σ²).
 pub fn absorption_f(
     rate_per_s: f64,
     upper_weight: f64,

@@ -3,8 +3,8 @@
 /// Euler's constant γ.
 const EULER: f64 = 0.577_215_664_901_532_9;
 
-/// e^x E₁(x) for x > 0, relative error 1e-13: power series below 1 (Abramowitz & Stegun 1964, 5.1.11),
-/// continued fraction above (5.1.22). NaN for x ≤ 0.
+/// e^x E₁(x) for x > 0, relative error 1e-13: power series below 1 (Abramowitz & Stegun 1964,
+/// 5.1.11), continued fraction above (5.1.22). NaN for x ≤ 0.
 pub(super) fn scaled_e1(x: f64) -> f64 {
     if x.is_nan() || x <= 0.0 {
         return f64::NAN;

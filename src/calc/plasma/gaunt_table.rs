@@ -1,5 +1,6 @@
-//! Thermally averaged free–free Gaunt factors, ln g, computed from Sommerfeld's exact matrix elements by
-//! `tests/reference/plasma/make_reference.py`. Rows: lg γ² = −3, −2.5 … 3; columns: lg u = −4, −3.5 … 1.5.
+//! Thermally averaged free–free Gaunt factors, ln g, computed from Sommerfeld's exact matrix
+//! elements by `tests/reference/plasma/make_reference.py`. Rows: lg γ² = −3, −2.5 … 3; columns: lg
+//! u = −4, −3.5 … 1.5.
 
 /// ln g over (lg γ², lg u).
 #[rustfmt::skip]

@@ -37,7 +37,8 @@ impl Subshell {
         a * 1e-18 * f64::from(self.electrons) * u.ln() / (energy_ev * self.binding_ev) * damping
     }
 
-    /// Rate coefficient (m³/s) with Maxwellian electrons of k T in cm⁻¹: the cross section integrated,
+    /// Rate coefficient (m³/s) with Maxwellian electrons of k T in cm⁻¹: the cross section
+    /// integrated,
     /// 6.69e5 m/s a q/(P √T) (E₁(y) − b e^c y/(y + c) E₁(y + c)), y = P/kT.
     ///
     /// # Errors
@@ -60,8 +61,8 @@ const MEAN_SPEED: f64 = 6.692_6e5;
 /// Radiative recombination coefficient (m³/s) into all levels of the ion with core charge z and
 /// ionisation energy χ: 5.197e-20 z √λ (0.4288 + ½ ln λ + 0.469 λ^(−1/3)), λ = χ/kT.
 ///
-/// M. J. Seaton 1959, MNRAS 119, 81, equation 36, for hydrogen-like ions, 3 % for λ > 0.2 (within λ < 2000); for others χ of the
-/// ion itself is taken in it, 1 σ a factor 1.5.
+/// M. J. Seaton 1959, MNRAS 119, 81, equation 36, for hydrogen-like ions, 3 % for λ > 0.2 (within λ
+/// < 2000); for others χ of the ion itself is taken in it, 1 σ a factor 1.5.
 ///
 /// # Errors
 /// χ (cm⁻¹) or k T (cm⁻¹) not positive.
@@ -120,12 +121,14 @@ pub struct CoreTransition {
     pub absorption_f: f64,
 }
 
-/// Dielectronic recombination coefficient (m³/s) of an ion of charge z through its resonance transitions:
+/// Dielectronic recombination coefficient (m³/s) of an ion of charge z through its resonance
+/// transitions:
 /// 3.0e-9 T^(−3/2) B Σ f A(x) e^(−Ē/kT), T in K, B = √(z (z+1)⁵/(z² + 13.4)),
 /// A = √x/(1 + 0.105 x + 0.015 x²), x = E/((z + 1) 13.6 eV), Ē = E/(1 + 0.015 z³/(z + 1)²).
 ///
-/// A. Burgess 1965, Astrophys. J. 141, 1588. For 1 ≤ z ≤ 20, x > 0.05 and densities low enough that captured electrons
-/// are not torn off again (below about 1e16 m⁻³; above it is an upper bound); 1 σ a factor 2. 0 without transitions.
+/// A. Burgess 1965, Astrophys. J. 141, 1588. For 1 ≤ z ≤ 20, x > 0.05 and densities low enough that
+/// captured electrons are not torn off again (below about 1e16 m⁻³; above it is an upper bound); 1
+/// σ a factor 2. 0 without transitions.
 ///
 /// # Errors
 /// k T not positive; a transition without a positive energy.

@@ -17,10 +17,11 @@ pub struct Plasma {
 /// Each held level counts g e^(−E/kT) w(B/kT), B being its distance to the (lowered) series limit
 /// and w the Planck–Larkin factor ([`planck_larkin`]); without a limit w = 1.
 ///
-/// `value` is a lower bound: levels that are not held would add to it. `missing_fraction` says by how
-/// much, if above the highest held level the shells of a hydrogen-like series with 2 n² states each
-/// are missing (`None` where no limit is known); nothing can say how many are missing *between* the
-/// held ones, so an ion of which few levels are held is called a lower bound as soon as they count.
+/// `value` is a lower bound: levels that are not held would add to it. `missing_fraction` says by
+/// how much, if above the highest held level the shells of a hydrogen-like series with 2 n² states
+/// each are missing (`None` where no limit is known); nothing can say how many are missing
+/// *between* the held ones, so an ion of which few levels are held is called a lower bound as soon
+/// as they count.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Partition {
     /// U, dimensionless.
@@ -51,10 +52,10 @@ impl Partition {
         term(energy_per_cm, weight, self.limit_per_cm, self.kt_per_cm) / self.value
     }
 
-    /// Whether levels that are not held may raise U by more than 1 %, or nobody can tell: then
-    /// an answer says that U is a lower bound, and that populations are upper bounds. True when shells
-    /// above the held levels may add 1 %, when fewer than 30 levels are held and
-    /// the excited ones make up 1 % of U, and when no series limit is known.
+    /// Whether levels that are not held may raise U by more than 1 %, or nobody can tell: then an
+    /// answer says that U is a lower bound, and that populations are upper bounds. True when shells
+    /// above the held levels may add 1 %, when fewer than 30 levels are held and the excited ones
+    /// make up 1 % of U, and when no series limit is known.
     pub fn is_lower_bound(&self) -> bool {
         let counts = |part: Option<f64>| part.is_none_or(|f| f > WORTH_SAYING);
         counts(self.missing_fraction)
@@ -63,8 +64,9 @@ impl Partition {
 }
 
 /// The Planck–Larkin factor 1 − e^(−b)(1 + b), b = B/kT ≥ 0: how much of a level of binding energy
-/// B still counts as bound (M. Planck 1924, Ann. Phys. 380, 673; A. I. Larkin 1960, Sov. Phys. JETP 11, 1363;
-/// F. J. Rogers 1986, Astrophys. J. 310, 723). 0 at the limit and above, 1 when tightly bound.
+/// B still counts as bound (M. Planck 1924, Ann. Phys. 380, 673; A. I. Larkin 1960, Sov. Phys. JETP
+/// 11, 1363; F. J. Rogers 1986, Astrophys. J. 310, 723). 0 at the limit and above, 1 when tightly
+/// bound.
 pub fn planck_larkin(binding_over_kt: f64) -> f64 {
     let b = binding_over_kt;
     if b.is_nan() {
@@ -175,8 +177,8 @@ fn check(energy_per_cm: f64, weight: f64) -> Result<(), PlasmaError> {
     }
 }
 
-/// What the shells above the highest held level would add, each with 2 n² states at z²R/n² below the
-/// limit (a core of weight 1; heavier cores have more).
+/// What the shells above the highest held level would add, each with 2 n² states at z²R/n² below
+/// the limit (a core of weight 1; heavier cores have more).
 fn missing_states(limit_per_cm: f64, highest_per_cm: f64, charge: u8, kt_per_cm: f64) -> f64 {
     let core = f64::from(charge) + 1.0;
     let rydberg_per_cm = vocabulary::light::constants::RYDBERG_PER_CM * core * core;

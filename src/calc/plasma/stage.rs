@@ -34,11 +34,12 @@ const PROMOTED: [(u8, u8); 10] = [
     (79, 1),
 ];
 
-/// The outermost subshell of the ground configuration of a species: shells filled in the order of
-/// n + l (E. Madelung 1936) with the known exceptions, then emptied from the highest n, in it from the highest l.
+/// The outermost subshell of the ground configuration of a species: shells filled in the order of n
+/// + l (E. Madelung 1936) with the known exceptions, then emptied from the highest n, in it from
+/// the highest l.
 ///
-/// Right for nearly all neutral atoms; a few ions of the iron group (V II, Co II, Ni II) hold their last
-/// electron in d where this says s. `None` for a species without electrons.
+/// Right for nearly all neutral atoms; a few ions of the iron group (V II, Co II, Ni II) hold their
+/// last electron in d where this says s. `None` for a species without electrons.
 pub fn outer_subshell(species: Species) -> Option<OuterSubshell> {
     let charge = species.stage.checked_sub(1)?;
     let electrons = species.atomic_number.checked_sub(charge)?;

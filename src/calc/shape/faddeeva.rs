@@ -3,11 +3,11 @@
 //!
 //! Near the origin: the trapezoidal rule for w(z) = (i/π) ∫ e^(−t²)/(z − t) dt with the residue of
 //! the pole added, on whichever of two interleaved grids keeps its nodes away from z (M. Al Azah &
-//! S. N. Chandler-Wilde 2021, SIAM J. Numer. Anal. 59, 2346; the idea is that of C. Chiarella &
-//! A. Reichel 1968, Math. Comp. 22, 137). Far away: the n-point Gauss–Hermite rule of the same integral, which
-//! is the n-th convergent of the Laplace continued fraction (W. Gautschi 1970, SIAM J. Numer. Anal. 7,
-//! 187). All terms of the real part have one sign, so that it keeps its *relative* accuracy
-//! down to y → 0, where w becomes the Gaussian e^(−x²).
+//! S. N. Chandler-Wilde 2021, SIAM J. Numer. Anal. 59, 2346; the idea is that of C. Chiarella & A.
+//! Reichel 1968, Math. Comp. 22, 137). Far away: the n-point Gauss–Hermite rule of the same
+//! integral, which is the n-th convergent of the Laplace continued fraction (W. Gautschi 1970, SIAM
+//! J. Numer. Anal. 7, 187). All terms of the real part have one sign, so that it keeps its
+//! *relative* accuracy down to y → 0, where w becomes the Gaussian e^(−x²).
 //!
 //! Relative error of the real part, and of |w|: below 2e-10 for all x and y ≥ 0
 //! (`tests/shape_faddeeva.rs` compares with a reference library).
@@ -22,7 +22,8 @@ const STEP: f64 = 0.56;
 const PAIRS: usize = 10;
 /// |z|² from which 10, 4, 2 and 1 Gauss–Hermite points leave less than 2e-10.
 const FAR: [f64; 4] = [46.0, 1.2e3, 2.0e5, 1.0e10];
-/// Beyond e^(−46) the residue is below 2e-10 of y/(46 √π), the least that the sum can be for y ≥ 1e-8.
+/// Beyond e^(−46) the residue is below 2e-10 of y/(46 √π), the least that the sum can be for y ≥
+/// 1e-8.
 const RESIDUE_SEEN: f64 = 46.0;
 
 /// A quadrature grid of node pairs ±t: t² and the weight of both nodes together over π.
@@ -197,8 +198,8 @@ fn near(x: f64, y: f64) -> (f64, f64) {
     (real, imaginary)
 }
 
-/// 2 e^(−z²)/(1 + 1/q) with q = e^(2πi z/h), taken with the real part of z/h counted from the middle
-/// between two nodes, which makes it the same for both grids. |q| ≤ 1.
+/// 2 e^(−z²)/(1 + 1/q) with q = e^(2πi z/h), taken with the real part of z/h counted from the
+/// middle between two nodes, which makes it the same for both grids. |q| ≤ 1.
 fn residue(x: f64, y: f64, from_middle: f64) -> (f64, f64) {
     let magnitude = 2.0 * (y * y - x * x).exp();
     let (sine, cosine) = sin_cos_turns(x * y / PI);
@@ -233,8 +234,8 @@ const COSINE: [f64; 6] = [
 ];
 
 /// Sine and cosine of 2π t for |t| < 2^40, absolute error 1e-12: Taylor series of a quarter of the
-/// angle, which lies within an eighth of a turn, doubled twice. Worth its lines: the library calls took two
-/// thirds of the time of a point.
+/// angle, which lies within an eighth of a turn, doubled twice. Worth its lines: the library calls
+/// took two thirds of the time of a point.
 #[inline]
 fn sin_cos_turns(t: f64) -> (f64, f64) {
     /// Adding and subtracting it rounds to a whole number.

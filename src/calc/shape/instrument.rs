@@ -81,7 +81,8 @@ impl Instrument {
     }
 }
 
-/// A measured instrument response: straight lines between points, zero outside, scaled to unit area.
+/// A measured instrument response: straight lines between points, zero outside, scaled to unit
+/// area.
 #[derive(Clone, Debug, PartialEq)]
 pub struct ResponseCurve {
     points: Vec<(f64, f64)>,

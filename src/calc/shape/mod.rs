@@ -2,8 +2,8 @@
 //!
 //! A line is a Voigt profile (Gaussian ⊗ Lorentzian) of unit area. The Gaussian part is Doppler
 //! broadening; the Lorentzian part sums natural and pressure broadening. An [`Instrument`] of unit
-//! area and zero mean offset blurs it further. All widths and offsets of one profile share one unit;
-//! the names say nm.
+//! area and zero mean offset blurs it further. All widths and offsets of one profile share one
+//! unit; the names say nm.
 
 mod error;
 mod faddeeva;

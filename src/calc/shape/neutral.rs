@@ -26,11 +26,10 @@ pub struct Perturbers {
 /// Van der Waals width of a line by neutral perturbers: an estimate.
 ///
 /// Interaction −C₆/r⁶ with C₆ from the polarisability of the perturber and ⟨r²⟩ of both levels
-/// (Unsöld 1955): Δω = ΔC₆/r⁶, ΔC₆ = α c α_p |⟨r²⟩_u − ⟨r²⟩_l|. Impact approximation with straight paths
-/// (E. Lindholm 1945, Ark. Mat. Astron. Fys. 32A, 17; Foley 1946):
-/// FWHM Δω = 8.08 ΔC₆^(2/5) v^(3/5) N, v the mean relative speed √(8kT/πμ).
-/// Measured widths are up to 2 times larger: 1 σ a factor 1.6. Valid for ions too, and where collisions
-/// do not overlap (below some 10²⁶ m⁻³).
+/// (Unsöld 1955): Δω = ΔC₆/r⁶, ΔC₆ = α c α_p |⟨r²⟩_u − ⟨r²⟩_l|. Impact approximation with straight
+/// paths (E. Lindholm 1945, Ark. Mat. Astron. Fys. 32A, 17; Foley 1946): FWHM Δω = 8.08 ΔC₆^(2/5)
+/// v^(3/5) N, v the mean relative speed √(8kT/πμ). Measured widths are up to 2 times larger: 1 σ a
+/// factor 1.6. Valid for ions too, and where collisions do not overlap (below some 10²⁶ m⁻³).
 ///
 /// # Errors
 /// Wavelength (vacuum, nm), mass (u), temperature (K), density or a binding energy not positive.
@@ -77,9 +76,9 @@ pub struct ResonanceLine {
 /// Resonance width of a line one of whose levels is the upper level of a resonance line of the
 /// same kind of atom, `density_per_m3` of which are in the ground level.
 ///
-/// FWHM Δω = 3.84 π √(g_ground/g_shared) (e²/(4π ε₀ m_e ω_R)) f N
-/// (A. W. Ali & H. R. Griem 1965, Phys. Rev. 140, A1044, with erratum 144, 366; from memory). 1 σ 15 %.
-/// Independent of temperature.
+/// FWHM Δω = 3.84 π √(g_ground/g_shared) (e²/(4π ε₀ m_e ω_R)) f N (A. W. Ali & H. R. Griem 1965,
+/// Phys. Rev. 140, A1044, with erratum 144, 366; from memory). 1 σ 15 %. Independent of
+/// temperature.
 ///
 /// # Errors
 /// A wavelength (nm), weight or density that is not positive, or a negative oscillator strength.
@@ -111,7 +110,8 @@ pub fn resonance_width(
 
 /// Static dipole polarisability of a free atom in its ground state, a₀³ (1 a₀³ = 0.148185e-30 m³).
 ///
-/// P. Schwerdtfeger & J. K. Nagle 2019, Mol. Phys. 117, 1200, from memory, to 2 %. `None` where none is held.
+/// P. Schwerdtfeger & J. K. Nagle 2019, Mol. Phys. 117, 1200, from memory, to 2 %. `None` where
+/// none is held.
 pub fn polarisability_a0_cubed(atomic_number: u8) -> Option<f64> {
     Some(match atomic_number {
         1 => 4.5,

@@ -1,6 +1,7 @@
 //! What all pressure widths have in common: a width, how well it is known, and how it came about.
 
 use super::error::{ShapeError, positive};
+use vocabulary::atom::Configuration;
 use vocabulary::light::constants::RYDBERG_PER_CM;
 use vocabulary::spectrum::Level;
 
@@ -67,19 +68,21 @@ pub struct OuterElectron {
     pub binding_per_cm: f64,
     /// Orbital angular momentum l.
     pub l: u32,
-    /// Charge of the core that it sees: 1 for a neutral atom ([`vocabulary::atom::Species::core_charge`]).
+    /// Charge of the core that it sees: 1 for a neutral atom
+    /// ([`vocabulary::atom::Species::core_charge`]).
     pub core_charge: u8,
 }
 
 impl OuterElectron {
-    /// The outer electron of a level of a species with this series limit (cm⁻¹ above its ground level):
-    /// the last one of its configuration. `None` where the level has no configuration, or lies
-    /// above the limit.
+    /// The outer electron of a level of a species with this series limit (cm⁻¹ above its ground
+    /// level): the last one of its configuration. `None` where the level has no readable
+    /// configuration, or lies above the limit.
     pub fn of_level(level: &Level, limit_per_cm: f64) -> Option<Self> {
         let binding_per_cm = limit_per_cm - level.energy_per_cm;
+        let configuration = Configuration::parse(level.configuration.as_deref()?)?;
         Some(Self {
             binding_per_cm: (binding_per_cm > 0.0).then_some(binding_per_cm)?,
-            l: last_l(level.configuration.as_deref()?)?,
+            l: u32::from(configuration.outer_electron()?.l),
             core_charge: level.species.core_charge(),
         })
     }
@@ -98,8 +101,9 @@ impl OuterElectron {
 
     /// Mean square radius ⟨r²⟩ over a₀²: n*²/(2 z²) (5 n*² + 1 − 3 l (l + 1)).
     ///
-    /// Exact for hydrogen (H. A. Bethe & E. E. Salpeter 1957, eq. 3.26); with n* the Coulomb approximation of D. R. Bates
-    /// & A. Damgaard 1949, good to some ten per cent when n* > l + ½. Grows as n*⁴.
+    /// Exact for hydrogen (H. A. Bethe & E. E. Salpeter 1957, eq. 3.26); with n* the Coulomb
+    /// approximation of D. R. Bates & A. Damgaard 1949, good to some ten per cent when n* > l + ½.
+    /// Grows as n*⁴.
     ///
     /// # Errors
     /// As [`OuterElectron::effective_n`].
@@ -107,42 +111,9 @@ impl OuterElectron {
         let n2 = self.effective_n()?.powi(2);
         let l = f64::from(self.l);
         let z2 = f64::from(self.core_charge).powi(2);
-        // A penetrating orbit with n* < l + ½ would give nonsense: never below n*⁴/z² of a circular one.
+        // A penetrating orbit with n* < l + ½ would give nonsense: never below n*⁴/z² of a circular
+        // one.
         let bracket = (5.0 * n2 + 1.0 - 3.0 * l * (l + 1.0)).max(2.0 * n2);
         Ok(n2 / (2.0 * z2) * bracket)
-    }
-}
-
-/// l of the last subshell of a configuration such as `3d6 (5D) 4s`; parents stand in parentheses.
-fn last_l(configuration: &str) -> Option<u32> {
-    /// Letters of l = 0, 1, 2 … as the trade writes them (no j).
-    const LETTERS: &str = "spdfghiklmnoqrtuv";
-    let shell = configuration
-        .split_whitespace()
-        .rev()
-        .find(|word| word.starts_with(|c: char| c.is_ascii_digit()))?;
-    let letter = shell.trim_start_matches(|c: char| c.is_ascii_digit());
-    let l = LETTERS.find(letter.chars().next()?)?;
-    u32::try_from(l).ok()
-}
-
-#[cfg(test)]
-mod tests {
-    use super::last_l;
-
-    #[test]
-    fn the_last_subshell_of_a_configuration() {
-        for (configuration, l) in [
-            ("1s 2p", Some(1)),
-            ("3d6 (5D) 4s", Some(0)),
-            ("3p5 (2Po) 4p", Some(1)),
-            ("3d10", Some(2)),
-            ("1s 7i", Some(6)),
-            ("2s2 2p6 3s 12k", Some(7)),
-            ("", None),
-            ("(5D)", None),
-        ] {
-            assert_eq!(last_l(configuration), l, "{configuration}");
-        }
     }
 }

@@ -133,8 +133,8 @@ fn edges(centre: f64, scale: f64, from: f64, to: f64) -> impl Iterator<Item = f6
 /// (R * φ_other)(offset) / (R * φ_target)(0).
 ///
 /// `offset_nm` is the other line's position minus that of the target (nm); its sign matters only
-/// for a response that is not symmetric. Multiply by the ratio of the emissions to get an interference
-/// fraction.
+/// for a response that is not symmetric. Multiply by the ratio of the emissions to get an
+/// interference fraction.
 pub fn overlap(target: &Profile, other: &Profile, offset_nm: f64) -> f64 {
     other.density(offset_nm) / target.centre()
 }

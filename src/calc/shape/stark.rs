@@ -14,10 +14,10 @@ use super::widths::wavelength_width_nm;
 /// ħ/m_e = α c a₀, m²/s.
 const ACTION_OVER_MASS: f64 = FINE_STRUCTURE * SPEED_OF_LIGHT_M_PER_S * BOHR_RADIUS_M;
 
-/// Fits of full width = w (n_e/10²³ m⁻³)^p in nm: (upper n, w, p). Gigosos et al. 2003, from memory:
-/// H-alpha full width at half area, H-beta full width at half maximum. (For H-alpha 0.549 nm is found in
-/// print as well; that is the half width: the older theory of Kepple & Griem 1968 and
-/// `SERIES_FITS` at 10²¹ m⁻³ both agree with 1.098 nm as the full one.)
+/// Fits of full width = w (n_e/10²³ m⁻³)^p in nm: (upper n, w, p). Gigosos et al. 2003, from
+/// memory: H-alpha full width at half area, H-beta full width at half maximum. (For H-alpha 0.549
+/// nm is found in print as well; that is the half width: the older theory of Kepple & Griem 1968
+/// and `SERIES_FITS` at 10²¹ m⁻³ both agree with 1.098 nm as the full one.)
 const BALMER: [(u32, f64, f64); 2] = [(3, 1.098, 0.679_65), (4, 4.800, 0.681_16)];
 /// Where the simulations were made, m⁻³.
 const BALMER_DENSITIES: (f64, f64) = (1e20, 1e25);
@@ -42,10 +42,11 @@ const SERIES_DENSITIES: (f64, f64) = (1e19, 1e22);
 
 /// Stark width of a line n_upper → n_lower of an atom with one electron and nuclear charge `z`.
 ///
-/// H-alpha and H-beta: simulation fits (1e20–1e25 m⁻³, 0.1–20 eV, 1 σ 5 % and the neglected temperature
-/// dependence, together 8 %). Other Balmer and Paschen lines up to n = 9: fits (1e19–1e22 m⁻³,
-/// 0.3–30 eV, 15 %). All others and other z: quasi-static scaling, an estimate (see
-/// [`quasi_static_fwhm_nm`]).
+/// H-alpha and H-beta: simulation fits (1e20–1e25 m⁻³, 0.1–20 eV, 1 σ 5 % and the neglected
+/// temperature dependence, together 8 %). Other Balmer and Paschen lines up to n = 9: fits
+/// (1e19–1e22 m⁻³,
+/// 0.3–30 eV, 15 %). All others and other z: an estimate by the quasi-static scaling
+/// Δω = C (ħ/(z m_e)) (n_u² − n_l²) n_e^(2/3), C = 12, or 4 for n_u = n_l + 1 (factors 1.4 and 2).
 ///
 /// # Errors
 /// Density (m⁻³) or temperature (eV) not positive; quantum numbers that are no transition.
@@ -93,8 +94,8 @@ pub fn hydrogen_stark(
 /// Δω = C (ħ/(z m_e)) (n_u² − n_l²) n_e^(2/3), singly charged perturbers.
 ///
 /// The scaling is that of Griem 1974; C = 12 is the mean of what the fits for H-beta, H-gamma and
-/// H-delta imply (10.4–12.8), C = 4 for lines with n_u = n_l + 1, whose strong undisplaced components
-/// keep them narrow (3.9 for H-alpha). Independent of temperature.
+/// H-delta imply (10.4–12.8), C = 4 for lines with n_u = n_l + 1, whose strong undisplaced
+/// components keep them narrow (3.9 for H-alpha). Independent of temperature.
 fn quasi_static_fwhm_nm(z: u8, n_lower: u32, n_upper: u32, density_per_m3: f64) -> f64 {
     let (lower, upper) = (f64::from(n_lower).powi(2), f64::from(n_upper).powi(2));
     let constant = if n_upper - n_lower == 1 { 4.0 } else { 12.0 };
@@ -105,8 +106,9 @@ fn quasi_static_fwhm_nm(z: u8, n_lower: u32, n_upper: u32, density_per_m3: f64) 
     wavelength_width_nm(1e7 / wavenumber_per_cm, angular / (2.0 * PI))
 }
 
-/// Whether the ions disturb the level one at a time: below the density where the series ends at n_upper
-/// (D. R. Inglis & E. Teller 1939, Astrophys. J. 90, 439: lg n_e(cm⁻³) = 23.26 − 7.5 lg n, + 4.5 lg z).
+/// Whether the ions disturb the level one at a time: below the density where the series ends at
+/// n_upper (D. R. Inglis & E. Teller 1939, Astrophys. J. 90, 439: lg n_e(cm⁻³) = 23.26 − 7.5 lg n,
+/// + 4.5 lg z).
 fn is_quasi_static(z: u8, n_lower: u32, n_upper: u32, density_per_m3: f64) -> bool {
     let log_limit = 29.26 - 7.5 * f64::from(n_upper).log10() + 4.5 * f64::from(z).log10();
     n_lower >= 1 && density_per_m3.log10() < log_limit
@@ -114,11 +116,11 @@ fn is_quasi_static(z: u8, n_lower: u32, n_upper: u32, density_per_m3: f64) -> bo
 
 /// Quadratic Stark width of a line of an atom or ion with several electrons: an estimate.
 ///
-/// Electron impacts in the semiempirical approximation with all perturbing levels summed
-/// (Griem 1968, eq. 9): Δω = n_e (8π/3) (ħ/m)² √(2m/(π kT)) (π/√3) (⟨r²⟩_u g_u + ⟨r²⟩_l g_l)/a₀²,
-/// effective Gaunt factor g = 0.2 near threshold, growing when 3kT/2 exceeds twice the
-/// distance to the next shell, 2 z² R/n*³. As ⟨r²⟩ grows with n*⁴, so does the width (Unsöld). Ions are neglected, so are
-/// shifts. 1 σ: a factor 1.6 for ions, 2 for neutral atoms.
+/// Electron impacts in the semiempirical approximation with all perturbing levels summed (Griem
+/// 1968, eq. 9): Δω = n_e (8π/3) (ħ/m)² √(2m/(π kT)) (π/√3) (⟨r²⟩_u g_u + ⟨r²⟩_l g_l)/a₀²,
+/// effective Gaunt factor g = 0.2 near threshold, growing when 3kT/2 exceeds twice the distance to
+/// the next shell, 2 z² R/n*³. As ⟨r²⟩ grows with n*⁴, so does the width (Unsöld). Ions are
+/// neglected, so are shifts. 1 σ: a factor 1.6 for ions, 2 for neutral atoms.
 ///
 /// # Errors
 /// Wavelength (vacuum, nm), density (m⁻³), temperature (eV) or a binding energy not positive.

@@ -69,8 +69,8 @@ def free_free(initial, final):
 
 
 def averaged(gamma2, u, nodes):
-    """Mean over Maxwellian electrons: integral of g e^-x dx, x = E_final/kT (the substitution
-    x = e^t - e^-t/... keeps the logarithm at small u tame: Gauss-Legendre in ln x)."""
+    """Mean over Maxwellian electrons: integral of g(x) exp(-x) dx, x = final electron energy over kT.
+    The nodes are Gauss-Legendre in ln x, which keeps the logarithm at small u tame."""
     total = mp.mpf(0)
     for x, weight in nodes:
         total += weight * mp.exp(-x) * free_free((x + u) / gamma2, x / gamma2)
@@ -89,7 +89,8 @@ def nodes_in_log(low, high, count):
 
 
 def gaunt_table():
-    """ln g on a net of log10(gamma^2) -3..3 and log10(u) -4..1.5, step 0.5; also 40 points between."""
+    """g on a net of log10(gamma^2) -3..3 and log10(u) -4..1.5, step 0.5 (src/calc/plasma/gaunt_table.rs
+    holds ln g of the same net to five digits; a test compares them all); also 40 points between."""
     import random
 
     mp.mp.dps = 30
