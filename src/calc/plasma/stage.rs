@@ -34,8 +34,8 @@ const PROMOTED: [(u8, u8); 10] = [
     (79, 1),
 ];
 
-/// The outermost subshell of the ground configuration of a species: shells filled in the order of n
-/// + l (E. Madelung 1936) with the known exceptions, then emptied from the highest n, in it from
+/// The outermost subshell of the ground configuration of a species: shells filled in the order of
+/// n + l (E. Madelung 1936) with the known exceptions, then emptied from the highest n, in it from
 /// the highest l.
 ///
 /// Right for nearly all neutral atoms; a few ions of the iron group (V II, Co II, Ni II) hold their
