@@ -16,7 +16,7 @@ fn bundled() -> Vec<PathBuf> {
         .map(|entry| entry.unwrap().path())
         .filter(|folder| {
             let text = std::fs::read_to_string(folder.join("source.toml"));
-            text.is_ok_and(|text| text.contains("[[table]]"))
+            text.is_ok_and(|text| text.contains("records = "))
         })
         .collect();
     sources.sort();
