@@ -1,52 +1,24 @@
 //! Lifetimes of papers against the sum of the held rates of the level.
 
-use super::held::{HeldLine, lines_of, nearest};
+use super::held::{HeldLine, lines_of};
 use super::printed::{Decision, Row, decisions, number, table, wavenumber_per_cm};
 
-/// Levels of one energy in two tables differ by less, cm⁻¹; levels of different J are told apart by J.
-const SAME_LEVEL_PER_CM: f64 = 1.0;
+/// The printed decay and the held line lie closer, cm⁻¹ (printed to 0.001 nm).
+const SAME_LINE_PER_CM: f64 = 1.5;
 
-/// Lines of two tables that are one transition lie closer, cm⁻¹.
-const SAME_LINE_PER_CM: f64 = 0.5;
-
-/// The lines that leave the level of the row's strongest decay, one per transition: of two tables, the
-/// one whose rate has the smaller σ.
+/// The lines that leave the level of the row's strongest decay.
 fn decays(row: &Row) -> Vec<&'static HeldLine> {
     let printed = wavenumber_per_cm(row, "strongest_decay_nm");
     let all = lines_of(&row["species"]);
-    let is_printed = |line: &&HeldLine| (line.wavenumber_per_cm - printed).abs() < 1.5;
     let stated_j = half(&row["upper_j"]);
-    let fits = |line: &&HeldLine| stated_j.is_none() || line.upper_j == stated_j;
-    let near = || all.iter().filter(is_printed);
-    let Some(strongest) = near()
-        .find(fits)
-        .or_else(|| nearest(&row["species"], printed).filter(is_printed))
-    else {
-        return Vec::new();
-    };
-    let (Some(energy), j) = (strongest.upper_per_cm, strongest.upper_j) else {
-        return Vec::new();
-    };
-    let mut found: Vec<&HeldLine> = all
+    let upper = all
         .iter()
-        .filter(|line| line.upper_j == j)
-        .filter(|line| {
-            line.upper_per_cm
-                .is_some_and(|e| (e - energy).abs() < SAME_LEVEL_PER_CM)
-        })
-        .collect();
-    found.dedup_by(|next, kept| {
-        let same = (next.wavenumber_per_cm - kept.wavenumber_per_cm).abs() < SAME_LINE_PER_CM;
-        if same && sigma(next) < sigma(kept) {
-            *kept = *next;
-        }
-        same
-    });
-    found
-}
-
-fn sigma(line: &HeldLine) -> f64 {
-    line.rate.map_or(f64::INFINITY, |(_, relative)| relative)
+        .filter(|line| (line.wavenumber_per_cm - printed).abs() < SAME_LINE_PER_CM)
+        .filter(|line| stated_j.is_none() || line.upper_j == stated_j)
+        .find_map(|line| line.upper);
+    all.iter()
+        .filter(|line| upper.is_some() && line.upper == upper)
+        .collect()
 }
 
 fn half(text: &str) -> Option<f64> {
