@@ -156,3 +156,56 @@ pub(super) fn over_n(pairs: &[(f64, f64)], n: u32) -> f64 {
     let ((n0, v0), (n1, v1)) = (pairs[upper - 1], pairs[upper]);
     v1 + (v0 - v1) * (inverse - 1.0 / n1) / (1.0 / n0 - 1.0 / n1)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// The Uehling rows are what the script wrote, all of them, to the digits kept.
+    #[test]
+    fn every_uehling_row_is_the_kept_one() {
+        let kept = include_str!("../../../tests/reference/one_electron/uehling.csv");
+        let mut rows = 0;
+        for row in kept.lines().skip(1) {
+            let cells: Vec<f64> = row.split(',').map(|c| c.parse().unwrap()).collect();
+            let place = NODES.iter().position(|node| *node == cells[2]).unwrap();
+            let n = cells[0] as usize;
+            let held = match cells[1] {
+                -1.0 => UEHLING_S_HALF[n - 1][place],
+                1.0 => UEHLING_P_HALF[n - 2][place],
+                _ => UEHLING_P_THREE_HALVES[n - 2][place],
+            };
+            assert!((held - cells[4]).abs() <= 5.1e-8, "{row}");
+            rows += 1;
+        }
+        assert_eq!(rows, 156);
+    }
+
+    /// Interpolation over Z: at each inner node, from its neighbours alone (a cubic through four others), the remainders
+    /// come back to 0.02, far below the 1 σ given to them.
+    #[test]
+    fn tables_are_smooth_over_charge() {
+        for row in UEHLING_S_HALF.iter().chain(&UEHLING_P_HALF) {
+            for i in 3..NODES.len() - 3 {
+                let around = [i - 2, i - 1, i + 1, i + 2];
+                let value: f64 = around
+                    .iter()
+                    .map(|&a| {
+                        let weight: f64 = around
+                            .iter()
+                            .filter(|&&b| b != a)
+                            .map(|&b| (NODES[i] - NODES[b]) / (NODES[a] - NODES[b]))
+                            .product();
+                        weight * row[a]
+                    })
+                    .sum();
+                assert!(
+                    (value - row[i]).abs() < 0.02,
+                    "Z = {}: {value} {}",
+                    NODES[i],
+                    row[i]
+                );
+            }
+        }
+    }
+}
