@@ -15,9 +15,10 @@ use super::widths::wavelength_width_nm;
 const ACTION_OVER_MASS: f64 = FINE_STRUCTURE * SPEED_OF_LIGHT_M_PER_S * BOHR_RADIUS_M;
 
 /// Fits of full width = w (n_e/10²³ m⁻³)^p in nm: (upper n, w, p). Gigosos et al. 2003, from
-/// memory: H-alpha full width at half area, H-beta full width at half maximum. (For H-alpha 0.549
-/// nm is found in print as well; that is the half width: the older theory of Kepple & Griem 1968
-/// and `SERIES_FITS` at 10²¹ m⁻³ both agree with 1.098 nm as the full one.)
+/// memory: H-alpha full width at half area, H-beta full width at half maximum. For H-alpha both
+/// 1.098 and 0.549 nm are found in print; the larger is taken as the full width, since Kepple &
+/// Griem 1968 and Lomanowski et al. 2015 (0.046 nm at 10²¹ m⁻³) both agree with it and not with
+/// the smaller.
 const BALMER: [(u32, f64, f64); 2] = [(3, 1.098, 0.679_65), (4, 4.800, 0.681_16)];
 /// Where the simulations were made, m⁻³.
 const BALMER_DENSITIES: (f64, f64) = (1e20, 1e25);
