@@ -7,6 +7,7 @@
 mod levels;
 mod lines;
 mod outside;
+mod reading;
 mod series;
 mod sums;
 mod support;
