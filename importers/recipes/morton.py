@@ -92,6 +92,8 @@ def half(g):
     return str(twice // 2) if twice % 2 == 0 else f"{twice // 2}.5"
 
 
+DOUBT = 10  # a colon or a question mark beside a level marks doubt (common practice): ten units instead of one
+
 WRONG_WEIGHTS = {  # (row, printed g_u) → g_u, with the reason; checked against the printed figures in the suite
     (2232, "5"): ("3", "Ag II: A/f needs g = 3, and J = 0 to 2 is forbidden"),
     (3573, "10"): ("", "Pr IV: an even number of electrons allows no g = 10; the level has no J"),
@@ -182,6 +184,7 @@ def output_row(entry, kind, name):
     place, _, ground, upper, mark, cells = entry
     low, low_sigma = energy(cells["lower"])
     high, high_sigma = energy(cells["upper"])
+    high_sigma *= DOUBT if cells["flag"] in (":", "?") else 1
     wavelength = to_nm(cells["vac"])
     nanometres = float(wavelength)
     levels_sigma = math.hypot(float(low_sigma), float(high_sigma)) * nanometres**2 * 1e-7
@@ -228,6 +231,7 @@ def levels_of(entries):
             lumped.add((name, float(energy(cells["upper"])[0]), cells["gu"]))
         for text, g, tag in ((cells["lower"], cells["gl"], ground), (cells["upper"], cells["gu"], upper)):
             shown, sigma = energy(text)
+            sigma *= DOUBT if text == cells["upper"] and cells["flag"] in (":", "?") else 1
             key = (name, float(shown), g)
             held = found.get(key)
             if held is None:

@@ -70,7 +70,8 @@ def notes(counts, written):
     out.append("the printed air wavelength, total rate (gamma), log gf and log wavelength-f columns are not imported; "
                "air wavelengths are computed")
     out.append("energy uncertainty: one unit of the last printed digit; the ground level is zero by definition")
-    out.append("a mark before the weights is carried in the column `flag`; the files do not explain it")
+    out.append("a mark before the weights is carried in the column `flag`; the files do not explain it; a colon or a question "
+               "mark means doubt by common practice: its level has ten units of the last digit as uncertainty")
     out.append("rows of multiplets marked LS have components shared out by LS coupling: rate_origin derived")
     out.append("relative rate uncertainty = 10^error - 1, the error column being in dex")
     return out
@@ -117,7 +118,7 @@ def table(name, written, records, ignore, columns):
 
 def manifest(edition, written, counts):
     """The whole source.toml."""
-    band = "[90.0, 771.0]" if edition["key"] == "morton2003" else "[83.0, 35100.0]"
+    band = "[91.1, 100000.0]"  # longward of the Lyman limit, as the titles say
     head = [
         f'key = "{edition["key"]}"', f"title = {quoted(edition['title'])}",
         f"citation = {quoted(edition['citation'])}", 'licence = "BSD-3-Clause"', 'kind = "paper"',
