@@ -459,6 +459,7 @@ impl<'a, 's> Judge<'a, 's> {
         let width_nm = self.scene.width.at_nm(target.nm);
         let mut expected = 0.0;
         let mut likeliest = (0.0, target.spectrum);
+        let mut blind: Vec<Species> = Vec::new();
         for (s, coverage) in self.coverage.iter().enumerate() {
             if s == target.spectrum || self.scene.spectra[s].amount == 0.0 {
                 continue;
@@ -472,11 +473,15 @@ impl<'a, 's> Judge<'a, 's> {
                 }
                 None if self.decides(s) => {
                     out.verdict = VerdictRange::UNRATED;
-                    let species = self.scene.spectra[s].species;
-                    out.remarks.push(format!("{species} cannot be judged here"));
+                    blind.push(self.scene.spectra[s].species);
                 }
                 None => {}
             }
+        }
+        if let Some(first) = blind.first() {
+            let more = blind.len() - 1;
+            let others = if more > 0 { format!(" (nor {more} more)") } else { String::new() };
+            out.remarks.push(format!("{first} cannot be judged here{others}"));
         }
         if self.nothing_held {
             out.verdict = VerdictRange::UNRATED;

@@ -296,21 +296,7 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
         }
     }
     join_like(&mut notes);
-    let (deciding, others): (Vec<_>, Vec<_>) = answer.unrated.iter().partition(|u| u.decides);
-    for species in deciding {
-        notes.push(format!(
-            "{}: {}, so the window cannot be judged for it.",
-            species.species, species.reason
-        ));
-    }
-    if !others.is_empty() {
-        let names: Vec<&str> = others.iter().map(|u| u.species.as_str()).collect();
-        notes.push(format!(
-            "Not judged, as no more than lines from the ground term are held here: {}; name the \
-             stage to have it count.",
-            names.join(", ")
-        ));
-    }
+    notes.extend(unjudged_notes(answer));
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
@@ -339,6 +325,59 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
     }
     notes.extend(context.source_notes());
     notes
+}
+
+fn unjudged_notes(answer: &Answer) -> Vec<String> {
+    let mut notes = Vec::new();
+    let listed = |decides: bool, reason: &str| {
+        let of: Vec<&str> = answer
+            .unrated
+            .iter()
+            .filter(|u| u.decides == decides && u.reason == reason)
+            .map(|u| u.species.as_str())
+            .collect();
+        stages(&of)
+    };
+    let mut reasons: Vec<&str> = answer.unrated.iter().map(|u| u.reason.as_str()).collect();
+    reasons.sort_unstable();
+    reasons.dedup();
+    for reason in &reasons {
+        let names = listed(true, reason);
+        if !names.is_empty() {
+            notes.push(format!("{names}: {reason}, so the window cannot be judged for it."));
+        }
+    }
+    for reason in &reasons {
+        let names = listed(false, reason);
+        if !names.is_empty() {
+            notes.push(format!(
+                "Not judged, as {reason}: {names}; name the stage to have it count."
+            ));
+        }
+    }
+    notes
+}
+
+/// Stages that follow each other are written as a range: `Fe III..XXVI`.
+fn stages(species: &[&str]) -> String {
+    let read = |name: &str| name.parse::<vocabulary::atom::Species>().ok();
+    let mut runs: Vec<(&str, &str)> = Vec::new();
+    for &name in species {
+        let follows = |last: &str| {
+            read(last).zip(read(name)).is_some_and(|(a, b)| {
+                (a.atomic_number, a.isotope, a.stage + 1) == (b.atomic_number, b.isotope, b.stage)
+            })
+        };
+        match runs.last_mut() {
+            Some(run) if follows(run.1) => run.1 = name,
+            _ => runs.push((name, name)),
+        }
+    }
+    let written = runs.iter().map(|&(first, last)| match last.rsplit_once(' ') {
+        Some((_, stage)) if first != last => format!("{first}..{stage}"),
+        _ => first.to_owned(),
+    });
+    written.collect::<Vec<_>>().join(", ")
 }
 
 /// Features that say the same are said in one sentence.

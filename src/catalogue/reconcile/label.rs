@@ -22,7 +22,10 @@ pub enum Agreement {
     Unknown,
     /// Named otherwise, as happens to mixed levels.
     Otherwise,
-    /// They mean different levels: same configuration but another term, or another parity.
+    /// Another term of the same configuration: another level, unless the energies are the same to
+    /// within one σ and nothing else is near (sources then disagree about the name alone).
+    OtherTerm,
+    /// They mean different levels: another parity.
     Different,
 }
 
@@ -41,7 +44,7 @@ impl Label {
         }
         match (configurations, terms) {
             (Some(true), Some((a, b))) if a == b => Agreement::Same,
-            (Some(true), Some((a, b))) if is_ls(a) && is_ls(b) => Agreement::Different,
+            (Some(true), Some((a, b))) if is_ls(a) && is_ls(b) => Agreement::OtherTerm,
             (Some(true), None) | (None, Some(_)) | (None, None) => Agreement::Unknown,
             _ => Agreement::Otherwise,
         }

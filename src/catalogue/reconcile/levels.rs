@@ -164,6 +164,7 @@ fn candidates(
             Agreement::Same => 0,
             Agreement::Unknown => 1,
             Agreement::Otherwise => 2,
+            Agreement::OtherTerm => 3,
             Agreement::Different => continue,
         };
         let sigma = level.uncertainty_per_cm.hypot(anchor.uncertainty_per_cm);
@@ -175,7 +176,8 @@ fn candidates(
                 0.0
             };
         let difference = (level.energy_per_cm - anchor.energy_per_cm).abs();
-        if difference <= 3.0 * sigma + scale {
+        let bound = if class == 3 { sigma } else { 3.0 * sigma + scale };
+        if difference <= bound {
             let deviation = difference / (sigma + scale).max(f64::MIN_POSITIVE);
             out.push(Pairing {
                 class,
