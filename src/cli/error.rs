@@ -27,6 +27,9 @@ pub enum CliError {
         /// What is wrong with it.
         problem: &'static str,
     },
+    /// Arguments that the parser refuses.
+    #[error("{0}")]
+    Usage(String),
     /// Options that do not go together.
     #[error("{0}")]
     Options(&'static str),
@@ -60,9 +63,11 @@ impl CliError {
     /// The exit status that this error sets. A closed pipe is no error.
     pub fn exit(&self) -> Exit {
         match self {
-            Self::Quantity(_) | Self::Species(_) | Self::Mix { .. } | Self::Options(_) => {
-                Exit::Usage
-            }
+            Self::Quantity(_)
+            | Self::Species(_)
+            | Self::Mix { .. }
+            | Self::Usage(_)
+            | Self::Options(_) => Exit::Usage,
             Self::Output(cause) if cause.kind() == std::io::ErrorKind::BrokenPipe => Exit::Answered,
             _ => Exit::Failed,
         }

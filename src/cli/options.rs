@@ -81,22 +81,22 @@ pub struct ConditionOptions {
     #[arg(long, value_enum, default_value_t = ModelName::Visible, value_name = "MODEL")]
     model: ModelName,
     /// Temperature of the electrons, with its unit [default: 1eV]
-    #[arg(long, value_name = "TEMPERATURE")]
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
     te: Option<String>,
     /// Electron density; ionisation then follows Saha (model lte) [default: none]
-    #[arg(long, value_name = "DENSITY")]
+    #[arg(long, value_name = "DENSITY", allow_hyphen_values = true)]
     ne: Option<String>,
     /// Temperature of the atoms, for Doppler widths [default: 1000K]
-    #[arg(long, value_name = "TEMPERATURE")]
+    #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
     gas_temperature: Option<String>,
     /// Relative amounts, `Fe=0.01,He=1`; species not named here have the amount 1
-    #[arg(long, value_name = "AMOUNTS")]
+    #[arg(long, value_name = "AMOUNTS", allow_hyphen_values = true)]
     mix: Option<String>,
     /// Full width at half maximum of the instrument [default: 0.1nm]
-    #[arg(long, value_name = "WIDTH", conflicts_with = "resolving")]
+    #[arg(long, value_name = "WIDTH", conflicts_with = "resolving", allow_hyphen_values = true)]
     fwhm: Option<String>,
     /// Resolving power of the instrument, instead of --fwhm
-    #[arg(long, value_name = "NUMBER")]
+    #[arg(long, value_name = "NUMBER", allow_hyphen_values = true)]
     resolving: Option<f64>,
 }
 

@@ -93,7 +93,7 @@ fn one_medium(answer: &Answer, shown: &[usize]) -> Option<PositionMedium> {
 fn headline(answer: &Answer, wish: &Wish) -> Vec<String> {
     if answer.features.is_empty() {
         let end = if answer.unrated.iter().any(|u| u.decides) {
-            "and the window cannot be judged (see below)".to_owned()
+            "the window cannot be judged (see below)".to_owned()
         } else {
             beyond_scope(answer)
         };
@@ -136,7 +136,7 @@ fn beyond_scope(answer: &Answer) -> String {
         .map(|(species, limit)| format!("{species} {}", percent(*limit)))
         .collect();
     if partly.is_empty() {
-        return "and their sources claim to list them all".into();
+        return "their sources claim to list them all".into();
     }
     format!(
         "lines weaker than this part of the strongest may be there unlisted: {}",
@@ -344,7 +344,7 @@ fn unjudged_notes(answer: &Answer) -> Vec<String> {
     for reason in &reasons {
         let names = listed(true, reason);
         if !names.is_empty() {
-            notes.push(format!("{names}: {reason}, so the window cannot be judged for it."));
+            notes.push(format!("{names}: {reason}, so no line there can be called clear."));
         }
     }
     for reason in &reasons {

@@ -1,0 +1,54 @@
+//! The examples of the documents are what the program prints.
+//!
+//! A fenced block ```` ```console ```` holds commands (`$ lineclear …`) and their standard output.
+//! `UPDATE_GOLDEN=1` writes what is printed now.
+
+mod common;
+
+use std::fs;
+use std::path::Path;
+
+use common::run;
+use similar::TextDiff;
+
+/// The document with every console block's output made anew, and the number of commands.
+fn refreshed(text: &str) -> (String, usize) {
+    let mut out = String::new();
+    let (mut console, mut commands) = (false, 0);
+    for line in text.lines() {
+        if let Some(command) = line.strip_prefix("$ ").filter(|_| console) {
+            commands += 1;
+            let run = run(command);
+            assert_eq!(run.exit, 0, "{command}: {}", run.stderr);
+            out.push_str(&format!("{line}\n{}", run.stdout));
+        } else if line.starts_with("```") {
+            console = line == "```console";
+            out.push_str(&format!("{line}\n"));
+        } else if !console {
+            out.push_str(&format!("{line}\n"));
+        }
+    }
+    (out, commands)
+}
+
+#[test]
+fn console_blocks_of_the_readme_are_true() {
+    let path = Path::new(env!("CARGO_MANIFEST_DIR")).join("README.md");
+    let text = fs::read_to_string(&path).unwrap();
+    let (found, commands) = refreshed(&text);
+    assert!(commands >= 2, "the README has no examples");
+    if std::env::var_os("UPDATE_GOLDEN").is_some() {
+        fs::write(&path, &found).unwrap();
+    } else if found != text {
+        let diff = TextDiff::from_lines(text.as_str(), found.as_str());
+        panic!("README.md is not what is printed:\n{}", diff.unified_diff());
+    }
+}
+
+#[test]
+fn the_two_commands_of_the_readme_are_there() {
+    let text = fs::read_to_string(Path::new(env!("CARGO_MANIFEST_DIR")).join("README.md")).unwrap();
+    for command in ["cargo run --release -- window 585..590nm --of Na,Ne,He", "cargo test"] {
+        assert!(text.contains(command), "{command}");
+    }
+}
