@@ -3,6 +3,8 @@
 //! A fenced block ```` ```console ```` holds commands (`$ lineclear …`) and their standard output.
 //! `UPDATE_GOLDEN=1` writes what is printed now.
 
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
+
 mod common;
 
 use std::fs;
@@ -48,7 +50,10 @@ fn console_blocks_of_the_readme_are_true() {
 #[test]
 fn the_two_commands_of_the_readme_are_there() {
     let text = fs::read_to_string(Path::new(env!("CARGO_MANIFEST_DIR")).join("README.md")).unwrap();
-    for command in ["cargo run --release -- window 585..590nm --of Na,Ne,He", "cargo test"] {
+    for command in [
+        "cargo run --release -- window 585..590nm --of Na,Ne,He",
+        "cargo test",
+    ] {
         assert!(text.contains(command), "{command}");
     }
 }

@@ -6,6 +6,8 @@
 //!
 //! Failing seeds are kept by proptest beside this file.
 
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
+
 use std::sync::Arc;
 
 use importers::record::{LevelEnd, LevelRecord, LineRecord, Place, Record};
@@ -28,7 +30,10 @@ struct Table {
 }
 
 fn place(line: u64) -> Place {
-    Place { file: Arc::from("invented.csv"), line }
+    Place {
+        file: Arc::from("invented.csv"),
+        line,
+    }
 }
 
 /// Energies near a few true ones, so that sources agree, nearly agree and disagree.
@@ -40,7 +45,11 @@ fn level() -> impl Strategy<Value = LevelRecord> {
             let term = label.map(|l| ["2S", "2Po", "2D"][l].to_owned());
             LevelRecord {
                 species: Species::new(11, stage + 1),
-                energy_per_cm: if which == 0 { 0.0 } else { energy + 0.02 * shift.round() },
+                energy_per_cm: if which == 0 {
+                    0.0
+                } else {
+                    energy + 0.02 * shift.round()
+                },
                 energy_uncertainty_per_cm: 0.01 * f64::from(sigma),
                 configuration: term.as_ref().map(|_| "3p".to_owned()),
                 term,
@@ -64,7 +73,13 @@ fn end(level: &LevelRecord) -> LevelEnd {
     }
 }
 
-fn line(levels: &[LevelRecord], a: usize, b: usize, rate: Option<f64>, loose: bool) -> Option<LineRecord> {
+fn line(
+    levels: &[LevelRecord],
+    a: usize,
+    b: usize,
+    rate: Option<f64>,
+    loose: bool,
+) -> Option<LineRecord> {
     let (a, b) = (&levels[a % levels.len()], &levels[b % levels.len()]);
     let difference = b.energy_per_cm - a.energy_per_cm;
     (a.species == b.species && difference > 1.0).then(|| LineRecord {
@@ -86,7 +101,12 @@ fn line(levels: &[LevelRecord], a: usize, b: usize, rate: Option<f64>, loose: bo
 
 fn table(index: usize) -> impl Strategy<Value = Table> {
     let levels = prop::collection::vec(level(), 2..8);
-    let pick = (0usize..8, 0usize..8, prop::option::of(1e6..1e9), any::<bool>());
+    let pick = (
+        0usize..8,
+        0usize..8,
+        prop::option::of(1e6..1e9),
+        any::<bool>(),
+    );
     (levels, prop::collection::vec(pick, 0..8), 0usize..3, 0u8..3).prop_map(
         move |(levels, picks, kind, scale)| {
             let lines = picks
@@ -111,7 +131,11 @@ fn import(catalogue: &mut Catalogue, table: &Table) -> bool {
         table.key, table.kind, table.scale
     );
     let description = SourceDescription::parse(&text, "invented").unwrap();
-    let incoming = Incoming { description: &description, checksum: "invented", bundled: false };
+    let incoming = Incoming {
+        description: &description,
+        checksum: "invented",
+        bundled: false,
+    };
     let feed = |sink: &mut dyn Sink| {
         let mut report = ReadReport::default();
         let records = (table.levels.iter().cloned().map(Record::Level))
@@ -124,7 +148,14 @@ fn import(catalogue: &mut Catalogue, table: &Table) -> bool {
         Ok(report)
     };
     let summary = catalogue.import(&incoming, feed, false).unwrap();
-    assert_eq!(summary.read, if summary.unchanged { summary.read } else { summary.kept + summary.merged });
+    assert_eq!(
+        summary.read,
+        if summary.unchanged {
+            summary.read
+        } else {
+            summary.kept + summary.merged
+        }
+    );
     summary.unchanged
 }
 

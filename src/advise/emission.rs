@@ -178,25 +178,30 @@ fn fractions(
             let species = spectrum.species;
             let held = |stage: u8| {
                 let same = |s: &Spectrum| s.species == Species { stage, ..species };
-                spectra.iter().position(same).and_then(|i| partitions[i].as_ref())
+                spectra
+                    .iter()
+                    .position(same)
+                    .and_then(|i| partitions[i].as_ref())
             };
             let stages = stages_of(species, held);
             if spectrum.named && usize::from(species.stage) > stages.len() {
                 let stage = u8::try_from(stages.len()).unwrap_or(species.stage);
-                return Err(AdviseError::NoLimit { species: Species { stage, ..species } });
+                return Err(AdviseError::NoLimit {
+                    species: Species { stage, ..species },
+                });
             }
             let all = ionisation_balance(&stages, kt_per_cm, density_per_m3)
                 .map_err(|cause| AdviseError::Plasma { species, cause })?;
-            Ok(all.get(usize::from(species.charge())).copied().unwrap_or(0.0))
+            Ok(all
+                .get(usize::from(species.charge()))
+                .copied()
+                .unwrap_or(0.0))
         })
         .collect()
 }
 
 /// Stages from the neutral atom up to the first without an ionisation energy, or the bare nucleus.
-fn stages_of<'p>(
-    species: Species,
-    held: impl Fn(u8) -> Option<&'p Partition>,
-) -> Vec<Stage> {
+fn stages_of<'p>(species: Species, held: impl Fn(u8) -> Option<&'p Partition>) -> Vec<Stage> {
     let mut stages = Vec::new();
     for stage in 1..=species.atomic_number {
         let this = Species { stage, ..species };
@@ -205,11 +210,17 @@ fn stages_of<'p>(
             None => vocabulary::atom::limit(this).map(|l| l.energy_per_cm),
         };
         let partition = held(stage).map_or(1.0, |p| p.value);
-        stages.push(Stage { partition, limit_per_cm });
+        stages.push(Stage {
+            partition,
+            limit_per_cm,
+        });
         if limit_per_cm.is_none() {
             return stages;
         }
     }
-    stages.push(Stage { partition: 1.0, limit_per_cm: None });
+    stages.push(Stage {
+        partition: 1.0,
+        limit_per_cm: None,
+    });
     stages
 }

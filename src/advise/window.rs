@@ -125,7 +125,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     let mut features = Vec::with_capacity(chosen.len());
     let mut lines = Vec::new();
     for &index in &chosen {
-        let feature = judge.feature(index, total, question.medium, &air)?;
+        let feature = judge.feature(index, total, question.medium, air)?;
         let position = features.len();
         lines.extend(components(
             &scene,
@@ -133,7 +133,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
             position,
             total,
             question.medium,
-            &air,
+            air,
         )?);
         features.push(feature);
     }
@@ -480,8 +480,13 @@ impl<'a, 's> Judge<'a, 's> {
         }
         if let Some(first) = blind.first() {
             let more = blind.len() - 1;
-            let others = if more > 0 { format!(" (nor {more} more)") } else { String::new() };
-            out.remarks.push(format!("{first} cannot be judged here{others}"));
+            let others = if more > 0 {
+                format!(" (nor {more} more)")
+            } else {
+                String::new()
+            };
+            out.remarks
+                .push(format!("{first} cannot be judged here{others}"));
         }
         if self.nothing_held {
             out.verdict = VerdictRange::UNRATED;

@@ -83,7 +83,9 @@ impl Catalogue {
     /// An unreadable file, a file that is no catalogue, a catalogue of a newer version.
     pub fn open(path: &Path) -> Result<Self> {
         if path.is_dir() {
-            return Err(CatalogueError::NotACatalogue { path: path.to_owned() });
+            return Err(CatalogueError::NotACatalogue {
+                path: path.to_owned(),
+            });
         }
         std::fs::File::open(path).map_err(|cause| CatalogueError::File {
             path: path.to_owned(),

@@ -93,7 +93,12 @@ pub struct ConditionOptions {
     #[arg(long, value_name = "AMOUNTS", allow_hyphen_values = true)]
     mix: Option<String>,
     /// Full width at half maximum of the instrument [default: 0.1nm]
-    #[arg(long, value_name = "WIDTH", conflicts_with = "resolving", allow_hyphen_values = true)]
+    #[arg(
+        long,
+        value_name = "WIDTH",
+        conflicts_with = "resolving",
+        allow_hyphen_values = true
+    )]
     fwhm: Option<String>,
     /// Resolving power of the instrument, instead of --fwhm
     #[arg(long, value_name = "NUMBER", allow_hyphen_values = true)]

@@ -69,7 +69,7 @@ impl Required {
 pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
     let requests = species(&arguments.of)?;
     let typed: TypedRange = arguments.range.parse()?;
-    let range = typed.resolve(arguments.medium, &Air::standard())?;
+    let range = typed.resolve(arguments.medium, Air::standard())?;
     let mut checked = arguments.conditions.check(&range)?;
     if range.unit_assumed {
         checked.assumed.push("nm, as the range has no unit".into());

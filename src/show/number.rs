@@ -35,7 +35,7 @@ pub fn rate(rate_per_s: f64) -> String {
 pub fn percent(fraction: f64) -> String {
     let value = 100.0 * fraction;
     match value {
-        v if v == 0.0 => "0 %".into(),
+        0.0 => "0 %".into(),
         v if v.is_nan() => "?".into(),
         v if v < 0.001 => "<0.001 %".into(),
         v if v >= 1e4 => format!("{v:.1e} %"),

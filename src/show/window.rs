@@ -344,7 +344,9 @@ fn unjudged_notes(answer: &Answer) -> Vec<String> {
     for reason in &reasons {
         let names = listed(true, reason);
         if !names.is_empty() {
-            notes.push(format!("{names}: {reason}, so no line there can be called clear."));
+            notes.push(format!(
+                "{names}: {reason}, so no line there can be called clear."
+            ));
         }
     }
     for reason in &reasons {
@@ -373,10 +375,12 @@ fn stages(species: &[&str]) -> String {
             _ => runs.push((name, name)),
         }
     }
-    let written = runs.iter().map(|&(first, last)| match last.rsplit_once(' ') {
-        Some((_, stage)) if first != last => format!("{first}..{stage}"),
-        _ => first.to_owned(),
-    });
+    let written = runs
+        .iter()
+        .map(|&(first, last)| match last.rsplit_once(' ') {
+            Some((_, stage)) if first != last => format!("{first}..{stage}"),
+            _ => first.to_owned(),
+        });
     written.collect::<Vec<_>>().join(", ")
 }
 

@@ -17,11 +17,21 @@ pub struct Run {
 pub fn catalogue() -> &'static Path {
     static PATH: OnceLock<PathBuf> = OnceLock::new();
     PATH.get_or_init(|| {
-        let folder = Path::new(env!("CARGO_TARGET_TMPDIR")).join(format!("run-{}", std::process::id()));
+        let folder =
+            Path::new(env!("CARGO_TARGET_TMPDIR")).join(format!("run-{}", std::process::id()));
         std::fs::create_dir_all(&folder).unwrap();
         let path = folder.join("catalogue.sqlite");
-        let built = binary().arg("sources").arg("--catalogue").arg(&path).output().unwrap();
-        assert!(built.status.success(), "{}", String::from_utf8_lossy(&built.stderr));
+        let built = binary()
+            .arg("sources")
+            .arg("--catalogue")
+            .arg(&path)
+            .output()
+            .unwrap();
+        assert!(
+            built.status.success(),
+            "{}",
+            String::from_utf8_lossy(&built.stderr)
+        );
         path
     })
 }
@@ -29,17 +39,27 @@ pub fn catalogue() -> &'static Path {
 /// The binary with nothing of the tester's own surroundings.
 pub fn binary() -> Command {
     let mut command = Command::new(env!("CARGO_BIN_EXE_lineclear"));
-    command.env_remove("COLUMNS").env("NO_COLOR", "1").current_dir(env!("CARGO_MANIFEST_DIR"));
+    command
+        .env_remove("COLUMNS")
+        .env("NO_COLOR", "1")
+        .current_dir(env!("CARGO_MANIFEST_DIR"));
     command
 }
 
 /// Runs a command line as typed in a shell, on the shared catalogue unless it names one.
 pub fn run(command: &str) -> Run {
     let words = words(command);
-    assert_eq!(words.first().map(String::as_str), Some("lineclear"), "{command}");
+    assert_eq!(
+        words.first().map(String::as_str),
+        Some("lineclear"),
+        "{command}"
+    );
     let mut process = binary();
     process.args(&words[1..]);
-    if !words.iter().any(|w| w == "--catalogue" || w == "--help" || w == "--version") {
+    if !words
+        .iter()
+        .any(|w| w == "--catalogue" || w == "--help" || w == "--version")
+    {
         process.arg("--catalogue").arg(catalogue());
     }
     let output = process.output().unwrap();

@@ -176,7 +176,11 @@ fn candidates(
                 0.0
             };
         let difference = (level.energy_per_cm - anchor.energy_per_cm).abs();
-        let bound = if class == 3 { sigma } else { 3.0 * sigma + scale };
+        let bound = if class == 3 {
+            sigma
+        } else {
+            3.0 * sigma + scale
+        };
         if difference <= bound {
             let deviation = difference / (sigma + scale).max(f64::MIN_POSITIVE);
             out.push(Pairing {
