@@ -1,6 +1,7 @@
 //! The Rydberg series of the bundled tables, for the tests of the fit.
 
 #![allow(clippy::unwrap_used, reason = "a panic in a test is the report")]
+#![allow(dead_code, reason = "each test uses its part")]
 
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
@@ -36,11 +37,11 @@ impl Held {
     }
 }
 
-fn data() -> PathBuf {
+pub fn data() -> PathBuf {
     Path::new(env!("CARGO_MANIFEST_DIR")).join("data")
 }
 
-type Row = BTreeMap<String, String>;
+pub type Row = BTreeMap<String, String>;
 
 pub fn rows(path: &Path) -> Vec<Row> {
     let mut reader = csv::Reader::from_path(path).unwrap();
@@ -78,7 +79,7 @@ pub fn limits() -> BTreeMap<(String, u32), (f64, f64)> {
     limits
 }
 
-fn masses() -> BTreeMap<String, f64> {
+pub fn masses() -> BTreeMap<String, f64> {
     rows(&data().join("elements/elements.csv"))
         .into_iter()
         .filter_map(|row| Some((row["symbol"].clone(), row["standard_mass_u"].parse().ok()?)))
@@ -94,7 +95,7 @@ pub fn stage_number(roman: &str) -> Option<u32> {
 }
 
 /// Scale uncertainty of the levels that a source declares, cm⁻¹.
-fn scale_uncertainty(folder: &Path) -> f64 {
+pub fn scale_uncertainty(folder: &Path) -> f64 {
     let text = std::fs::read_to_string(folder.join("source.toml")).unwrap();
     text.lines()
         .find_map(|line| line.strip_prefix("level_scale_uncertainty_per_cm = "))
@@ -118,7 +119,7 @@ pub fn folders() -> Vec<PathBuf> {
 
 /// Cores as the sources write them, brought to one form: inner closed shells and the term of
 /// a closed shell dropped (`4s2 4p6 (1S)` → `4p6`, bare alkali labels → their closed shell).
-fn one_form(element: &str, core: &str) -> String {
+pub fn one_form(element: &str, core: &str) -> String {
     let bare = match element {
         "Li" | "Be" if core.is_empty() => "1s2",
         "Na" | "Mg" if core.is_empty() => "2p6",

@@ -49,8 +49,8 @@ fn shell_text(n: u32, l: u32, occupancy: u32) -> String {
     }
 }
 
-/// `3d6` → (3, 2, 6); `None` for anything else.
-pub(super) fn shell(token: &str) -> Option<(u32, u32, u32)> {
+/// Principal quantum number, l and occupancy of a shell: `3d6` → (3, 2, 6); `None` for anything else.
+pub fn shell(token: &str) -> Option<(u32, u32, u32)> {
     let letter_at = token.find(|c: char| !c.is_ascii_digit())?;
     let letter = token[letter_at..].chars().next()?;
     let n = token[..letter_at].parse().ok()?;
