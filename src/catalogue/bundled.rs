@@ -11,6 +11,7 @@ use sha2::{Digest, Sha256};
 
 use super::derive::{self, Labels};
 use super::error::{CatalogueError, Result};
+use super::files::{hex, source_checksum};
 use super::ingest::{self, Incoming};
 use super::sources::retract;
 use super::store::{Catalogue, failed};
@@ -49,11 +50,9 @@ fn folders() -> BTreeSet<String> {
         .collect()
 }
 
-/// SHA-256 over names and contents of the files of one folder, or of all.
-fn checksum(folder: Option<&str>) -> String {
-    let mut names: Vec<_> = Tables::iter()
-        .filter(|name| folder.is_none_or(|f| name.split('/').next() == Some(f)))
-        .collect();
+/// SHA-256 over names and contents of all bundled files: names the whole set.
+fn bundle_checksum() -> String {
+    let mut names: Vec<_> = Tables::iter().collect();
     names.sort();
     let mut hash = Sha256::new();
     for name in names {
@@ -62,10 +61,7 @@ fn checksum(folder: Option<&str>) -> String {
             hash.update(file.metadata.sha256_hash());
         }
     }
-    hash.finalize()
-        .iter()
-        .map(|byte| format!("{byte:02x}"))
-        .collect()
+    hex(&hash.finalize())
 }
 
 fn bundled(folder: &str) -> Result<Bundled> {
@@ -77,10 +73,17 @@ fn bundled(folder: &str) -> Result<Bundled> {
         .ok_or_else(|| damaged("its source.toml is missing".into()))?;
     let text = std::str::from_utf8(&file.data).map_err(|e| damaged(e.to_string()))?;
     let description = SourceDescription::parse(text, &format!("{folder}/source.toml"))?;
+    let hash = |table: &importers::source::TableDescription| {
+        Tables::get(&format!("{folder}/{}", table.file))
+            .map(|file| hex(&file.metadata.sha256_hash()))
+            .unwrap_or_default()
+    };
+    let tables: Vec<String> = description.table.iter().map(hash).collect();
+    let checksum = source_checksum(text, &tables);
     Ok(Bundled {
         folder: folder.to_owned(),
         description,
-        checksum: checksum(Some(folder)),
+        checksum,
     })
 }
 
@@ -106,7 +109,7 @@ pub(super) fn refresh(
         })
         .optional()
         .map_err(&read)?;
-    if built_from.as_deref() == Some(checksum(None).as_str()) {
+    if built_from.as_deref() == Some(bundle_checksum().as_str()) {
         return Ok(false);
     }
     let held: Vec<(i64, String, String)> = catalogue
@@ -171,7 +174,7 @@ fn replace(
     transaction
         .execute(
             "INSERT OR REPLACE INTO about VALUES ('bundle', ?1)",
-            [checksum(None)],
+            [bundle_checksum()],
         )
         .map_err(&written)?;
     transaction.commit().map_err(&written)?;

@@ -34,8 +34,7 @@ impl SourceFiles {
         let text = std::fs::read_to_string(&file).map_err(unreadable(&file))?;
         let description = SourceDescription::parse(&text, &file.display().to_string())?;
         let folder = file.parent().map(Path::to_owned).unwrap_or_default();
-        let mut all = Sha256::new();
-        all.update(text.as_bytes());
+        let mut tables = Vec::with_capacity(description.table.len());
         for table in &description.table {
             let path = folder.join(&table.file);
             let found = sha256(&path).map_err(unreadable(&path))?;
@@ -51,9 +50,9 @@ impl SourceFiles {
                     stated,
                 });
             }
-            all.update(found.as_bytes());
+            tables.push(found);
         }
-        let checksum = hex(&all.finalize());
+        let checksum = source_checksum(&text, &tables);
         Ok(Self {
             description,
             folder,
@@ -115,6 +114,17 @@ impl SourceFiles {
     }
 }
 
+/// Names the content of a source: SHA-256 over the text of its description and the SHA-256 (hex) of
+/// each table in the order of the description.
+pub(super) fn source_checksum(description: &str, tables: &[String]) -> String {
+    let mut all = Sha256::new();
+    all.update(description.as_bytes());
+    for table in tables {
+        all.update(table.as_bytes());
+    }
+    hex(&all.finalize())
+}
+
 fn unreadable(path: &Path) -> impl Fn(io::Error) -> CatalogueError + use<> {
     let path = path.to_owned();
     move |cause| CatalogueError::File {
@@ -136,6 +146,6 @@ fn sha256(path: &Path) -> io::Result<String> {
     }
 }
 
-fn hex(bytes: &[u8]) -> String {
+pub(super) fn hex(bytes: &[u8]) -> String {
     bytes.iter().map(|byte| format!("{byte:02x}")).collect()
 }
