@@ -4,6 +4,7 @@ mod coverage;
 mod emission;
 mod error;
 mod feature;
+pub mod marks;
 mod position;
 mod scene;
 mod spectrum;

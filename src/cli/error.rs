@@ -51,6 +51,12 @@ pub enum CliError {
     /// The answer.
     #[error(transparent)]
     Advise(#[from] AdviseError),
+    /// A table that the user handed in.
+    #[error(transparent)]
+    TableFile(#[from] super::table_file::TableFileError),
+    /// A dispersion that cannot be fitted.
+    #[error(transparent)]
+    Dispersion(#[from] crate::advise::marks::DispersionError),
     /// A table to import.
     #[error(transparent)]
     Import(#[from] importers::ImportError),

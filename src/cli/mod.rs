@@ -5,9 +5,11 @@ mod error;
 mod exit;
 mod forget;
 mod import;
+mod marks;
 mod options;
 mod progress;
 mod sources;
+mod table_file;
 mod window;
 
 use clap::{Parser, Subcommand};
@@ -31,6 +33,7 @@ struct Cli {
 #[derive(Debug, Subcommand)]
 enum Command {
     Window(window::Arguments),
+    Marks(marks::Arguments),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -55,6 +58,7 @@ pub fn run() -> Result<Exit, CliError> {
     let context = &cli.catalogue;
     let outcome = match cli.command {
         Command::Window(arguments) => window::run(arguments, context)?,
+        Command::Marks(arguments) => marks::run(&arguments, context)?,
         Command::Import(arguments) => import::run(&arguments, context)?,
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,

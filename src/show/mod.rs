@@ -5,6 +5,7 @@ mod json;
 mod line;
 mod listing;
 mod markdown;
+mod marks;
 mod number;
 mod sheet;
 mod table;
@@ -12,5 +13,6 @@ pub mod text;
 mod window;
 
 pub use listing::{forgotten, imported, sources};
+pub use marks::marks;
 pub use sheet::{Align, Column, Context, Format, Sheet};
 pub use window::{Wish, window};

@@ -1,0 +1,121 @@
+//! Features of a wide span, each judged where the sources' claims are the same throughout.
+
+use vocabulary::light::{Medium, SpectralRange, SpectralWidth};
+
+use crate::advise::emission::{Conditions, emitters};
+use crate::advise::error::AdviseError;
+use crate::advise::scene::REACH_WIDTHS;
+use crate::advise::spectrum::Spectrum;
+use crate::advise::window::{self, WindowFeature};
+use vocabulary::spectrum::Line;
+
+/// A judged feature with its lines.
+#[derive(Clone, Debug)]
+pub struct Surveyed {
+    /// The feature and its verdict.
+    pub feature: WindowFeature,
+    /// Its lines, by wavelength.
+    pub lines: Vec<Line>,
+    /// Relative light, one unit for the whole span; `None` where none of its lines is rated.
+    pub light: Option<f64>,
+}
+
+/// Judges all features of a span. The span is cut where a source's claimed band begins or ends, so
+/// that each piece is judged by the claims that hold there.
+///
+/// # Errors
+/// As [`window::answer`].
+pub fn survey(
+    spectra: &[Spectrum],
+    conditions: &Conditions,
+    width: SpectralWidth,
+    range: &SpectralRange,
+    medium: Medium,
+    not_held: &[String],
+) -> Result<Vec<Surveyed>, AdviseError> {
+    let emitters = emitters(spectra, conditions)?;
+    let mut out: Vec<Surveyed> = Vec::new();
+    for piece in pieces(spectra, range) {
+        let margin_nm = REACH_WIDTHS * width.at_nm(piece.vacuum_high_nm);
+        let near = near(spectra, &piece, margin_nm);
+        let question = window::Question {
+            range: piece.clone(),
+            medium,
+            width,
+            conditions: conditions.clone(),
+            not_held: not_held.to_vec(),
+        };
+        let answer = window::answer(&question, &near)?;
+        for feature in answer.features {
+            // A feature across a cut belongs to the piece that holds its centre.
+            if !piece.contains_per_cm(1e7 / feature.placed.vacuum_nm) {
+                continue;
+            }
+            let lines: Vec<Line> = feature
+                .components
+                .iter()
+                .map(|&c| answer.lines[c].line.clone())
+                .collect();
+            let emitter = spectra
+                .iter()
+                .position(|s| s.species == feature.species)
+                .map(|i| &emitters[i]);
+            let rated: Vec<f64> = lines
+                .iter()
+                .filter_map(|l| emitter.and_then(|e| e.light(l)))
+                .collect();
+            let light = (!rated.is_empty()).then(|| rated.iter().sum());
+            out.push(Surveyed {
+                feature,
+                lines,
+                light,
+            });
+        }
+    }
+    out.sort_by(|a, b| {
+        a.feature
+            .placed
+            .vacuum_nm
+            .total_cmp(&b.feature.placed.vacuum_nm)
+    });
+    Ok(out)
+}
+
+/// The span, cut at the ends of claimed bands.
+fn pieces(spectra: &[Spectrum], range: &SpectralRange) -> Vec<SpectralRange> {
+    let mut cuts: Vec<f64> = spectra
+        .iter()
+        .flat_map(|s| &s.scopes)
+        .flat_map(|scope| [scope.from_nm, scope.to_nm])
+        .filter(|nm| (range.vacuum_low_nm..range.vacuum_high_nm).contains(nm))
+        .map(|nm| 1e7 / nm)
+        .collect();
+    cuts.push(range.wavenumber_low_per_cm);
+    cuts.push(range.wavenumber_high_per_cm);
+    cuts.sort_by(f64::total_cmp);
+    cuts.windows(2)
+        .filter_map(|ends| SpectralRange::from_wavenumbers_per_cm(ends[0], ends[1]))
+        .collect()
+}
+
+/// The spectra with only the lines that can matter in a piece.
+fn near(spectra: &[Spectrum], piece: &SpectralRange, margin_nm: f64) -> Vec<Spectrum> {
+    let from = 1e7 / (piece.vacuum_high_nm + margin_nm);
+    let to = 1e7 / (piece.vacuum_low_nm - margin_nm).max(f64::MIN_POSITIVE);
+    let cut = |s: &Spectrum| {
+        let first = s.lines.partition_point(|l| l.wavenumber_per_cm < from);
+        let last = s.lines.partition_point(|l| l.wavenumber_per_cm <= to);
+        Spectrum {
+            lines: s.lines[first..last.max(first)].to_vec(),
+            species: s.species,
+            amount: s.amount,
+            named: s.named,
+            levels: s.levels.clone(),
+            strengths: s.strengths.clone(),
+            limit_per_cm: s.limit_per_cm,
+            mass_u: s.mass_u,
+            scopes: s.scopes.clone(),
+        }
+    };
+    spectra.iter().map(cut).collect()
+}
