@@ -1,5 +1,7 @@
 //! `marks`: lines to calibrate on, and the dispersion fitted to them.
 
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
+
 mod common;
 
 use std::fs;
