@@ -79,6 +79,7 @@ fn no_line_of_an_answer_is_wider_than_a_page() {
         "lineclear window 585..590nm --of Na,Ne,He",
         "lineclear window 200..230nm --of Fe,Ni,Cu --components --strongest 40",
         "lineclear sources",
+        "lineclear vet \"Cs I@852.1nm\" --among Ar,Fe --fwhm 0.1nm --orders 3",
     ] {
         let out = run(command).stdout;
         for line in out.lines() {

@@ -5,7 +5,7 @@
 //! electron temperature, each bound level weighted by the Planck–Larkin factor.
 
 use vocabulary::atom::Species;
-use vocabulary::spectrum::{Line, Strength};
+use vocabulary::spectrum::{Level, Line, Strength};
 
 use super::error::AdviseError;
 use super::spectrum::Spectrum;
@@ -81,6 +81,15 @@ impl Emitter {
             .filter(inside)
             .filter_map(|s| self.of_strength(spectrum, s))
             .fold(0.0, f64::max)
+    }
+
+    /// Part of the atoms of the species that is in a level, in LTE; `None` without its weight.
+    pub fn population(&self, level: &Level) -> Option<f64> {
+        Some(
+            self.partition
+                .as_ref()?
+                .fraction(level.energy_per_cm, level.g?),
+        )
     }
 
     /// Whether levels that are not held may raise the partition function by more than 1 %.

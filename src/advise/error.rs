@@ -36,7 +36,28 @@ pub enum AdviseError {
         /// Whose.
         species: Species,
     },
+    /// A line that is not held.
+    #[error(
+        "{wanted}: no such line is held within {reach_nm} nm{}",
+        offer(.nearest)
+    )]
+    NoSuchLine {
+        /// As it was typed.
+        wanted: String,
+        /// How far it was looked for, nm.
+        reach_nm: f64,
+        /// The nearest that are held, in words.
+        nearest: Vec<String>,
+    },
     /// Wavelengths in air outside the range of the index.
     #[error(transparent)]
     Light(#[from] vocabulary::light::QuantityError),
+}
+
+fn offer(nearest: &[String]) -> String {
+    match nearest {
+        [] => "; nothing of that species is held, see `lineclear sources`".into(),
+        [one] => format!("; the nearest is {one}"),
+        several => format!("; the nearest are {}", several.join(", ")),
+    }
 }

@@ -10,7 +10,7 @@ use super::emission::{Conditions, Emitter, emitters};
 use super::error::AdviseError;
 use super::feature;
 use super::spectrum::Spectrum;
-use crate::calc::shape::{Instrument, LineWidths, Profile, natural_fwhm_hz};
+use crate::calc::shape::{Instrument, LineWidths, Profile, ShapeError, natural_fwhm_hz};
 
 /// How far profiles are followed, in instrument widths.
 pub const REACH_WIDTHS: f64 = 20.0;
@@ -31,6 +31,8 @@ pub struct Emission<'s> {
     pub light: Option<f64>,
     /// Relative 1 σ of the light, from the rate.
     pub light_sigma: f64,
+    /// Doppler and Lorentzian widths of the line itself.
+    pub widths: LineWidths,
     /// Profile as the instrument sees it.
     pub profile: Profile,
     /// Index of its feature.
@@ -82,14 +84,13 @@ impl<'s> Scene<'s> {
         for (index, spectrum) in spectra.iter().enumerate() {
             let decays = spectrum.decay_rates();
             for line in &spectrum.lines {
-                let profile =
-                    profile(spectrum, line, &decays, conditions, width).map_err(|cause| {
-                        AdviseError::Shape {
-                            species: spectrum.species,
-                            cause,
-                        }
-                    })?;
                 let nm = 1e7 / line.wavenumber_per_cm;
+                let of_shape = |cause| AdviseError::Shape {
+                    species: spectrum.species,
+                    cause,
+                };
+                let widths = widths(spectrum, line, &decays, conditions).map_err(of_shape)?;
+                let profile = seen(widths, width.at_nm(nm)).map_err(of_shape)?;
                 emissions.push(Emission {
                     spectrum: index,
                     line,
@@ -99,6 +100,7 @@ impl<'s> Scene<'s> {
                     light_sigma: line
                         .rate_relative_uncertainty
                         .unwrap_or(UNSTATED_RATE_SIGMA),
+                    widths,
                     profile,
                     feature: 0,
                 });
@@ -123,14 +125,13 @@ impl<'s> Scene<'s> {
     }
 }
 
-/// Doppler, natural and instrument width together.
-fn profile(
+/// Doppler and natural width of a line.
+fn widths(
     spectrum: &Spectrum,
     line: &Line,
     decays: &[f64],
     conditions: &Conditions,
-    width: SpectralWidth,
-) -> Result<Profile, crate::calc::shape::ShapeError> {
+) -> Result<LineWidths, ShapeError> {
     let decay = |level: &Option<std::sync::Arc<vocabulary::spectrum::Level>>| {
         level
             .as_ref()
@@ -140,13 +141,12 @@ fn profile(
     };
     let nm = 1e7 / line.wavenumber_per_cm;
     let natural = natural_fwhm_hz(decay(&line.upper), decay(&line.lower))?;
-    let widths = LineWidths::new(nm, conditions.gas_temperature_k, spectrum.mass_u, natural)?;
-    Profile::new(
-        widths,
-        Some(&Instrument::Gaussian {
-            fwhm_nm: width.at_nm(nm),
-        }),
-    )
+    LineWidths::new(nm, conditions.gas_temperature_k, spectrum.mass_u, natural)
+}
+
+/// A line through a Gaussian instrument.
+pub(super) fn seen(widths: LineWidths, fwhm_nm: f64) -> Result<Profile, ShapeError> {
+    Profile::new(widths, Some(&Instrument::Gaussian { fwhm_nm }))
 }
 
 fn features(emissions: &mut [Emission<'_>], width: SpectralWidth) -> Vec<Feature> {

@@ -1,6 +1,7 @@
 //! The command line: what was typed, the question, the answer, shown.
 
 mod assemble;
+mod describe;
 mod error;
 mod exit;
 mod forget;
@@ -10,6 +11,8 @@ mod options;
 mod progress;
 mod sources;
 mod table_file;
+mod line;
+mod vet;
 mod window;
 
 use clap::{Parser, Subcommand};
@@ -34,6 +37,7 @@ struct Cli {
 enum Command {
     Window(window::Arguments),
     Marks(marks::Arguments),
+    Vet(vet::Arguments),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -59,6 +63,7 @@ pub fn run() -> Result<Exit, CliError> {
     let outcome = match cli.command {
         Command::Window(arguments) => window::run(arguments, context)?,
         Command::Marks(arguments) => marks::run(&arguments, context)?,
+        Command::Vet(arguments) => vet::run(arguments, context)?,
         Command::Import(arguments) => import::run(&arguments, context)?,
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,

@@ -9,7 +9,7 @@ use vocabulary::light::{Medium, NumberDensity, SpectralRange, SpectralWidth, Tem
 
 use super::CliError;
 use super::progress::Bar;
-use crate::advise::{Conditions, EmissionModel};
+use crate::advise::{Conditions, EmissionModel, Verdict};
 use crate::catalogue::{Catalogue, Opened};
 use crate::show::Format;
 
@@ -239,6 +239,56 @@ pub fn amount_of(species: Species, amounts: &[(SpeciesRequest, f64)]) -> f64 {
         .find(|(request, _)| request.single().is_some())
         .or_else(|| matching().next())
         .map_or(1.0, |(_, amount)| *amount)
+}
+
+/// The least clear verdict that `--require` accepts.
+#[derive(clap::ValueEnum, Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Required {
+    Clear,
+    Tinged,
+    Blended,
+}
+
+impl Required {
+    /// Whether a verdict is good enough; `unrated` never is.
+    pub fn allows(self, worst: Verdict) -> bool {
+        let bound = match self {
+            Self::Clear => Verdict::Clear,
+            Self::Tinged => Verdict::Tinged,
+            Self::Blended => Verdict::Blended,
+        };
+        worst <= bound
+    }
+}
+
+/// Reads a column density, m⁻²: `1e16m-2`, `1e12cm-2`.
+pub fn column_density(text: &str) -> Result<f64, CliError> {
+    let typed = text.trim();
+    let bad = || {
+        CliError::Usage(format!(
+            "`{typed}`: a column density is a number above zero with its unit, such as 1e16m-2 or \
+             1e12cm-2"
+        ))
+    };
+    let units = [
+        ("cm-2", 1e4),
+        ("cm⁻²", 1e4),
+        ("/cm2", 1e4),
+        ("m-2", 1.0),
+        ("m⁻²", 1.0),
+        ("/m2", 1.0),
+    ];
+    let (number, size) = units
+        .iter()
+        .find_map(|(unit, size)| Some((typed.strip_suffix(unit)?, size)))
+        .ok_or_else(bad)?;
+    let value: f64 = number.trim().parse().map_err(|_| bad())?;
+    let per_m2 = value * size;
+    if per_m2.is_finite() && per_m2 > 0.0 {
+        Ok(per_m2)
+    } else {
+        Err(bad())
+    }
 }
 
 /// Reads `--medium`.

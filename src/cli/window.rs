@@ -1,13 +1,14 @@
 //! `window`: what lies in this window, rated, with interference warnings.
 
 use clap::Args;
-use serde_json::{Map, Value, json};
+use serde_json::json;
 use vocabulary::atom::SpeciesRequest;
 use vocabulary::light::{Air, Medium, TypedRange};
 
-use super::options::{CatalogueOptions, Checked, ConditionOptions, OutputOptions, medium};
-use super::{CliError, Exit, Outcome, assemble};
-use crate::advise::Verdict;
+use super::options::{
+    CatalogueOptions, Checked, ConditionOptions, OutputOptions, Required, medium,
+};
+use super::{CliError, Exit, Outcome, assemble, describe};
 use crate::advise::window::{self, Answer, Question, REACH_WIDTHS};
 use crate::catalogue::Catalogue;
 use crate::show::{self, Context, Wish};
@@ -46,24 +47,6 @@ pub struct Arguments {
     require: Option<Required>,
     #[command(flatten)]
     output: OutputOptions,
-}
-
-#[derive(clap::ValueEnum, Clone, Copy, Debug, PartialEq, Eq)]
-enum Required {
-    Clear,
-    Tinged,
-    Blended,
-}
-
-impl Required {
-    fn allows(self, worst: Verdict) -> bool {
-        let bound = match self {
-            Self::Clear => Verdict::Clear,
-            Self::Tinged => Verdict::Tinged,
-            Self::Blended => Verdict::Blended,
-        };
-        worst <= bound
-    }
 }
 
 pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
@@ -141,38 +124,9 @@ fn describe(
     question: &Question,
     checked: &Checked,
 ) -> Result<Context, CliError> {
-    let mut context = Context {
-        command: "window",
-        medium: question.medium.to_string(),
-        conditions: conditions(question, checked),
-        assumed: checked.assumed.clone(),
-        ..Context::default()
-    };
-    let used = |key: &str| {
-        answer
-            .lines
-            .iter()
-            .any(|l| &*l.line.position_source == key || l.line.rate_source.as_deref() == Some(key))
-    };
-    for (key, citation, licence) in catalogue.citations()? {
-        if used(&key) {
-            context.sources.insert(key, (citation, licence));
-        }
-    }
-    Ok(context)
-}
-
-fn conditions(question: &Question, checked: &Checked) -> Map<String, Value> {
-    let mut out = Map::new();
-    let mut put = |key: &str, value: Value| out.insert(key.to_owned(), value);
-    let model = format!("{:?}", question.conditions.model).to_lowercase();
-    put("model", json!(model));
-    put("electron_temperature_ev", json!(checked.te.ev()));
-    put(
-        "electron_density_per_m3",
-        json!(question.conditions.electron_density_per_m3),
-    );
-    put("gas_temperature_k", json!(checked.gas.kelvin()));
+    let lines = answer.lines.iter().map(|l| &l.line);
+    let mut context = describe::context("window", catalogue, question.medium, checked, lines)?;
+    let mut put = |key: &str, value| context.conditions.insert(key.to_owned(), value);
     put(
         "fwhm_nm",
         json!(question.width.at_nm(question.range.centre_vacuum_nm())),
@@ -181,15 +135,5 @@ fn conditions(question: &Question, checked: &Checked) -> Map<String, Value> {
         "range_vacuum_nm",
         json!([question.range.vacuum_low_nm, question.range.vacuum_high_nm]),
     );
-    put(
-        "air",
-        json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"),
-    );
-    let amounts: Map<String, Value> = checked
-        .amounts
-        .iter()
-        .map(|(species, a)| (species.to_string(), json!(a)))
-        .collect();
-    put("mix", Value::Object(amounts));
-    out
+    Ok(context)
 }

@@ -10,9 +10,11 @@ mod number;
 mod sheet;
 mod table;
 pub mod text;
+mod vet;
 mod window;
 
 pub use listing::{forgotten, imported, sources};
 pub use marks::marks;
 pub use sheet::{Align, Column, Context, Format, Sheet};
+pub use vet::{WORTH_A_ROW, vet};
 pub use window::{Wish, window};

@@ -12,7 +12,7 @@ use super::line::{
 use super::number::{percent, percent_in_table};
 use super::sheet::{Align, Column, Context, Sheet};
 use crate::advise::Verdict;
-use crate::advise::window::{Answer, WindowFeature, WindowLine};
+use crate::advise::window::{Answer, Unjudged, WindowFeature, WindowLine};
 
 /// Columns; the heading of the first names the medium where it is one for all rows.
 const COLUMNS: [Column; 9] = [
@@ -261,7 +261,7 @@ fn worst_cell(feature: &WindowFeature) -> String {
 }
 
 /// Sources of position and rate, each once.
-fn sources_cell<'l>(lines: impl Iterator<Item = &'l Line>) -> String {
+pub(super) fn sources_cell<'l>(lines: impl Iterator<Item = &'l Line>) -> String {
     let mut keys: Vec<&str> = Vec::new();
     for line in lines {
         for key in [Some(&*line.position_source), line.rate_source.as_deref()]
@@ -296,7 +296,7 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
         }
     }
     join_like(&mut notes);
-    notes.extend(unjudged_notes(answer));
+    notes.extend(unjudged_notes(&answer.unrated));
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
@@ -305,18 +305,7 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
          weighted; Doppler, natural and Gaussian instrument widths (Voigt)."
             .into(),
     );
-    if !answer.lower_bounds.is_empty() {
-        let names: Vec<String> = answer
-            .lower_bounds
-            .iter()
-            .map(ToString::to_string)
-            .collect();
-        notes.push(format!(
-            "Levels are missing that could raise the partition function by over 1 % (it is a lower \
-             bound): {}.",
-            names.join(", ")
-        ));
-    }
+    notes.extend(lower_bound_note(&answer.lower_bounds));
     if answer.unstated_rates {
         notes.push("±? marks rates whose source states no uncertainty; 50 % is taken.".into());
     }
@@ -327,18 +316,30 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
     notes
 }
 
-fn unjudged_notes(answer: &Answer) -> Vec<String> {
+/// Species whose partition function may be too small.
+pub(super) fn lower_bound_note(species: &[vocabulary::atom::Species]) -> Option<String> {
+    let names: Vec<String> = species.iter().map(ToString::to_string).collect();
+    (!names.is_empty()).then(|| {
+        format!(
+            "Levels are missing that could raise the partition function by over 1 % (it is a lower \
+             bound): {}.",
+            names.join(", ")
+        )
+    })
+}
+
+/// What cannot be judged, and why.
+pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
     let mut notes = Vec::new();
     let listed = |decides: bool, reason: &str| {
-        let of: Vec<&str> = answer
-            .unrated
+        let of: Vec<&str> = unrated
             .iter()
             .filter(|u| u.decides == decides && u.reason == reason)
             .map(|u| u.species.as_str())
             .collect();
         stages(&of)
     };
-    let mut reasons: Vec<&str> = answer.unrated.iter().map(|u| u.reason.as_str()).collect();
+    let mut reasons: Vec<&str> = unrated.iter().map(|u| u.reason.as_str()).collect();
     reasons.sort_unstable();
     reasons.dedup();
     for reason in &reasons {
@@ -443,15 +444,18 @@ fn object(
             feature_object(feature, &components)
         })
         .collect();
-    let unrated: Vec<Value> = answer
-        .unrated
-        .iter()
-        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides}))
-        .collect();
     object.insert("lines".into(), Value::Array(lines));
     object.insert("features".into(), Value::Array(features));
-    object.insert("unrated".into(), Value::Array(unrated));
+    object.insert("unrated".into(), unrated_value(&answer.unrated));
     object
+}
+
+/// The stable keys of what cannot be judged.
+pub(super) fn unrated_value(unrated: &[Unjudged]) -> Value {
+    unrated
+        .iter()
+        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides}))
+        .collect()
 }
 
 fn feature_object(feature: &WindowFeature, components: &[Option<usize>]) -> Value {

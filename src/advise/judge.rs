@@ -1,0 +1,363 @@
+//! Judging features: what others put where a feature is, and what nobody can know.
+
+use vocabulary::atom::Species;
+use vocabulary::light::{Air, Medium};
+
+use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
+use super::error::AdviseError;
+use super::position::placed;
+use super::scene::{Emission, REACH_WIDTHS, Scene};
+use super::spectrum::Spectrum;
+use super::verdict::{Interference, VerdictRange, Worst};
+use super::window::{Unjudged, WindowFeature};
+
+/// Judges the features of a scene.
+pub(super) struct Judge<'a, 's> {
+    scene: &'a Scene<'s>,
+    coverage: Vec<Coverage>,
+    /// Species typed of which nothing is held.
+    nothing_held: bool,
+}
+
+impl<'a, 's> Judge<'a, 's> {
+    /// `centre_nm` (vacuum) is where the scope of the sources is looked up.
+    pub(super) fn new(scene: &'a Scene<'s>, centre_nm: f64, nothing_held: bool) -> Self {
+        let coverage = (0..scene.spectra.len())
+            .map(|s| Coverage::at(&scene.spectra[s], &scene.emitters[s], centre_nm))
+            .collect();
+        Self {
+            scene,
+            coverage,
+            nothing_held,
+        }
+    }
+
+    /// Whether a species without knowledge spoils the verdicts of others: it does where its stage
+    /// was named, and where no stage of its element is known here.
+    pub(super) fn decides(&self, spectrum: usize) -> bool {
+        let this = &self.scene.spectra[spectrum];
+        let known = |c: &Coverage| !matches!(c, Coverage::Nothing { .. });
+        if known(&self.coverage[spectrum]) || this.amount == 0.0 {
+            return false;
+        }
+        let same_element = |s: &Spectrum| {
+            s.species.atomic_number == this.species.atomic_number
+                && s.species.isotope == this.species.isotope
+        };
+        let element_known = self
+            .scene
+            .spectra
+            .iter()
+            .zip(&self.coverage)
+            .any(|(s, c)| same_element(s) && known(c));
+        this.named || !element_known
+    }
+
+    pub(super) fn complete_down_to(&self) -> Vec<(Species, f64)> {
+        let known = |(spectrum, coverage): (&Spectrum, &Coverage)| match *coverage {
+            Coverage::DownTo { fraction, .. } => Some((spectrum.species, fraction)),
+            Coverage::Nothing { .. } => None,
+        };
+        self.scene
+            .spectra
+            .iter()
+            .zip(&self.coverage)
+            .filter_map(known)
+            .collect()
+    }
+
+    pub(super) fn unjudged(&self, not_held: &[String]) -> Vec<Unjudged> {
+        let mut out: Vec<Unjudged> = not_held
+            .iter()
+            .map(|typed| Unjudged {
+                species: typed.clone(),
+                reason: "nothing is held of it".into(),
+                decides: true,
+            })
+            .collect();
+        for (index, coverage) in self.coverage.iter().enumerate() {
+            let Coverage::Nothing { ground_term } = *coverage else {
+                continue;
+            };
+            let reason = if ground_term {
+                "only lines from its ground term are held here"
+            } else {
+                "no source claims to cover it here"
+            };
+            out.push(Unjudged {
+                species: self.scene.spectra[index].species.to_string(),
+                reason: reason.into(),
+                decides: self.decides(index),
+            });
+        }
+        out
+    }
+
+    pub(super) fn feature(
+        &self,
+        index: usize,
+        total: f64,
+        medium: Medium,
+        air: &Air,
+    ) -> Result<WindowFeature, AdviseError> {
+        let feature = &self.scene.features[index];
+        let sigma = feature
+            .components
+            .iter()
+            .map(|&c| self.scene.emissions[c].line.wavenumber_uncertainty_per_cm)
+            .fold(f64::INFINITY, f64::min);
+        let (rate_per_s, rate_relative_uncertainty) = self.mean_rate(index);
+        let mut out = WindowFeature {
+            species: self.scene.spectra[feature.spectrum].species,
+            placed: placed(1e7 / feature.nm, sigma, medium, air)?,
+            components: Vec::new(),
+            rate_per_s,
+            rate_relative_uncertainty,
+            light_fraction: feature.light.filter(|_| total > 0.0).map(|l| l / total),
+            interference: None,
+            own_species_fraction: None,
+            verdict: VerdictRange::UNRATED,
+            remarks: Vec::new(),
+            worst: None,
+            worst_placed: None,
+            unlisted_chance: 0.0,
+        };
+        self.interfere(index, &mut out);
+        out.worst_placed = out
+            .worst
+            .as_ref()
+            .map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air))
+            .transpose()?;
+        Ok(out)
+    }
+
+    /// Σ g A / Σ g over the rated components, each upper level counted once.
+    fn mean_rate(&self, index: usize) -> (Option<f64>, Option<f64>) {
+        let mut uppers: Vec<(u32, f64)> = Vec::new();
+        let (mut sum, mut variance, mut stated) = (0.0, 0.0, true);
+        for &component in &self.scene.features[index].components {
+            let line = self.scene.emissions[component].line;
+            let Some((rate, upper)) = line.rate_per_s.zip(line.upper.as_ref()) else {
+                continue;
+            };
+            let Some(g) = upper.g else { continue };
+            if !uppers.iter().any(|(number, _)| *number == upper.number) {
+                uppers.push((upper.number, g));
+            }
+            sum += g * rate;
+            match line.rate_relative_uncertainty {
+                Some(relative) => variance += (g * rate * relative).powi(2),
+                None => stated = false,
+            }
+        }
+        let weight: f64 = uppers.iter().map(|(_, g)| g).sum();
+        if weight <= 0.0 || sum <= 0.0 {
+            return (None, None);
+        }
+        (Some(sum / weight), stated.then(|| variance.sqrt() / sum))
+    }
+
+    /// Sums what others put where the target is, and what nobody can know.
+    fn interfere(&self, index: usize, out: &mut WindowFeature) {
+        let target = &self.scene.features[index];
+        let Some(signal) = target.signal.filter(|s| *s > 0.0) else {
+            out.remarks.push("its own rate is not known".into());
+            return;
+        };
+        let width_nm = self.scene.width.at_nm(target.nm);
+        let mut sum = Sum::default();
+        for part in self.parts(index, signal) {
+            if part.own {
+                sum.own += part.fraction;
+                continue;
+            }
+            sum.add(part.fraction, part.relative_sigma);
+            if part.fraction > out.worst.as_ref().map_or(0.0, |w| w.fraction) {
+                let emission = &self.scene.emissions[part.emission];
+                out.worst = Some(Worst {
+                    species: self.scene.spectra[emission.spectrum].species,
+                    vacuum_nm: emission.nm,
+                    fraction: part.fraction,
+                    wing: part.offset_nm.abs() > 2.0 * width_nm,
+                });
+            }
+        }
+        let unrated_near = self.unrated_near(index, width_nm);
+        out.own_species_fraction = Some(sum.own);
+        let interference = sum.interference(target.signal_sigma);
+        out.interference = Some(interference);
+        out.verdict = interference.verdict();
+        self.unknowns(index, &unrated_near, out);
+    }
+
+    /// What each rated line outside a feature adds to its signal, lines by wavelength.
+    pub(super) fn parts(&self, index: usize, signal: f64) -> Vec<Part> {
+        let target = &self.scene.features[index];
+        let width_nm = self.scene.width.at_nm(target.nm);
+        let around = self.scene.around(target.nm, REACH_WIDTHS * width_nm);
+        let part = |i: usize| {
+            let emission = &self.scene.emissions[i];
+            let offset_nm = emission.nm - target.nm;
+            let light = emission.light.filter(|_| emission.feature != index)?;
+            Some(Part {
+                emission: i,
+                offset_nm,
+                fraction: light * emission.profile.density(offset_nm) / signal,
+                relative_sigma: emission
+                    .light_sigma
+                    .hypot(self.shift_sigma(index, i, width_nm)),
+                own: emission.spectrum == target.spectrum,
+            })
+        };
+        around.filter_map(part).collect()
+    }
+
+    /// Lines of other species that are present, within one width of a feature, without a rate.
+    fn unrated_near(&self, index: usize, width_nm: f64) -> Vec<&Emission<'s>> {
+        let target = &self.scene.features[index];
+        self.scene
+            .around(target.nm, width_nm)
+            .map(|i| &self.scene.emissions[i])
+            .filter(|e| {
+                e.light.is_none()
+                    && e.spectrum != target.spectrum
+                    && self.scene.spectra[e.spectrum].amount > 0.0
+            })
+            .collect()
+    }
+
+    /// Relative 1 σ of an overlap from the uncertainty of the distance: half the difference of the
+    /// overlaps one σ nearer and farther, over the overlap.
+    fn shift_sigma(&self, target: usize, other: usize, width_nm: f64) -> f64 {
+        let target = &self.scene.features[target];
+        let other = &self.scene.emissions[other];
+        let own = target
+            .components
+            .iter()
+            .map(|&c| self.scene.emissions[c].sigma_nm)
+            .fold(f64::INFINITY, f64::min);
+        let sigma = own.hypot(other.sigma_nm);
+        if sigma < 1e-3 * width_nm {
+            return 0.0;
+        }
+        let offset = other.nm - target.nm;
+        let [near, at, far] =
+            [offset - sigma, offset, offset + sigma].map(|o| other.profile.density(o));
+        if at > 0.0 {
+            (near - far).abs() / (2.0 * at)
+        } else {
+            0.0
+        }
+    }
+
+    /// What is missing makes the verdict `unrated`, or is said beside it.
+    fn unknowns(&self, index: usize, unrated_near: &[&Emission<'_>], out: &mut WindowFeature) {
+        let target = &self.scene.features[index];
+        if !unrated_near.is_empty() {
+            let names: Vec<String> = unrated_near
+                .iter()
+                .map(|e| format!("{} {:.3} nm", self.scene.spectra[e.spectrum].species, e.nm))
+                .collect();
+            out.verdict = VerdictRange::UNRATED;
+            out.remarks.push(format!(
+                "no rate is known for {} (vacuum)",
+                names.join(", ")
+            ));
+        }
+        let light = target.light.unwrap_or(0.0);
+        let width_nm = self.scene.width.at_nm(target.nm);
+        let mut expected = 0.0;
+        let mut likeliest = (0.0, target.spectrum);
+        let mut blind: Vec<Species> = Vec::new();
+        for (s, coverage) in self.coverage.iter().enumerate() {
+            if s == target.spectrum || self.scene.spectra[s].amount == 0.0 {
+                continue;
+            }
+            match coverage.expected_unlisted(light, width_nm) {
+                Some(number) => {
+                    expected += number;
+                    if number > likeliest.0 {
+                        likeliest = (number, s);
+                    }
+                }
+                None if self.decides(s) => {
+                    out.verdict = VerdictRange::UNRATED;
+                    blind.push(self.scene.spectra[s].species);
+                }
+                None => {}
+            }
+        }
+        if let Some(first) = blind.first() {
+            let more = blind.len() - 1;
+            let others = if more > 0 {
+                format!(" (nor {more} more)")
+            } else {
+                String::new()
+            };
+            out.remarks
+                .push(format!("{first} cannot be judged here{others}"));
+        }
+        if self.nothing_held {
+            out.verdict = VerdictRange::UNRATED;
+            out.remarks
+                .push("nothing is held of a species that was asked for".into());
+        }
+        let species = self.scene.spectra[likeliest.1].species;
+        self.chance(1.0 - (-expected).exp(), species, out);
+    }
+
+    fn chance(&self, chance: f64, likeliest: Species, out: &mut WindowFeature) {
+        out.unlisted_chance = chance;
+        let said = format!(
+            "{:.0} % chance that an unlisted line interferes, most likely of {likeliest}",
+            100.0 * chance
+        );
+        if chance > CHANCE_UNRATED {
+            out.verdict = VerdictRange::UNRATED;
+            out.remarks.push(said);
+        } else if chance >= CHANCE_SAID {
+            out.remarks.push(said);
+        }
+    }
+}
+
+/// What one line adds to the signal of a feature.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Part {
+    /// Index of the line in the scene.
+    pub emission: usize,
+    /// Its position minus that of the feature, nm.
+    pub offset_nm: f64,
+    /// Its light at the feature over the light of the feature.
+    pub fraction: f64,
+    /// Relative 1 σ of its light there.
+    pub relative_sigma: f64,
+    /// It is of the species of the feature.
+    pub own: bool,
+}
+
+/// Interference in the making.
+#[derive(Default)]
+pub(super) struct Sum {
+    /// Fraction of other species.
+    pub other: f64,
+    variance: f64,
+    /// Fraction of other features of the same species.
+    pub own: f64,
+}
+
+impl Sum {
+    pub(super) fn add(&mut self, part: f64, relative_uncertainty: f64) {
+        self.other += part;
+        self.variance += (part * relative_uncertainty).powi(2);
+    }
+
+    pub(super) fn interference(&self, target_sigma: f64) -> Interference {
+        let own = if self.other > 0.0 {
+            self.variance.sqrt() / self.other
+        } else {
+            0.0
+        };
+        Interference::new(self.other, own.hypot(target_sigma))
+    }
+}
