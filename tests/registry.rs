@@ -72,6 +72,7 @@ fn every_json_key_is_documented() {
     let mut found = BTreeSet::new();
     for command in [
         "lineclear window 588..589.7nm --of Na,He",
+        "lineclear vet \"Al I 308.215nm\" --among V --fwhm 0.02nm",
         "lineclear sources",
         "lineclear import data/morton2003 --dry-run",
     ] {

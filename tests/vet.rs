@@ -1,6 +1,8 @@
 //! `vet` against the world outside: spectral overlaps that a standard method or papers name, and
 //! properties that hold whatever the data are.
 
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
+
 mod common;
 
 use common::{json, run};
@@ -90,7 +92,10 @@ fn published_overlaps_are_found_with_the_right_interferer() {
         );
         assert_eq!(there, &listed[0], "{command}: it is the worst");
         // Weaker ones matter where there is more of the interferer than of the target.
-        assert!(least < 0.01 || answer["verdict_range"] != "clear", "{command}");
+        assert!(
+            least < 0.01 || answer["verdict_range"] != "clear",
+            "{command}"
+        );
     }
     assert!(found >= 15, "only {found} overlaps were found");
 }

@@ -136,13 +136,13 @@ pub fn answer(
 ) -> Result<Answer, AdviseError> {
     let air = Air::standard();
     let scene = Scene::new(spectra, &question.conditions, question.width)?;
-    let index = find(&scene, &question.wanted, question.medium, &air)?;
+    let index = find(&scene, &question.wanted, question.medium, air)?;
     let nothing_held = !question.not_held.is_empty();
     let judge = Judge::new(&scene, scene.features[index].nm, nothing_held);
-    let feature = judge.feature(index, 0.0, question.medium, &air)?;
-    let mut interferers = first_order(&scene, &judge, index, question.medium, &air)?;
+    let feature = judge.feature(index, 0.0, question.medium, air)?;
+    let mut interferers = first_order(&scene, &judge, index, question.medium, air)?;
     for order in orders {
-        interferers.extend(higher_order(&scene, index, order, question, &air)?);
+        interferers.extend(higher_order(&scene, index, order, question, air)?);
     }
     interferers.sort_by(|a, b| b.fraction.total_cmp(&a.fraction));
     let interference = scene.features[index]
@@ -153,11 +153,11 @@ pub fn answer(
         Some(i) if feature.verdict != VerdictRange::UNRATED => i.verdict(),
         _ => VerdictRange::UNRATED,
     };
-    let (alternatives, judged_alternatives) = alternatives(&scene, index, question, &air)?;
+    let (alternatives, judged_alternatives) = alternatives(&scene, index, question, air)?;
     let emission = &scene.emissions[strongest(&scene, index)];
     Ok(Answer {
         line: emission.line.clone(),
-        placed: place(emission.line, question.medium, &air)?,
+        placed: place(emission.line, question.medium, air)?,
         components: scene.features[index].components.len(),
         clear_at_resolving_power: clear_at_resolving_power(&scene, index)?,
         self_absorption: self_absorption(&scene, index, question.column_per_m2)?,

@@ -9,7 +9,7 @@ use crate::advise::Wanted;
 /// Reads `587.56nm`, `He I@587.56nm`, `"He I 587.56nm"`, `He@587.56nm`.
 pub fn wanted(text: &str, medium: Medium) -> Result<Wanted, CliError> {
     let (request, position) = parts(text)?;
-    let wavenumber = position.wavenumber_per_cm(medium, &Air::standard())?;
+    let wavenumber = position.wavenumber_per_cm(medium, Air::standard())?;
     Ok(Wanted {
         request,
         vacuum_nm: 1e7 / wavenumber,
