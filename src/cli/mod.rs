@@ -6,12 +6,12 @@ mod error;
 mod exit;
 mod forget;
 mod import;
+mod line;
 mod marks;
 mod options;
 mod progress;
 mod sources;
 mod table_file;
-mod line;
 mod vet;
 mod window;
 
