@@ -6,6 +6,7 @@ mod error;
 mod feature;
 mod judge;
 pub mod marks;
+pub mod pairs;
 mod position;
 mod resolving;
 mod scene;

@@ -54,6 +54,9 @@ pub enum CliError {
     /// A table that the user handed in.
     #[error(transparent)]
     TableFile(#[from] super::table_file::TableFileError),
+    /// No temperature from measured lines.
+    #[error(transparent)]
+    Plot(#[from] crate::advise::pairs::PlotError),
     /// A dispersion that cannot be fitted.
     #[error(transparent)]
     Dispersion(#[from] crate::advise::marks::DispersionError),

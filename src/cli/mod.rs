@@ -9,6 +9,7 @@ mod import;
 mod line;
 mod marks;
 mod options;
+mod pairs;
 mod progress;
 mod sources;
 mod table_file;
@@ -38,6 +39,7 @@ enum Command {
     Window(window::Arguments),
     Marks(marks::Arguments),
     Vet(vet::Arguments),
+    Pairs(Box<pairs::Arguments>),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -62,6 +64,7 @@ pub fn run() -> Result<Exit, CliError> {
     let context = &cli.catalogue;
     let outcome = match cli.command {
         Command::Window(arguments) => window::run(arguments, context)?,
+        Command::Pairs(arguments) => pairs::run(&arguments, context)?,
         Command::Marks(arguments) => marks::run(&arguments, context)?,
         Command::Vet(arguments) => vet::run(arguments, context)?,
         Command::Import(arguments) => import::run(&arguments, context)?,

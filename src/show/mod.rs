@@ -7,6 +7,7 @@ mod listing;
 mod markdown;
 mod marks;
 mod number;
+mod pairs;
 mod sheet;
 mod table;
 pub mod text;
@@ -15,6 +16,7 @@ mod window;
 
 pub use listing::{forgotten, imported, sources};
 pub use marks::marks;
+pub use pairs::{Measured, pairs, plot};
 pub use sheet::{Align, Column, Context, Format, Sheet};
 pub use vet::{WORTH_A_ROW, vet};
 pub use window::{Wish, window};
