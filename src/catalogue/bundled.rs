@@ -149,6 +149,7 @@ fn replace(
     progress: &mut dyn FnMut(u64, u64),
 ) -> Result<()> {
     let path = catalogue.path.clone();
+    catalogue.keys.take();
     let written = failed(&path, "written");
     let transaction = catalogue
         .connection

@@ -57,6 +57,7 @@ impl Catalogue {
         dry_run: bool,
     ) -> Result<ImportSummary> {
         let path = self.path.clone();
+        self.keys.take();
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)

@@ -43,13 +43,18 @@ impl Catalogue {
     }
 
     /// Keys of all sources by their number.
-    fn source_keys(&self) -> rusqlite::Result<HashMap<i64, Arc<str>>> {
-        self.connection
+    fn source_keys(&self) -> rusqlite::Result<&HashMap<i64, Arc<str>>> {
+        if let Some(keys) = self.keys.get() {
+            return Ok(keys);
+        }
+        let keys = self
+            .connection
             .prepare_cached("SELECT id, key FROM source")?
             .query_map([], |row| {
                 Ok((row.get(0)?, Arc::from(row.get_ref(1)?.as_str()?)))
             })?
-            .collect()
+            .collect::<rusqlite::Result<_>>()?;
+        Ok(self.keys.get_or_init(|| keys))
     }
 
     /// All levels of a species, by energy.
@@ -67,7 +72,7 @@ impl Catalogue {
                       ORDER BY number",
                 )?
                 .query_map([species.code()], |row| {
-                    level(row, species, &keys).map(Arc::new)
+                    level(row, species, keys).map(Arc::new)
                 })?
                 .collect()
         };
@@ -95,7 +100,7 @@ impl Catalogue {
                       ORDER BY wavenumber_per_cm, number",
                 )?
                 .query_map((species.code(), from_per_cm, to_per_cm), |row| {
-                    line(row, species, levels, &keys)
+                    line(row, species, levels, keys)
                 })?
                 .collect()
         };

@@ -74,6 +74,7 @@ impl Catalogue {
     /// No such source; a catalogue that cannot be written.
     pub fn forget(&mut self, key: &str) -> Result<u64> {
         let path = self.path.clone();
+        self.keys.take();
         let written = failed(&path, "written");
         let transaction = self
             .connection

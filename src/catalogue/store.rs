@@ -1,6 +1,9 @@
 //! Opening a catalogue file, and what its connection is set to.
 
+use std::cell::OnceCell;
+use std::collections::HashMap;
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 use std::time::Duration;
 
 use rusqlite::{Connection, OpenFlags};
@@ -22,6 +25,8 @@ const PATIENCE: Duration = Duration::from_secs(10);
 pub struct Catalogue {
     pub(super) connection: Connection,
     pub(super) path: PathBuf,
+    /// Keys of the sources by their number, read once; emptied by every write.
+    pub(super) keys: OnceCell<HashMap<i64, Arc<str>>>,
 }
 
 /// How a catalogue came to be open.
@@ -42,7 +47,11 @@ impl Catalogue {
     pub fn empty_in_memory() -> Result<Self> {
         let path = PathBuf::from("(memory)");
         let connection = Connection::open_in_memory().map_err(failed(&path, "opened"))?;
-        let mut catalogue = Self { connection, path };
+        let mut catalogue = Self {
+            connection,
+            path,
+            keys: OnceCell::new(),
+        };
         catalogue.migrate()?;
         Ok(catalogue)
     }
@@ -100,6 +109,7 @@ impl Catalogue {
         let mut catalogue = Self {
             connection,
             path: path.to_owned(),
+            keys: OnceCell::new(),
         };
         catalogue.check_kind()?;
         catalogue.migrate()?;
