@@ -12,6 +12,7 @@ use sha2::{Digest, Sha256};
 use super::derive::{self, Labels};
 use super::error::{CatalogueError, Result};
 use super::files::{hex, source_checksum};
+use super::gap_fill;
 use super::ingest::{self, Incoming};
 use super::sources::retract;
 use super::store::{Catalogue, failed};
@@ -50,7 +51,8 @@ fn folders() -> BTreeSet<String> {
         .collect()
 }
 
-/// SHA-256 over names and contents of all bundled files: names the whole set.
+/// SHA-256 over names and contents of all bundled files and the calculator's revision: names the
+/// whole set.
 fn bundle_checksum() -> String {
     let mut names: Vec<_> = Tables::iter().collect();
     names.sort();
@@ -61,6 +63,7 @@ fn bundle_checksum() -> String {
             hash.update(file.metadata.sha256_hash());
         }
     }
+    hash.update(gap_fill::REVISION);
     hex(&hash.finalize())
 }
 
@@ -130,7 +133,7 @@ pub(super) fn refresh(
     };
     let stale: Vec<i64> = held
         .iter()
-        .filter(|h| !ours.iter().any(|b| same(h, b)))
+        .filter(|h| !gap_fill::is_ours(&h.1) && !ours.iter().any(|b| same(h, b)))
         .map(|h| h.0)
         .collect();
     let fresh: Vec<Bundled> = ours
@@ -167,6 +170,7 @@ fn replace(
         progress(done as u64, 2 * fresh.len() as u64);
         species.extend(store(&transaction, &path, source, &mut labels)?);
     }
+    species.extend(gap_fill::install(&transaction).map_err(&written)?);
     let total = 2 * species.len() as u64;
     for (done, &code) in species.iter().enumerate() {
         progress((species.len() + done) as u64, total);

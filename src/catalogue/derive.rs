@@ -9,6 +9,7 @@ use vocabulary::atom::Species;
 use vocabulary::spectrum::{LineKind, PositionOrigin, RateOrigin};
 
 use super::error::{CatalogueError, Result};
+use super::gap_fill;
 use super::ingest::{kind_number, rate_origin_number};
 use super::reconcile::{
     self, Derived, Label, LevelReport, LineReport, RankedSource, SourceKind, SourceReports,
@@ -90,6 +91,8 @@ pub(super) fn conclude(
         what: format!("species code {code} names no species"),
     })?;
     let mut reports = read(connection, code, labels).map_err(failed(path, "read"))?;
+    let computed = gap_fill::Sources::held(connection).map_err(failed(path, "read"))?;
+    reports.extend(computed.fill(species));
     reconcile::rank(&mut reports);
     let own_rows = reports
         .iter()

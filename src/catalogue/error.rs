@@ -54,6 +54,15 @@ pub enum CatalogueError {
         /// The key asked for.
         key: String,
     },
+    /// A source of the calculator.
+    #[error(
+        "`{key}`: its values are computed from the tables that are held and fill only what these \
+         leave open; forget a table instead"
+    )]
+    Computed {
+        /// The key asked for.
+        key: String,
+    },
     /// Another table is held under this key.
     #[error(
         "`{key}`: a source of this key with other content is held; `lineclear forget {key}` first, \

@@ -4,6 +4,7 @@ mod bundled;
 mod derive;
 mod error;
 mod files;
+mod gap_fill;
 mod ingest;
 mod query;
 pub mod reconcile;

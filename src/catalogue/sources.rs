@@ -4,6 +4,7 @@ use rusqlite::{OptionalExtension, TransactionBehavior};
 
 use super::derive::{self, Labels};
 use super::error::{CatalogueError, Result};
+use super::gap_fill;
 use super::store::{Catalogue, failed};
 
 /// A source as listed.
@@ -71,8 +72,13 @@ impl Catalogue {
     /// Takes a source out and leaves what would be there had it never come in.
     ///
     /// # Errors
-    /// No such source; a catalogue that cannot be written.
+    /// No such source, a source of the calculator; a catalogue that cannot be written.
     pub fn forget(&mut self, key: &str) -> Result<u64> {
+        if gap_fill::is_ours(key) {
+            return Err(CatalogueError::Computed {
+                key: key.to_owned(),
+            });
+        }
         let path = self.path.clone();
         self.keys.take();
         let written = failed(&path, "written");
@@ -101,7 +107,9 @@ impl Catalogue {
             .execute(
                 "DELETE FROM label
                   WHERE id NOT IN (SELECT configuration FROM level_report WHERE configuration NOTNULL)
-                    AND id NOT IN (SELECT term FROM level_report WHERE term NOTNULL)",
+                    AND id NOT IN (SELECT term FROM level_report WHERE term NOTNULL)
+                    AND id NOT IN (SELECT configuration FROM level WHERE configuration NOTNULL)
+                    AND id NOT IN (SELECT term FROM level WHERE term NOTNULL)",
                 [],
             )
             .map_err(&written)?;
