@@ -29,7 +29,7 @@ fn bundled() -> MutexGuard<'static, Catalogue> {
     CATALOGUE
         .get_or_init(|| Mutex::new(Catalogue::bundled_in_memory(&mut |_, _| {}).unwrap()))
         .lock()
-        .unwrap()
+        .unwrap_or_else(std::sync::PoisonError::into_inner)
 }
 
 fn all_lines(catalogue: &Catalogue, species: Species) -> Vec<Line> {
@@ -74,7 +74,8 @@ fn mean_per_cm(lines: &[Line]) -> f64 {
 }
 
 fn air_nm(wavenumber_per_cm: f64) -> f64 {
-    Air::standard().to_air_nm(1e7 / wavenumber_per_cm).unwrap()
+    let air = Air::standard().to_air_nm(1e7 / wavenumber_per_cm);
+    air.unwrap().nm
 }
 
 #[test]
@@ -176,7 +177,7 @@ fn the_catalogue_gives_what_the_calculator_gives() {
         }
     }
     assert!(lines_compared > 21_000, "{lines_compared}");
-    assert!(from_tables > 80, "{from_tables}");
+    assert!(from_tables > 70, "{from_tables}");
 }
 
 #[test]
@@ -207,7 +208,7 @@ fn import_folder(catalogue: &mut Catalogue, folder: &str) {
         .join(folder);
     SourceFiles::find(&path)
         .unwrap()
-        .import(catalogue, &importers::ReadOptions::default(), false)
+        .import(catalogue, 0, false)
         .unwrap();
 }
 
