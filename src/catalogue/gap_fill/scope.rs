@@ -2,7 +2,7 @@
 //!
 //! Every line up to the highest n is held. Those that are missing come from higher n and lie, for each shell m that
 //! they end on, between the limit of the series and its line from the highest n. Where they are too weak to
-//! count, below 1e-3 of the strongest line of that part of the spectrum in an arc of 1 eV, the claim is
+//! count, below 5e-4 of the strongest line of that part of the spectrum in an arc of 1 eV, the claim is
 //! `computed`. Elsewhere (the crowded ends of the Balmer series of H, D and T, and the like) it is `strong` over
 //! the series.
 
@@ -20,7 +20,7 @@ const SHORTEST: f64 = 1e-3;
 const MARGIN: f64 = 3e-4;
 /// Light of a missing line, as a part of the strongest line of its part of the spectrum, below which it does
 /// not count.
-const NEGLIGIBLE: f64 = 1e-3;
+const NEGLIGIBLE: f64 = 5e-4;
 /// Temperature of an arc, as energy, cm⁻¹: 1 eV.
 const ARC_PER_CM: f64 = PER_CM_PER_EV;
 /// Ends of the parts of the spectrum that are judged apart, nm: ultraviolet, the range of spectrometers, infrared.
