@@ -5,5 +5,6 @@ pub mod coulomb;
 pub mod filter;
 pub mod one_electron;
 pub mod plasma;
+pub mod prior;
 pub mod series;
 pub mod shape;
