@@ -1,16 +1,18 @@
 //! The prior for unknown rates, learned anew from the bundled tables and checked on the ions that
 //! it was not learned from.
 
-#[path = "prior/learn.rs"]
-mod learn;
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
+
 #[path = "common/mod.rs"]
 mod common;
+#[path = "prior/learn.rs"]
+mod learn;
 
 use std::collections::BTreeMap;
 
 use learn::{Rated, coverage, learn, quantile, rated_lines, teaches};
-use lineclear::vocabulary::atom::Species;
 use lineclear::calc::prior::{GROUPS, Group, TransitionKind, chance_above, group};
+use lineclear::vocabulary::atom::Species;
 
 /// The group of a rated line, as an index into `GROUPS`.
 fn index_of(rated: &Rated) -> usize {
@@ -51,13 +53,16 @@ fn table_follows_from_the_bundled_rates() {
             .sum();
         let shift = (square / lines.len() as f64).sqrt();
         // A tenth of σ moves the chance at 2 σ by half a per cent: new tables may do as much.
-        let near = shift <= 0.1 * fresh.sigma_dex
-            && (held.sigma_dex / fresh.sigma_dex - 1.0).abs() <= 0.1;
+        let near =
+            shift <= 0.1 * fresh.sigma_dex && (held.sigma_dex / fresh.sigma_dex - 1.0).abs() <= 0.1;
         if !near {
             stale.push(format!("{:?} {:?}: {shift:.2} dex", held.kind, held.class));
         }
     }
-    assert!(stale.is_empty(), "learn src/calc/prior/table.rs anew: {stale:?}");
+    assert!(
+        stale.is_empty(),
+        "learn src/calc/prior/table.rs anew: {stale:?}"
+    );
 }
 
 #[test]
@@ -101,14 +106,19 @@ fn ions_that_teach_are_half_of_all() {
     let lines = rated_lines(common::catalogue());
     let ions = |teaching: bool| {
         let of = lines.iter().filter(|l| teaches(l.species) == teaching);
-        of.map(|l| l.species).collect::<std::collections::BTreeSet<_>>()
+        of.map(|l| l.species)
+            .collect::<std::collections::BTreeSet<_>>()
     };
     let (teaching, checking) = (ions(true), ions(false));
     let names = |ions: &std::collections::BTreeSet<Species>| {
         let names: Vec<String> = ions.iter().map(ToString::to_string).collect();
         names.join(", ")
     };
-    println!("learned on {}\nchecked on {}", names(&teaching), names(&checking));
+    println!(
+        "learned on {}\nchecked on {}",
+        names(&teaching),
+        names(&checking)
+    );
     let part = teaching.len() as f64 / (teaching.len() + checking.len()) as f64;
     assert!((0.4..=0.6).contains(&part), "{part}"); // half, as far as ions with rates allow
 }

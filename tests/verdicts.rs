@@ -26,8 +26,8 @@ fn level(species: Species, number: u32, energy_per_cm: f64) -> Arc<Level> {
         energy_per_cm,
         energy_uncertainty_per_cm: 0.001,
         configuration: Some(Arc::from(format!("level {number}"))),
-        term: Some(Arc::from("1S")),
-        j: Some(HalfInteger::from_twice(0)),
+        term: Some(Arc::from(if number == 0 { "1S" } else { "1Po" })),
+        j: Some(HalfInteger::from_twice(if number == 0 { 0 } else { 2 })),
         g: Some(1.0),
         parity: None,
         origin: PositionOrigin::Measured,
@@ -193,7 +193,7 @@ fn an_element_is_judged_by_the_stages_that_are_known_unless_one_is_named() {
 fn a_line_without_a_rate_within_a_width_leaves_the_target_unrated() {
     let near = spectrum(
         IRON,
-        &[(550.0, Some(1e6)), (500.05, None)],
+        &[(550.0, Some(1e8)), (500.05, None)],
         Some(Completeness::Full),
     );
     let helium = ask(&[target(), near]);
@@ -203,11 +203,65 @@ fn a_line_without_a_rate_within_a_width_leaves_the_target_unrated() {
     );
     let far = spectrum(
         IRON,
-        &[(550.0, Some(1e6)), (500.2, None)],
+        &[(550.0, Some(1e8)), (500.2, None)],
         Some(Completeness::Full),
     );
     let helium = ask(&[target(), far]);
     assert_eq!(feature_of(&helium, HELIUM).verdict.central, Verdict::Clear);
+}
+
+/// Iron with a strong line far away, which scales it, and a line without a rate beside the target.
+fn iron_without_a_rate(term: &str, scale_per_s: f64) -> Spectrum {
+    let lines = [(450.0, Some(scale_per_s)), (500.0, None)];
+    let mut iron = spectrum(IRON, &lines, Some(Completeness::Full));
+    for line in iron.lines.iter_mut().filter(|l| l.rate_per_s.is_none()) {
+        let mut upper = (**line.upper.as_ref().unwrap()).clone();
+        upper.term = Some(Arc::from(term));
+        line.upper = Some(Arc::new(upper));
+    }
+    iron
+}
+
+#[test]
+fn a_prior_lets_a_verdict_stand_where_the_line_is_too_weak_to_change_it() {
+    // A line between levels of one parity: the prior's median is g A = 10^-14.35 σ³ = 0.04 s⁻¹ at
+    // 20 000 cm⁻¹; against a scale of 1e9 s⁻¹ it needs a factor 1e8 to tinge: 3 σ.
+    let answer = ask(&[target(), iron_without_a_rate("1D", 1e9)]);
+    let helium = feature_of(&answer, HELIUM);
+    assert_eq!(helium.verdict.central, Verdict::Clear);
+    assert!(helium.prior_chance.unwrap() < 0.01);
+    let iron = answer.lines.iter().find(|l| l.line.rate_per_s.is_none());
+    let iron = iron.unwrap();
+    assert!(iron.line.rate_origin.is_none(), "a prior is no rate");
+    assert!(iron.prior.is_some());
+    assert_eq!(
+        feature_of(&answer, IRON).verdict.central,
+        Verdict::Unrated,
+        "a target without a rate stays unrated"
+    );
+}
+
+#[test]
+fn a_prior_that_may_change_the_verdict_leaves_it_unrated_and_says_the_chance() {
+    let answer = ask(&[target(), iron_without_a_rate("1Po", 1e9)]);
+    let helium = feature_of(&answer, HELIUM);
+    assert_eq!(helium.verdict.central, Verdict::Unrated);
+    assert!(helium.prior_chance.unwrap() > 0.05);
+    let said = helium.remarks.join("; ");
+    assert!(
+        said.contains("% chance (prior for unknown rates)"),
+        "{said}"
+    );
+    assert!(said.contains("Fe I 500.000 nm"), "{said}");
+}
+
+#[test]
+fn a_species_without_any_rate_has_no_scale_and_no_prior() {
+    let iron = spectrum(IRON, &[(500.0, None)], Some(Completeness::Full));
+    let answer = ask(&[target(), iron]);
+    let helium = feature_of(&answer, HELIUM);
+    assert_eq!(helium.verdict.central, Verdict::Unrated);
+    assert_eq!(helium.prior_chance, None);
 }
 
 #[test]

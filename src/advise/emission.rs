@@ -57,6 +57,19 @@ impl Emitter {
         )
     }
 
+    /// Relative light that a line would have at a rate (s⁻¹); `None` where its upper level is not
+    /// known, or where no line of its species is rated and its scale is not known.
+    pub fn light_at_rate(&self, line: &Line, rate_per_s: f64) -> Option<f64> {
+        let upper = line.upper.as_ref()?;
+        self.power(
+            line.wavenumber_per_cm,
+            rate_per_s,
+            upper.energy_per_cm,
+            upper.g?,
+        )
+        .filter(|light| *light > 0.0)
+    }
+
     fn of_strength(&self, spectrum: &Spectrum, strength: &Strength) -> Option<f64> {
         let upper = spectrum.levels.get(strength.upper? as usize)?;
         self.power(

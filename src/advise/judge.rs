@@ -6,10 +6,14 @@ use vocabulary::light::{Air, Medium};
 use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
 use super::error::AdviseError;
 use super::position::placed;
-use super::scene::{Emission, REACH_WIDTHS, Scene};
+use super::scene::{REACH_WIDTHS, Scene};
 use super::spectrum::Spectrum;
+use super::unrated::Unrated;
 use super::verdict::{Interference, VerdictRange, Worst};
 use super::window::{Unjudged, WindowFeature};
+
+/// From this chance on, lines without a rate that may change a verdict are named.
+const CHANCE_NAMED: f64 = 0.01;
 
 /// Judges the features of a scene.
 pub(super) struct Judge<'a, 's> {
@@ -121,6 +125,7 @@ impl<'a, 's> Judge<'a, 's> {
             worst: None,
             worst_placed: None,
             unlisted_chance: 0.0,
+            prior_chance: None,
         };
         self.interfere(index, &mut out);
         out.worst_placed = out
@@ -182,12 +187,14 @@ impl<'a, 's> Judge<'a, 's> {
                 });
             }
         }
-        let unrated_near = self.unrated_near(index, width_nm);
         out.own_species_fraction = Some(sum.own);
         let interference = sum.interference(target.signal_sigma);
         out.interference = Some(interference);
         out.verdict = interference.verdict();
-        self.unknowns(index, &unrated_near, out);
+        let reach_nm = REACH_WIDTHS * width_nm;
+        let unrated = Unrated::around(self.scene, index, reach_nm, interference.fraction);
+        self.rateless(&unrated, out);
+        self.unknowns(index, out);
     }
 
     /// What each rated line outside a feature adds to its signal, lines by wavelength.
@@ -210,20 +217,6 @@ impl<'a, 's> Judge<'a, 's> {
             })
         };
         around.filter_map(part).collect()
-    }
-
-    /// Lines of other species that are present, within one width of a feature, without a rate.
-    fn unrated_near(&self, index: usize, width_nm: f64) -> Vec<&Emission<'s>> {
-        let target = &self.scene.features[index];
-        self.scene
-            .around(target.nm, width_nm)
-            .map(|i| &self.scene.emissions[i])
-            .filter(|e| {
-                e.light.is_none()
-                    && e.spectrum != target.spectrum
-                    && self.scene.spectra[e.spectrum].amount > 0.0
-            })
-            .collect()
     }
 
     /// Relative 1 σ of an overlap from the uncertainty of the distance: half the difference of the
@@ -250,20 +243,40 @@ impl<'a, 's> Judge<'a, 's> {
         }
     }
 
-    /// What is missing makes the verdict `unrated`, or is said beside it.
-    fn unknowns(&self, index: usize, unrated_near: &[&Emission<'_>], out: &mut WindowFeature) {
-        let target = &self.scene.features[index];
-        if !unrated_near.is_empty() {
-            let names: Vec<String> = unrated_near
-                .iter()
-                .map(|e| format!("{} {:.3} nm", self.scene.spectra[e.spectrum].species, e.nm))
-                .collect();
+    /// Lines without a rate make the verdict `unrated` where nothing bounds them, or where the
+    /// bound leaves more than a small chance that they change it.
+    fn rateless(&self, unrated: &Unrated, out: &mut WindowFeature) {
+        out.prior_chance = unrated.chance;
+        if unrated.decides() {
             out.verdict = VerdictRange::UNRATED;
+        }
+        let name = |index: usize| {
+            let emission = &self.scene.emissions[index];
+            let species = self.scene.spectra[emission.spectrum].species;
+            format!("{species} {:.3} nm", emission.nm)
+        };
+        if !unrated.unbounded.is_empty() {
+            let names: Vec<String> = unrated.unbounded.iter().map(|&i| name(i)).collect();
             out.remarks.push(format!(
                 "no rate is known for {} (vacuum)",
                 names.join(", ")
             ));
         }
+        if let (Some(chance), Some(&(first, ..))) = (unrated.chance, unrated.bounded.first())
+            && chance >= CHANCE_NAMED
+        {
+            out.remarks.push(format!(
+                "{:.0} % chance (prior for unknown rates) that lines without a rate change the \
+                 verdict, first {} (vacuum)",
+                100.0 * chance,
+                name(first)
+            ));
+        }
+    }
+
+    /// What is missing makes the verdict `unrated`, or is said beside it.
+    fn unknowns(&self, index: usize, out: &mut WindowFeature) {
+        let target = &self.scene.features[index];
         let light = target.light.unwrap_or(0.0);
         let width_nm = self.scene.width.at_nm(target.nm);
         let mut expected = 0.0;

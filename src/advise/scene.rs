@@ -10,6 +10,7 @@ use super::emission::{Conditions, Emitter, emitters};
 use super::error::AdviseError;
 use super::feature;
 use super::spectrum::Spectrum;
+use super::unrated::{PriorLight, prior_light};
 use crate::calc::shape::{Instrument, LineWidths, Profile, ShapeError, natural_fwhm_hz};
 
 /// How far profiles are followed, in instrument widths.
@@ -31,6 +32,8 @@ pub struct Emission<'s> {
     pub light: Option<f64>,
     /// Relative 1 σ of the light, from the rate.
     pub light_sigma: f64,
+    /// What the prior for unknown rates says, where it has no rate and one is to be had.
+    pub prior: Option<PriorLight>,
     /// Doppler and Lorentzian widths of the line itself.
     pub widths: LineWidths,
     /// Profile as the instrument sees it.
@@ -97,6 +100,7 @@ impl<'s> Scene<'s> {
                     nm,
                     sigma_nm: nm * line.wavenumber_uncertainty_per_cm / line.wavenumber_per_cm,
                     light: emitters[index].light(line),
+                    prior: prior_light(line, spectrum.limit_per_cm, &emitters[index]),
                     light_sigma: line
                         .rate_relative_uncertainty
                         .unwrap_or(UNSTATED_RATE_SIGMA),

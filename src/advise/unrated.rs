@@ -23,7 +23,11 @@ pub struct PriorLight {
 
 /// Light that a line without a rate may have; `None` where it has a rate, where no prior bounds
 /// it, or where its species has no scale because none of its lines is rated.
-pub fn prior_light(line: &Line, limit_per_cm: Option<f64>, emitter: &Emitter) -> Option<PriorLight> {
+pub fn prior_light(
+    line: &Line,
+    limit_per_cm: Option<f64>,
+    emitter: &Emitter,
+) -> Option<PriorLight> {
     if line.rate_per_s.is_some() {
         return None;
     }
@@ -87,7 +91,8 @@ impl Unrated {
         let likely = |&(_, median, sigma): &(usize, f64, f64)| {
             (room.unwrap_or(1.0) / median).log10() / sigma
         };
-        self.bounded.sort_by(|a, b| likely(a).total_cmp(&likely(b)).then(a.0.cmp(&b.0)));
+        self.bounded
+            .sort_by(|a, b| likely(a).total_cmp(&likely(b)).then(a.0.cmp(&b.0)));
         let parts: Vec<(f64, f64)> = self.bounded.iter().map(|&(_, m, s)| (m, s)).collect();
         self.chance = Some(room.map_or(0.0, |room| chance_above(&parts, room)));
     }

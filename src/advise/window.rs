@@ -12,6 +12,7 @@ pub use super::scene::REACH_WIDTHS;
 use super::scene::Scene;
 use super::spectrum::Spectrum;
 use super::verdict::{Interference, VerdictRange, Worst};
+use crate::calc::prior::Prior;
 
 /// A checked question.
 #[derive(Clone, Debug)]
@@ -39,6 +40,10 @@ pub struct WindowLine {
     pub feature: usize,
     /// Part of all rated light in the window.
     pub light_fraction: Option<f64>,
+    /// What the prior for unknown rates says of its rate, where none is known.
+    pub prior: Option<Prior>,
+    /// Median of its light by that prior, as a part of all rated light in the window.
+    pub prior_light_fraction: Option<f64>,
 }
 
 /// A feature of the answer.
@@ -71,6 +76,9 @@ pub struct WindowFeature {
     pub worst_placed: Option<Placed>,
     /// Chance that an unlisted line interferes.
     pub unlisted_chance: f64,
+    /// Chance that lines without a rate, bounded by the prior for unknown rates, change the
+    /// verdict; `None` where there are none.
+    pub prior_chance: Option<f64>,
 }
 
 /// A species that cannot be judged, and why.
@@ -211,6 +219,11 @@ fn components(
             )?,
             feature: position,
             light_fraction: emission.light.filter(|_| total > 0.0).map(|l| l / total),
+            prior: emission.prior.map(|p| p.prior),
+            prior_light_fraction: emission
+                .prior
+                .filter(|_| total > 0.0)
+                .map(|p| p.light / total),
             line: line.clone(),
         })
     };

@@ -8,6 +8,7 @@ mod markdown;
 mod marks;
 mod number;
 mod pairs;
+mod prior;
 mod sheet;
 mod table;
 pub mod text;

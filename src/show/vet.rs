@@ -4,6 +4,7 @@ use serde_json::{Map, Value, json};
 
 use super::line::{line_object, position_cell, rate_cell, transition_cell};
 use super::number::{percent, percent_in_table};
+use super::prior::prior_note;
 use super::sheet::{Align, Column, Context, Sheet};
 use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
 use crate::advise::vet::{ALTERNATIVES_NM, Alternative, Answer, Interferer, Question};
@@ -193,6 +194,7 @@ fn notes(answer: &Answer, context: &Context, worthy: usize) -> Vec<String> {
             "Shown: the {ROWS} strongest of {worthy} interferers above 0.001 %."
         ));
     }
+    notes.extend(prior_note(std::slice::from_ref(&answer.feature)));
     notes.extend(unjudged_notes(&answer.unrated));
     notes.extend(self_absorption_note(answer));
     if answer.interferers.iter().any(|i| i.order > 1) {
@@ -265,6 +267,7 @@ fn object(answer: &Answer, context: Context, notes: &[String]) -> Map<String, Va
     put("verdict_range", json!(answer.verdict.to_string()));
     put("remarks", json!(answer.feature.remarks));
     put("unlisted_chance", json!(answer.feature.unlisted_chance));
+    put("prior_chance", json!(answer.feature.prior_chance));
     put(
         "own_species_fraction",
         json!(answer.feature.own_species_fraction),

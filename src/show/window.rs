@@ -10,6 +10,7 @@ use super::line::{
     line_object, multiplet_cell, position_cell, put_verdict, rate_cell, transition_cell,
 };
 use super::number::{percent, percent_in_table};
+use super::prior::{prior_note, put_prior};
 use super::sheet::{Align, Column, Context, Sheet};
 use crate::advise::Verdict;
 use crate::advise::window::{Answer, Unjudged, WindowFeature, WindowLine};
@@ -296,6 +297,7 @@ fn notes(answer: &Answer, context: &Context) -> Vec<String> {
         }
     }
     join_like(&mut notes);
+    notes.extend(prior_note(&answer.features));
     notes.extend(unjudged_notes(&answer.unrated));
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
@@ -431,6 +433,7 @@ fn object(
             let position = shown.iter().position(|&f| f == line.feature);
             object.insert("feature".into(), json!(position));
             object.insert("light_fraction".into(), json!(line.light_fraction));
+            put_prior(&mut object, line);
             put_verdict(&mut object, feature.verdict, feature.worst.as_ref());
             Value::Object(object)
         })
@@ -489,6 +492,7 @@ fn feature_object(feature: &WindowFeature, components: &[Option<usize>]) -> Valu
     );
     put("own_species_fraction", json!(feature.own_species_fraction));
     put("unlisted_chance", json!(feature.unlisted_chance));
+    put("prior_chance", json!(feature.prior_chance));
     put("remarks", json!(feature.remarks));
     put_verdict(&mut object, feature.verdict, feature.worst.as_ref());
     Value::Object(object)

@@ -3,9 +3,7 @@
 use std::collections::BTreeMap;
 use std::path::Path;
 
-use lineclear::calc::prior::{
-    AtomClass, Features, Group, TransitionKind, log10_strength_per_rate,
-};
+use lineclear::calc::prior::{AtomClass, Features, Group, TransitionKind, log10_strength_per_rate};
 use lineclear::catalogue::Catalogue;
 use lineclear::vocabulary::atom::{Species, limit};
 use lineclear::vocabulary::spectrum::{LineKind, RateOrigin};
@@ -36,7 +34,9 @@ pub fn rated_lines(path: &Path) -> Vec<Rated> {
     let catalogue = Catalogue::open(path).unwrap();
     let mut out = Vec::new();
     for species in catalogue.species().unwrap() {
-        let Some(limit) = limit(species) else { continue };
+        let Some(limit) = limit(species) else {
+            continue;
+        };
         if species.isotope.is_some() || species.is_one_electron() {
             continue;
         }
@@ -88,11 +88,14 @@ pub fn learn(group: &Group, lines: &[&Rated]) -> Group {
         let fitted = fit(group, others.map(|(_, lines)| lines.as_slice()));
         let weight = (of.len() as f64).powf(-0.5);
         residuals.extend(of.iter().map(|line| {
-            ((line.strength - fitted.strength(&line.features)).abs(), weight)
+            (
+                (line.strength - fitted.strength(&line.features)).abs(),
+                weight,
+            )
         }));
     }
-    let sigma_dex = weighted_quantile(&mut residuals, 0.68)
-        .max(0.5 * weighted_quantile(&mut residuals, 0.95));
+    let sigma_dex =
+        weighted_quantile(&mut residuals, 0.68).max(0.5 * weighted_quantile(&mut residuals, 0.95));
     Group {
         sigma_dex,
         ..fit(group, ions.values().map(Vec::as_slice))

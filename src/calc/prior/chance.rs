@@ -71,7 +71,9 @@ fn sum_below(parts: &[LogNormal], bound: f64) -> f64 {
     let mut sum = vec![0.0; CELLS + 1];
     sum[0] = 1.0;
     for part in parts {
-        let edges: Vec<f64> = (0..=CELLS).map(|k| part.below((k as f64 + 0.5) * cell)).collect();
+        let edges: Vec<f64> = (0..=CELLS)
+            .map(|k| part.below((k as f64 + 0.5) * cell))
+            .collect();
         if edges[0] == 1.0 {
             continue;
         }
@@ -98,7 +100,11 @@ fn normal_below(x: f64) -> f64 {
     let z = x.abs() / std::f64::consts::SQRT_2;
     let t = 1.0 / (1.0 + 0.327_591_1 * z);
     let erfc = POLYNOMIAL.iter().fold(0.0, |sum, c| (sum + c) * t) * (-z * z).exp();
-    if x < 0.0 { 0.5 * erfc } else { 1.0 - 0.5 * erfc }
+    if x < 0.0 {
+        0.5 * erfc
+    } else {
+        1.0 - 0.5 * erfc
+    }
 }
 
 #[cfg(test)]

@@ -127,18 +127,20 @@ fn kind(lower: &Level, upper: &Level) -> Option<(TransitionKind, f64)> {
     let (Some(a), Some(b)) = (term(lower), term(upper)) else {
         return Some((TransitionKind::NoLsTerms, 1.0));
     };
-    Some(match dipole_class((&a, Some(j_lower)), (&b, Some(j_upper))) {
-        Some(DipoleClass::Allowed) => match share((&a, j_lower), (&b, j_upper)) {
-            Some(share) if share > 0.0 => (TransitionKind::Allowed, share),
-            _ => (TransitionKind::NoLsTerms, 1.0),
+    Some(
+        match dipole_class((&a, Some(j_lower)), (&b, Some(j_upper))) {
+            Some(DipoleClass::Allowed) => match share((&a, j_lower), (&b, j_upper)) {
+                Some(share) if share > 0.0 => (TransitionKind::Allowed, share),
+                _ => (TransitionKind::NoLsTerms, 1.0),
+            },
+            Some(DipoleClass::Intercombination) => (TransitionKind::Intercombination, 1.0),
+            Some(DipoleClass::OrbitalForbidden) => (TransitionKind::OrbitalForbidden, 1.0),
+            Some(DipoleClass::ParityForbidden | DipoleClass::MomentumForbidden) => {
+                (TransitionKind::OneParity, 1.0)
+            }
+            None => (TransitionKind::NoLsTerms, 1.0),
         },
-        Some(DipoleClass::Intercombination) => (TransitionKind::Intercombination, 1.0),
-        Some(DipoleClass::OrbitalForbidden) => (TransitionKind::OrbitalForbidden, 1.0),
-        Some(DipoleClass::ParityForbidden | DipoleClass::MomentumForbidden) => {
-            (TransitionKind::OneParity, 1.0)
-        }
-        None => (TransitionKind::NoLsTerms, 1.0),
-    })
+    )
 }
 
 fn share(lower: (&Term, HalfInteger), upper: (&Term, HalfInteger)) -> Option<f64> {

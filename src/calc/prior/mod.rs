@@ -30,10 +30,9 @@ pub use table::{GROUPS, Group};
 
 /// g f for g A = 1 s⁻¹ at σ = 1 cm⁻¹: ε₀ mₑ c / (2π e²), σ in m⁻¹; g f = this · g A / σ² (Condon &
 /// Shortley 1935, The Theory of Atomic Spectra, ch. 4).
-pub const GF_PER_RATE: f64 = VACUUM_PERMITTIVITY_F_PER_M
-    * ELECTRON_MASS_KG
-    * SPEED_OF_LIGHT_M_PER_S
-    / (2.0 * std::f64::consts::PI * ELEMENTARY_CHARGE_C * ELEMENTARY_CHARGE_C * 1e4);
+pub const GF_PER_RATE: f64 =
+    VACUUM_PERMITTIVITY_F_PER_M * ELECTRON_MASS_KG * SPEED_OF_LIGHT_M_PER_S
+        / (2.0 * std::f64::consts::PI * ELEMENTARY_CHARGE_C * ELEMENTARY_CHARGE_C * 1e4);
 
 /// A log-normal for a rate.
 #[derive(Clone, Copy, Debug, PartialEq)]

@@ -31,7 +31,11 @@ impl Group {
     /// log₁₀ of the median strength.
     pub fn strength(&self, features: &Features) -> f64 {
         let terms = Self::terms(features);
-        self.coefficients.iter().zip(terms).map(|(c, t)| c * t).sum()
+        self.coefficients
+            .iter()
+            .zip(terms)
+            .map(|(c, t)| c * t)
+            .sum()
     }
 
     /// Which coefficients are fitted; the others stay zero.
