@@ -5,8 +5,6 @@
 
 #[path = "common/mod.rs"]
 mod common;
-#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
-
 #[path = "prior/learn.rs"]
 mod learn;
 
