@@ -1,5 +1,7 @@
 //! The answers: pure functions from lines and conditions to verdicts. No I/O here.
 
+pub mod audit;
+pub mod contrast;
 mod coverage;
 mod emission;
 mod error;
@@ -7,6 +9,7 @@ mod feature;
 mod judge;
 pub mod marks;
 pub mod pairs;
+mod median;
 mod position;
 mod resolving;
 mod scene;

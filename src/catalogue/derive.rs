@@ -123,7 +123,8 @@ fn count(derived: &Derived, own_rows: &[Vec<bool>]) -> Counts {
     Counts(kept)
 }
 
-fn read(
+/// The reports of one species, source by source in no order.
+pub(super) fn read(
     connection: &Connection,
     code: i64,
     labels: &Labels,

@@ -8,6 +8,7 @@ mod gap_fill;
 mod ingest;
 mod query;
 pub mod reconcile;
+mod reports;
 mod sources;
 mod store;
 

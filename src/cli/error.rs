@@ -60,6 +60,9 @@ pub enum CliError {
     /// A dispersion that cannot be fitted.
     #[error(transparent)]
     Dispersion(#[from] crate::advise::marks::DispersionError),
+    /// The list of known findings.
+    #[error(transparent)]
+    Known(#[from] crate::advise::audit::KnownError),
     /// A table to import.
     #[error(transparent)]
     Import(#[from] importers::ImportError),

@@ -2,6 +2,8 @@
 
 mod assemble;
 mod describe;
+mod audit;
+mod contrast;
 mod error;
 mod exit;
 mod forget;
@@ -40,6 +42,8 @@ enum Command {
     Marks(marks::Arguments),
     Vet(vet::Arguments),
     Pairs(Box<pairs::Arguments>),
+    Audit(audit::Arguments),
+    Contrast(contrast::Arguments),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -67,6 +71,8 @@ pub fn run() -> Result<Exit, CliError> {
         Command::Pairs(arguments) => pairs::run(&arguments, context)?,
         Command::Marks(arguments) => marks::run(&arguments, context)?,
         Command::Vet(arguments) => vet::run(arguments, context)?,
+        Command::Audit(arguments) => audit::run(&arguments, context)?,
+        Command::Contrast(arguments) => contrast::run(&arguments, context)?,
         Command::Import(arguments) => import::run(&arguments, context)?,
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,

@@ -1,5 +1,7 @@
 //! Answers as tables, CSV, JSON and Markdown. No physics here.
 
+mod audit;
+mod contrast;
 mod csv;
 mod json;
 mod line;
@@ -15,6 +17,8 @@ pub mod text;
 mod vet;
 mod window;
 
+pub use audit::{AuditWish, audit};
+pub use contrast::contrast;
 pub use listing::{forgotten, imported, sources};
 pub use marks::marks;
 pub use pairs::{Measured, pairs, plot};
