@@ -1,9 +1,9 @@
 //! The command line: what was typed, the question, the answer, shown.
 
 mod assemble;
-mod describe;
 mod audit;
 mod contrast;
+mod describe;
 mod error;
 mod exit;
 mod forget;
