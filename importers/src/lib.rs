@@ -5,12 +5,16 @@
 //! [`read_source`] turns its tables into records and hands them to a [`Sink`].
 
 pub mod delimited;
+pub mod detect;
 pub mod error;
+pub mod explain;
 pub mod fixed;
+pub mod infer;
 pub mod input;
 pub mod limits;
 pub mod lines;
 pub mod mapping;
+pub mod mrt;
 pub mod number;
 pub mod read;
 pub mod record;
@@ -20,6 +24,7 @@ pub mod source;
 pub mod spectral;
 pub mod table;
 pub mod unit;
+pub mod unpack;
 
 pub use error::ImportError;
 pub use limits::Limits;

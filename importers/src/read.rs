@@ -4,13 +4,16 @@ use std::io::{self, Read};
 use std::sync::Arc;
 
 use crate::error::ImportError;
+use crate::infer::infer;
 use crate::input;
 use crate::limits::Limits;
 use crate::mapping::{Fault, Plan};
-use crate::row::{Row, RowError, RowReader};
+use crate::mrt::{self, MrtReader};
+use crate::row::{ColumnInfo, Row, RowError, RowReader};
 use crate::sink::{ReadReport, Refusal, Sink, shown};
-use crate::source::{Counting, Format, SourceDescription, TableDescription};
+use crate::source::{Counting, Format, Ignore, SourceDescription, TableDescription};
 use crate::table;
+use crate::unpack;
 
 /// How strictly and how far to read.
 #[derive(Clone, Debug, Default)]
@@ -44,7 +47,16 @@ pub fn read_source(
             file: table.file.clone(),
             error,
         })?;
-        let mut rows = open_table(table, input, &options.limits)?;
+        let readme = match &table.readme {
+            None => None,
+            Some(name) => Some(open(name).map_err(|error| ImportError::Open {
+                file: name.clone(),
+                error,
+            })?),
+        };
+        let mut rows = open_table(table, input, readme, &options.limits)?;
+        let told = told(table, rows.columns(), &mut report);
+        let table = told.as_ref().unwrap_or(table);
         read_table(
             description,
             table,
@@ -53,14 +65,42 @@ pub fn read_source(
             sink,
             &mut report,
         )?;
+        report.warnings.extend(rows.warnings());
     }
     Ok(report)
 }
 
+/// The description with the columns that a self-describing file tells itself.
+fn told(
+    table: &TableDescription,
+    columns: &[ColumnInfo],
+    report: &mut ReadReport,
+) -> Option<TableDescription> {
+    let alone = matches!(table.format, Format::Delimited | Format::Fixed);
+    if alone || !table.columns.is_empty() {
+        return None;
+    }
+    let inferred = infer(columns);
+    for name in &inferred.unrecognised {
+        let warning = format!(
+            "{}: column `{}` is not recognised and left out",
+            table.file,
+            shown(name)
+        );
+        report.warnings.push(warning);
+    }
+    let mut told = table.clone();
+    told.records = inferred.records();
+    told.columns = inferred.columns;
+    told.ignore = Ignore::Word("rest".to_owned());
+    Some(told)
+}
+
 /// The rows of a table file.
-fn open_table(
+pub(crate) fn open_table(
     table: &TableDescription,
     input: Box<dyn Read>,
+    readme: Option<Box<dyn Read>>,
     limits: &Limits,
 ) -> Result<Box<dyn RowReader>, ImportError> {
     let encoding =
@@ -68,8 +108,12 @@ fn open_table(
             file: table.file.clone(),
             label,
         })?;
+    let input = unpack::unpack(input, limits).map_err(|error| ImportError::Open {
+        file: table.file.clone(),
+        error,
+    })?;
     let input = table::decoded(input, encoding);
-    match table.format {
+    let opened: Result<Box<dyn RowReader>, RowError> = match table.format {
         Format::Fixed => {
             let mut table = table.clone();
             // A decoded text counts in characters; so does a file of one byte per character.
@@ -78,10 +122,14 @@ fn open_table(
             }
             Ok(table::open_fixed(input, &table, limits))
         }
-        _ => {
-            table::open_delimited(input, table, limits).map_err(|error| header_error(table, error))
-        }
-    }
+        Format::Mrt => match readme {
+            None => MrtReader::new(input, limits).map(|reader| Box::new(reader) as _),
+            Some(readme) => mrt::read_readme(readme, &table.file, limits)
+                .map(|columns| Box::new(MrtReader::with_description(input, columns, limits)) as _),
+        },
+        _ => table::open_delimited(input, table, limits),
+    };
+    opened.map_err(|error| header_error(table, error))
 }
 
 fn header_error(table: &TableDescription, error: RowError) -> ImportError {

@@ -3,6 +3,7 @@
 use thiserror::Error;
 
 use crate::limits::Limits;
+use crate::unit::Dialect;
 
 /// What a format tells about a column.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
@@ -11,6 +12,8 @@ pub struct ColumnInfo {
     pub name: String,
     /// Unit text as the file has it.
     pub unit: Option<String>,
+    /// The grammar of the unit.
+    pub dialect: Dialect,
     /// Words of a controlled vocabulary (UCD) that say what the column is.
     pub ucd: Option<String>,
     /// What the file says about the column in words.
@@ -229,6 +232,11 @@ pub trait RowReader {
     /// # Errors
     /// A row that breaks the rules of the format; reading may go on unless the error is fatal.
     fn read_row(&mut self, row: &mut Row) -> Result<bool, RowError>;
+
+    /// Things worth knowing that refused nothing, after the last row.
+    fn warnings(&self) -> Vec<String> {
+        Vec::new()
+    }
 }
 
 pub(crate) fn check_length(

@@ -8,8 +8,8 @@ use super::position::{MediumPlan, PositionPlan};
 use super::rate::{RatePlan, RateQuantity, UncertaintyPlan};
 use super::species::{SpeciesPlan, Words};
 use crate::row::ColumnInfo;
-use crate::source::{Cell, Ignore, MediumChoice, Part, TableDescription};
-use crate::unit::{self, ToPerCm, Unit, UnitError};
+use crate::source::{Cell, Ignore, MediumChoice, MediumName, NumberScale, Part, TableDescription};
+use crate::unit::{self, Dialect, ToPerCm, Unit, UnitError};
 
 /// Looks up columns and units of one table.
 pub(super) struct Binder<'a> {
@@ -61,13 +61,31 @@ impl Binder<'_> {
             [Place::Column(index)] => self.columns[*index].name.clone(),
             _ => target.to_owned(),
         };
-        Ok(Bound::new(
-            name,
-            places,
-            cell,
-            &self.table.missing,
-            self.marks,
-        ))
+        let limit = self.limit_flag(&name);
+        let mut bound = Bound::new(name, places, cell, &self.table.missing, self.marks);
+        bound.limit = limit;
+        Ok(bound)
+    }
+
+    /// The column of limit flags that belongs to a column (`l_x` to `x`).
+    fn limit_flag(&self, name: &str) -> Option<usize> {
+        let flag = format!("l_{name}");
+        let cds = |column: &&ColumnInfo| column.dialect == Dialect::Cds && column.name == flag;
+        let found = self.columns.iter().find(cds)?;
+        self.columns
+            .iter()
+            .position(|column| std::ptr::eq(column, found))
+    }
+
+    /// A cell whose unit may say that it holds a logarithm.
+    fn measured(&self, target: &str, cell: &Cell) -> Result<Bound, MappingError> {
+        let mut bound = self.bound(target, cell)?;
+        if let Some(Ok(unit)) = self.unit(target, cell)
+            && unit.logarithm
+        {
+            bound.scale = Some(NumberScale::Log10);
+        }
+        Ok(bound)
     }
 
     fn optional(&self, target: &str, cell: Option<&Cell>) -> Result<Option<Bound>, MappingError> {
@@ -96,12 +114,25 @@ impl Binder<'_> {
 
     /// The unit that the mapping states, else that of the column.
     fn unit(&self, target: &str, cell: &Cell) -> Option<Result<Unit, MappingError>> {
-        let problem = |problem| MappingError::Unit {
-            target: target.to_owned(),
-            problem,
+        let (text, dialect) = match (&cell.unit, self.own_column(target, cell)) {
+            (Some(text), _) => (text.clone(), Dialect::Mapping),
+            (None, Some(column)) => (column.unit.clone()?, column.dialect),
+            (None, None) => return None,
         };
-        let text = cell.unit.as_deref()?;
-        Some(unit::parse(text).map_err(problem))
+        Some(
+            unit::parse(&text, dialect).map_err(|problem| MappingError::Unit {
+                target: target.to_owned(),
+                problem,
+            }),
+        )
+    }
+
+    /// The one column that a cell reads.
+    fn own_column(&self, target: &str, cell: &Cell) -> Option<&ColumnInfo> {
+        match self.place(target, &own_part(cell)) {
+            Ok(Place::Column(index)) => self.columns.get(index),
+            _ => None,
+        }
     }
 
     fn spectral(
@@ -131,7 +162,7 @@ impl Binder<'_> {
             return Ok(None);
         };
         match self.spectral(target, cell, "\"cm-1\" or \"eV\"")?.1 {
-            ToPerCm::Times(factor) => Ok(Some((self.bound(target, cell)?, factor))),
+            ToPerCm::Times(factor) => Ok(Some((self.measured(target, cell)?, factor))),
             ToPerCm::Over(_) => Err(wrong_kind(target, cell, "an energy")),
         }
     }
@@ -238,7 +269,7 @@ impl Binder<'_> {
                 return Err(wrong_kind(target, cell, "this quantity"));
             }
             return Ok(Some(PositionPlan {
-                value: self.bound(target, cell)?,
+                value: self.measured(target, cell)?,
                 to_per_cm,
                 medium: self.medium(target, cell, &unit)?,
                 uncertainty: self.position_uncertainty(target, uncertainty.as_ref(), &unit)?,
@@ -275,8 +306,12 @@ impl Binder<'_> {
         if !unit.is_length() {
             return Ok(None);
         }
-        let spec = cell.medium.as_ref().ok_or(MappingError::NoMedium)?;
-        let plan = match spec.choice().map_err(|_| MappingError::NoMedium)? {
+        let choice = match (&cell.medium, &self.table.medium) {
+            (Some(spec), _) => spec.choice().ok(),
+            (None, Some(name)) => MediumName::parse(name).map(MediumChoice::Fixed),
+            (None, None) => None,
+        };
+        let plan = match choice.ok_or(MappingError::NoMedium)? {
             MediumChoice::Fixed(medium) => MediumPlan::Fixed(medium),
             MediumChoice::Column(part, words) => {
                 let place = self.place(target, &part)?;
@@ -316,12 +351,29 @@ impl Binder<'_> {
         };
         let value = match quantity {
             None => None,
-            Some((target, cell, quantity)) => Some((self.bound(target, cell)?, quantity)),
+            Some((target, cell, quantity)) => Some(self.strength(target, cell, quantity)?),
         };
         Ok(RatePlan {
             value,
             uncertainty: self.rate_uncertainty()?,
             origin: self.optional("rate_origin", c.rate_origin.as_ref())?,
+        })
+    }
+
+    /// The cell of a rate or strength; `[-]` on a weighted strength means its logarithm.
+    fn strength(
+        &self,
+        target: &str,
+        cell: &Cell,
+        quantity: RateQuantity,
+    ) -> Result<(Bound, RateQuantity), MappingError> {
+        let logarithm = matches!(self.unit(target, cell), Some(Ok(unit)) if unit.logarithm);
+        Ok(match quantity {
+            RateQuantity::LogWeightedStrength => (self.bound(target, cell)?, quantity),
+            RateQuantity::WeightedStrength if logarithm => {
+                (self.bound(target, cell)?, RateQuantity::LogWeightedStrength)
+            }
+            quantity => (self.measured(target, cell)?, quantity),
         })
     }
 

@@ -34,6 +34,8 @@ pub(super) struct Bound {
     pub split: Option<Split>,
     pub marks: Marks,
     pub scale: Option<NumberScale>,
+    /// A column that, where it is not blank, says that the number is only a limit.
+    pub limit: Option<usize>,
 }
 
 /// A number and the uncertainty that stood in brackets behind it.
@@ -61,6 +63,7 @@ impl Bound {
             split: cell.split.clone(),
             marks,
             scale: cell.scale,
+            limit: None,
         }
     }
 
@@ -153,6 +156,12 @@ impl Bound {
 
     /// The number; `None` where it is missing.
     pub fn number(&self, row: &Row) -> Result<Option<Value>, Fault> {
+        if self
+            .limit
+            .is_some_and(|flag| !row.cell(flag).trim().is_empty())
+        {
+            return Ok(None);
+        }
         let Some(text) = self.text(row)? else {
             return Ok(None);
         };

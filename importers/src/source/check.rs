@@ -92,6 +92,11 @@ fn check_text_options(table: &TableDescription) -> Result<(), Fault> {
     single(table.quote.as_deref().filter(|q| !q.is_empty()), "quote")?;
     single(table.decimal_mark.as_deref(), "decimal_mark")?;
     single(table.group_mark.as_deref(), "group_mark")?;
+    if let Some(name) = &table.medium
+        && super::MediumName::parse(name).is_none()
+    {
+        return fault("medium", "must be vacuum, air or air-above-200nm");
+    }
     if table
         .comment
         .as_ref()
@@ -161,7 +166,7 @@ fn check_targets(table: &TableDescription) -> Result<(), Fault> {
             };
             return fault(place, format!("is no target of {kind}"));
         }
-        check_cell(target, cell, table.format).map_err(|message| (place, message))?;
+        check_cell(target, cell, table).map_err(|message| (place, message))?;
     }
     check_needs(&table.columns, table)
 }
@@ -182,7 +187,7 @@ fn fits(target: &str, records: RecordKind) -> bool {
     SPECIES.contains(&target) || level_only == (records == RecordKind::Levels)
 }
 
-fn check_cell(target: &str, cell: &Cell, format: Format) -> Result<(), String> {
+fn check_cell(target: &str, cell: &Cell, table: &TableDescription) -> Result<(), String> {
     let own = [
         cell.column.is_some(),
         cell.position.is_some(),
@@ -194,12 +199,12 @@ fn check_cell(target: &str, cell: &Cell, format: Format) -> Result<(), String> {
         return Err("needs exactly one of column, position, bytes, constant and parts".into());
     }
     for part in cell.sources() {
-        check_place(&part, format)?;
+        check_place(&part, table.format)?;
     }
     let wavelength = target == "wavelength";
     match (&cell.medium, wavelength) {
         (Some(_), false) => return Err("only a wavelength has a medium".into()),
-        (None, true) => {
+        (None, true) if table.medium.is_none() && !self_describing(table.format) => {
             return Err("needs medium = \"vacuum\", \"air\" or \"air-above-200nm\"".into());
         }
         (Some(medium), true) => {
@@ -207,7 +212,7 @@ fn check_cell(target: &str, cell: &Cell, format: Format) -> Result<(), String> {
                 format!("`{word}` is no medium; write vacuum, air or air-above-200nm")
             })?;
         }
-        (None, false) => {}
+        (None, _) => {}
     }
     check_reading(target, cell)
 }

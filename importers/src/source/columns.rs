@@ -161,11 +161,21 @@ macro_rules! columns {
         }
 
         impl Columns {
+            /// Whether no target is mapped.
+            pub fn is_empty(&self) -> bool {
+                self.named().next().is_none()
+            }
+
             /// All targets in use, by name.
             pub fn named(&self) -> impl Iterator<Item = (&'static str, &Cell)> {
                 [$((stringify!($name), self.$name.as_ref()),)+]
                     .into_iter()
                     .filter_map(|(name, cell)| Some((name, cell?)))
+            }
+
+            /// The target of this name in its fixed spelling.
+            pub fn target_name(name: &str) -> Option<&'static str> {
+                [$(stringify!($name),)+].into_iter().find(|known| *known == name)
             }
 
             /// The target of this name, to be filled in; `None` where there is no such target.

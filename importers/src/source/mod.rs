@@ -153,6 +153,10 @@ pub struct TableDescription {
     /// Rows that are left out.
     #[serde(default)]
     pub skip: Vec<SkipRule>,
+    /// Medium of wavelengths that do not state their own.
+    pub medium: Option<String>,
+    /// File with the byte-by-byte description, where it is not in the table's own file.
+    pub readme: Option<String>,
     /// Texts that mean a missing value in every column; an empty cell always does.
     #[serde(default)]
     pub missing: Vec<String>,
@@ -229,6 +233,51 @@ pub enum DescriptionError {
         /// What is wrong and what was expected.
         message: String,
     },
+}
+
+impl Format {
+    /// The word for it in a description.
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::Delimited => "delimited",
+            Self::Fixed => "fixed",
+            Self::Mrt => "mrt",
+            Self::Votable => "votable",
+            Self::Ecsv => "ecsv",
+            Self::Xsams => "xsams",
+            Self::Fits => "fits",
+        }
+    }
+}
+
+impl TableDescription {
+    /// A description with nothing but the file and its format; the columns of a self-describing
+    /// format are then recognised by what the file says.
+    pub fn of_file(file: &str, format: Format) -> Self {
+        Self {
+            file: file.to_owned(),
+            sha256: None,
+            rows: None,
+            records: RecordKind::Lines,
+            format,
+            table: None,
+            encoding: None,
+            delimiter: None,
+            quote: None,
+            comment: None,
+            edge_delimiters: false,
+            header_rows: None,
+            counting: Counting::default(),
+            skip: Vec::new(),
+            medium: None,
+            readme: None,
+            missing: Vec::new(),
+            decimal_mark: None,
+            group_mark: None,
+            ignore: Ignore::default(),
+            columns: Columns::default(),
+        }
+    }
 }
 
 impl SourceDescription {
