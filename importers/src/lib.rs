@@ -6,8 +6,10 @@
 
 pub mod delimited;
 pub mod detect;
+pub mod ecsv;
 pub mod error;
 pub mod explain;
+pub mod fits;
 pub mod fixed;
 pub mod infer;
 pub mod input;
@@ -25,6 +27,9 @@ pub mod spectral;
 pub mod table;
 pub mod unit;
 pub mod unpack;
+pub mod votable;
+pub mod xml;
+pub mod xsams;
 
 pub use error::ImportError;
 pub use limits::Limits;

@@ -65,6 +65,30 @@ pub fn parse(text: &str) -> Result<Printed, NumberError> {
     Ok(Printed { value, last_digit })
 }
 
+/// The shortest text that reads back as this number; empty for NaN, which means no value.
+pub fn double_text(value: f64) -> String {
+    let size = value.abs();
+    if value.is_nan() {
+        String::new()
+    } else if value == 0.0 || (1e-5..1e16).contains(&size) {
+        value.to_string()
+    } else {
+        format!("{value:e}")
+    }
+}
+
+/// As [`double_text`], for single precision.
+pub fn single_text(value: f32) -> String {
+    let size = value.abs();
+    if value.is_nan() {
+        String::new()
+    } else if value == 0.0 || (1e-5..1e16).contains(&size) {
+        value.to_string()
+    } else {
+        format!("{value:e}")
+    }
+}
+
 /// 10 to a power, correctly rounded inside the exact range and to one unit outside.
 fn power_of_ten(exponent: i32) -> f64 {
     match exponent {

@@ -3,7 +3,9 @@
 use std::io::{self, Read};
 use std::sync::Arc;
 
+use crate::ecsv::EcsvReader;
 use crate::error::ImportError;
+use crate::fits::FitsReader;
 use crate::infer::infer;
 use crate::input;
 use crate::limits::Limits;
@@ -14,6 +16,8 @@ use crate::sink::{ReadReport, Refusal, Sink, shown};
 use crate::source::{Counting, Format, Ignore, SourceDescription, TableDescription};
 use crate::table;
 use crate::unpack;
+use crate::votable::VotableReader;
+use crate::xsams::XsamsReader;
 
 /// How strictly and how far to read.
 #[derive(Clone, Debug, Default)]
@@ -127,7 +131,15 @@ pub(crate) fn open_table(
             Some(readme) => mrt::read_readme(readme, &table.file, limits)
                 .map(|columns| Box::new(MrtReader::with_description(input, columns, limits)) as _),
         },
-        _ => table::open_delimited(input, table, limits),
+        Format::Ecsv => EcsvReader::new(input, limits).map(|reader| Box::new(reader) as _),
+        Format::Fits => FitsReader::new(input, table.table.as_deref(), limits)
+            .map(|reader| Box::new(reader) as _),
+        Format::Xsams => {
+            XsamsReader::new(input, table.records, limits).map(|reader| Box::new(reader) as _)
+        }
+        Format::Votable => VotableReader::new(input, table.table.as_deref(), limits)
+            .map(|reader| Box::new(reader) as _),
+        Format::Delimited => table::open_delimited(input, table, limits),
     };
     opened.map_err(|error| header_error(table, error))
 }

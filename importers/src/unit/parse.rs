@@ -122,10 +122,12 @@ impl Parser<'_> {
         }
         self.rest = &self.rest[number.len()..];
         if number == "10"
-            && let Some(power) = self.ten_power()
+            && ["**", "^", "+", "-"]
+                .iter()
+                .any(|mark| self.rest.starts_with(mark))
         {
             return Some(Unit {
-                exponent: power,
+                exponent: self.ten_power()?,
                 ..Unit::ONE
             });
         }
