@@ -1,6 +1,9 @@
 //! Reading tables through their descriptions: the bundled sources, and what goes wrong with bad
 //! files. Records are collected in memory; no catalogue is involved.
 
+// A panic in the helpers is the report of the test.
+#![allow(clippy::unwrap_used)]
+
 use std::fs::File;
 use std::io::{self, Cursor, Read};
 use std::path::{Path, PathBuf};

@@ -100,7 +100,8 @@ impl<R: Read> MrtReader<R> {
         read.map_err(|problem| RowError::fatal(self.lines.line(), problem))
     }
 
-    /// Notes stand between rule lines behind the description; the data follow the last of them.
+    /// Notes and other sections stand between rule lines behind the description; the data follow the
+    /// last of them. A rule line further on is an error, so that no text passes for data.
     fn skip_notes(&mut self, limits: &Limits) -> Result<(), RowError> {
         let mut length = 0;
         let mut in_note = false;
@@ -111,12 +112,19 @@ impl<R: Read> MrtReader<R> {
             }
             if is_rule(&self.line) {
                 in_note = false;
-            } else if self.line.starts_with(b"Note") {
+            } else if begins_section(&self.line) {
                 in_note = true;
             } else if !in_note && !is_blank(&self.line) {
                 self.pending = true;
                 return Ok(());
             }
+        }
+        if in_note {
+            let problem = RowProblem::Format(
+                "no rule line stands between the notes and the data, so the data cannot be told"
+                    .to_owned(),
+            );
+            return Err(RowError::fatal(self.lines.line(), problem));
         }
         Ok(())
     }
@@ -308,6 +316,13 @@ fn is_rule(line: &[u8]) -> bool {
     let line = line.trim_ascii();
     let uniform = |mark: u8| line.iter().all(|b| *b == mark);
     line.len() >= 20 && (uniform(b'-') || uniform(b'='))
+}
+
+/// A section between description and data: a note, acknowledgements, the closing line.
+fn begins_section(line: &[u8]) -> bool {
+    let heading =
+        line.first().is_some_and(u8::is_ascii_uppercase) && line.trim_ascii_end().ends_with(b":");
+    heading || line.starts_with(b"Note") || line.starts_with(b"(End)")
 }
 
 fn described_files(line: &str) -> Option<String> {

@@ -138,6 +138,9 @@ impl BinaryRows {
         match field.kind {
             Type::Char => text(bytes),
             Type::UnicodeChar => unicode(bytes),
+            // A lone bit is the leftmost by the standard; one widely used writer sets another, and
+            // the rest are padding, so any set bit counts.
+            Type::Bit if count == 1 => Ok(u8::from(bytes != [0]).to_string()),
             Type::Bit => Ok(bits(bytes, count)),
             kind => Ok(values(kind, bytes)),
         }
