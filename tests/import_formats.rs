@@ -1,8 +1,7 @@
 //! Reading tables through their descriptions: the bundled sources, and what goes wrong with bad
 //! files. Records are collected in memory; no catalogue is involved.
 
-// A panic in the helpers is the report of the test.
-#![allow(clippy::unwrap_used)]
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
 
 use std::fs::File;
 use std::io::{self, Cursor, Read};
@@ -145,6 +144,7 @@ fn refusal(table: &str) -> String {
 }
 
 #[test]
+#[allow(clippy::too_many_lines, reason = "one table of cases")]
 fn bad_rows_are_refused_with_file_line_column_and_text() {
     let cases = [
         (

@@ -1,8 +1,7 @@
 //! Files that are broken or mean harm: each is refused with a sentence, none panics, none is
 //! half-read in silence.
 
-// A panic in the helpers is the report of the test.
-#![allow(clippy::unwrap_used)]
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
 
 use std::io::{Cursor, Read};
 

@@ -2,8 +2,7 @@
 //! says how and with which version): whole numbers, words and truth values exactly, floating-point
 //! numbers to 2 ulp.
 
-// A panic in the helpers is the report of the test.
-#![allow(clippy::unwrap_used)]
+#![allow(clippy::unwrap_used, reason = "a panic in a test is its report")]
 
 use std::fs::File;
 use std::io::Read;
