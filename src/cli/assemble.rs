@@ -1,6 +1,6 @@
 //! From a list of species to what the catalogue holds of them.
 
-use vocabulary::atom::{Species, SpeciesRequest};
+use vocabulary::atom::{Species, SpeciesRequest, Stages};
 use vocabulary::light::SpectralRange;
 
 use super::CliError;
@@ -31,7 +31,7 @@ pub fn spectra(
     let mut not_held = Vec::new();
     for request in requests {
         let mut found = false;
-        for &species in held.iter().filter(|s| request.matches(**s)) {
+        for &species in held.iter().filter(|s| is_asked_for(*request, **s)) {
             found = true;
             let named = request.single().is_some();
             match spectra.iter_mut().find(|s| s.species == species) {
@@ -47,6 +47,14 @@ pub fn spectra(
         }
     }
     Ok(Assembled { spectra, not_held })
+}
+
+/// A bare element means all its stages that are held, but for the one-electron ions from Li III on:
+/// the calculator knows each of them, and hardly a source that is asked about without naming them
+/// holds them.
+fn is_asked_for(request: SpeciesRequest, species: Species) -> bool {
+    let stripped = species.is_one_electron() && species.atomic_number > 2;
+    request.matches(species) && !(stripped && request.stages == Stages::All)
 }
 
 fn spectrum(
