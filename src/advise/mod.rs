@@ -1,11 +1,13 @@
 //! The answers: pure functions from lines and conditions to verdicts. No I/O here.
 
 pub mod audit;
+pub mod climb;
 pub mod contrast;
 mod coverage;
 mod emission;
 mod error;
 mod feature;
+pub mod hyperfine;
 mod judge;
 pub mod marks;
 mod median;
@@ -15,6 +17,7 @@ mod resolving;
 mod scene;
 mod spectrum;
 mod target;
+pub mod tune;
 mod unrated;
 mod verdict;
 pub mod vet;

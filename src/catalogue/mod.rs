@@ -9,6 +9,7 @@ mod ingest;
 mod query;
 pub mod reconcile;
 mod reports;
+mod resonance;
 mod sources;
 mod store;
 
@@ -16,5 +17,6 @@ pub use error::{CatalogueError, Result};
 pub use files::SourceFiles;
 pub use ingest::{ImportSummary, Incoming, ReportWriter};
 pub use query::Levels;
+pub use resonance::{BranchingRow, HyperfineRow, LifetimeRow, NamedLevel, ResonanceTables};
 pub use sources::SourceRow;
 pub use store::{Catalogue, Opened};

@@ -45,6 +45,16 @@ pub enum CliError {
         #[source]
         cause: std::io::Error,
     },
+    /// A file of lasers that cannot be used.
+    #[error("{}:{line}: {problem}", path.display())]
+    LaserFile {
+        /// The file.
+        path: PathBuf,
+        /// The line, from 1.
+        line: u64,
+        /// What is wrong there.
+        problem: String,
+    },
     /// The catalogue.
     #[error(transparent)]
     Catalogue(#[from] CatalogueError),
@@ -63,6 +73,9 @@ pub enum CliError {
     /// The list of known findings.
     #[error(transparent)]
     Known(#[from] crate::advise::audit::KnownError),
+    /// The answer about a laser.
+    #[error(transparent)]
+    Laser(#[from] crate::advise::tune::LaserError),
     /// A table to import.
     #[error(transparent)]
     Import(#[from] importers::ImportError),
@@ -80,6 +93,7 @@ impl CliError {
             | Self::Mix { .. }
             | Self::Usage(_)
             | Self::Options(_) => Exit::Usage,
+            Self::Laser(cause) if cause.is_usage() => Exit::Usage,
             Self::Output(cause) if cause.kind() == std::io::ErrorKind::BrokenPipe => Exit::Answered,
             _ => Exit::Failed,
         }

@@ -2,6 +2,8 @@
 
 mod assemble;
 mod audit;
+mod bench;
+mod climb;
 mod contrast;
 mod describe;
 mod error;
@@ -15,6 +17,7 @@ mod pairs;
 mod progress;
 mod sources;
 mod table_file;
+mod tune;
 mod vet;
 mod window;
 
@@ -44,6 +47,8 @@ enum Command {
     Pairs(Box<pairs::Arguments>),
     Audit(audit::Arguments),
     Contrast(contrast::Arguments),
+    Tune(tune::Arguments),
+    Climb(climb::Arguments),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -73,6 +78,8 @@ pub fn run() -> Result<Exit, CliError> {
         Command::Vet(arguments) => vet::run(arguments, context)?,
         Command::Audit(arguments) => audit::run(&arguments, context)?,
         Command::Contrast(arguments) => contrast::run(&arguments, context)?,
+        Command::Tune(arguments) => tune::run(arguments, context)?,
+        Command::Climb(arguments) => climb::run(arguments, context)?,
         Command::Import(arguments) => import::run(&arguments, context)?,
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,

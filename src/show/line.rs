@@ -15,7 +15,8 @@ pub(super) const fn medium_word(medium: PositionMedium) -> &'static str {
     }
 }
 
-const fn position_word(origin: PositionOrigin) -> &'static str {
+/// `measured`, `ritz` or `computed`.
+pub(super) const fn position_word(origin: PositionOrigin) -> &'static str {
     match origin {
         PositionOrigin::Measured => "measured",
         PositionOrigin::Ritz => "ritz",
@@ -23,7 +24,8 @@ const fn position_word(origin: PositionOrigin) -> &'static str {
     }
 }
 
-const fn rate_word(origin: RateOrigin) -> &'static str {
+/// `published`, `derived`, `computed` or `prior`.
+pub(super) const fn rate_word(origin: RateOrigin) -> &'static str {
     match origin {
         RateOrigin::Published => "published",
         RateOrigin::Derived => "derived",
@@ -41,7 +43,8 @@ const fn kind_word(kind: LineKind) -> &'static str {
     }
 }
 
-fn level_object(level: &Level) -> Value {
+/// The stable keys of a level.
+pub(super) fn level_object(level: &Level) -> Value {
     json!({
         "energy_per_cm": level.energy_per_cm,
         "energy_uncertainty_per_cm": level.energy_uncertainty_per_cm,
@@ -131,30 +134,47 @@ pub(super) fn multiplet_cell(line: &Line) -> String {
     transition(line, false)
 }
 
+/// Two levels as [`transition_cell`] writes them.
+pub(super) fn transition_of(lower: &Level, upper: &Level) -> String {
+    between(Some(lower), Some(upper), true)
+}
+
+/// One level: `3d 2D 3/2`.
+pub(super) fn level_name(level: &Level) -> String {
+    level_cell(Some(level), &outer_shells(Some(level)).join(" "), true)
+}
+
 fn transition(line: &Line, with_j: bool) -> String {
-    let shells = |level: &Option<std::sync::Arc<Level>>| -> Vec<String> {
-        let text = level.as_ref().and_then(|l| l.configuration.clone());
-        let mut shells: Vec<String> = text
-            .iter()
-            .flat_map(|t| t.split_whitespace())
-            .map(str::to_owned)
-            .collect();
-        let closed = shells.iter().take_while(|s| is_closed(s)).count();
-        shells.drain(..closed.min(shells.len().saturating_sub(1)));
-        shells
-    };
-    let (mut lower, mut upper) = (shells(&line.lower), shells(&line.upper));
-    while lower.len() > 1 && upper.len() > 1 && lower[0] == upper[0] {
-        lower.remove(0);
-        upper.remove(0);
+    between(line.lower.as_deref(), line.upper.as_deref(), with_j)
+}
+
+/// Shells of a level without the closed ones at the beginning.
+fn outer_shells(level: Option<&Level>) -> Vec<String> {
+    let text = level.and_then(|l| l.configuration.clone());
+    let mut shells: Vec<String> = text
+        .iter()
+        .flat_map(|t| t.split_whitespace())
+        .map(str::to_owned)
+        .collect();
+    let closed = shells.iter().take_while(|s| is_closed(s)).count();
+    shells.drain(..closed.min(shells.len().saturating_sub(1)));
+    // The term of a closed core says nothing.
+    if closed > 0 && shells.len() > 1 && shells[0] == "(1S)" {
+        shells.remove(0);
     }
-    let cell = |level: &Option<std::sync::Arc<Level>>, shells: &[String]| {
-        level_cell(level.as_deref(), &shells.join(" "), with_j)
-    };
+    shells
+}
+
+fn between(lower: Option<&Level>, upper: Option<&Level>, with_j: bool) -> String {
+    let (mut from, mut to) = (outer_shells(lower), outer_shells(upper));
+    while from.len() > 1 && to.len() > 1 && from[0] == to[0] {
+        from.remove(0);
+        to.remove(0);
+    }
     format!(
         "{} →\n{}",
-        cell(&line.lower, &lower),
-        cell(&line.upper, &upper)
+        level_cell(lower, &from.join(" "), with_j),
+        level_cell(upper, &to.join(" "), with_j)
     )
 }
 

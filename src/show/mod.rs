@@ -1,6 +1,7 @@
 //! Answers as tables, CSV, JSON and Markdown. No physics here.
 
 mod audit;
+mod climb;
 mod contrast;
 mod csv;
 mod json;
@@ -14,14 +15,17 @@ mod prior;
 mod sheet;
 mod table;
 pub mod text;
+mod tune;
 mod vet;
 mod window;
 
 pub use audit::{AuditWish, audit};
+pub use climb::{ClimbWish, climb};
 pub use contrast::contrast;
 pub use listing::{forgotten, imported, sources};
 pub use marks::marks;
 pub use pairs::{Measured, pairs, plot};
 pub use sheet::{Align, Column, Context, Format, Sheet};
+pub use tune::{TuneWish, tune};
 pub use vet::{WORTH_A_ROW, vet};
 pub use window::{Wish, window};
