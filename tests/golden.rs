@@ -78,6 +78,7 @@ fn no_line_of_an_answer_is_wider_than_a_page() {
     for command in [
         "lineclear window 585..590nm --of Na,Ne,He",
         "lineclear window 200..230nm --of Fe,Ni,Cu --components --strongest 40",
+        "lineclear passband choose --target \"He I 667.8nm\" --among C,O,Fe,Cu --te 3eV",
         "lineclear sources",
         "lineclear vet \"Cs I@852.1nm\" --among Ar,Fe --fwhm 0.1nm --orders 3",
     ] {

@@ -73,6 +73,8 @@ fn every_json_key_is_documented() {
     for command in [
         "lineclear window 588..589.7nm --of Na,He",
         "lineclear vet \"Al I 308.215nm\" --among V --fwhm 0.02nm",
+        "lineclear passband --centre 667.9nm --fwhm 2nm --among He,Fe",
+        "lineclear passband choose --target \"He I 667.8nm\" --among Fe",
         "lineclear sources",
         "lineclear import data/morton2003 --dry-run",
     ] {

@@ -49,6 +49,33 @@ pub enum AdviseError {
         /// The nearest that are held, in words.
         nearest: Vec<String>,
     },
+    /// A target that the filter does not let through.
+    #[error(
+        "{wanted}: the line near {line_nm:.1} nm lies outside the passband around {centre_nm:.3} nm \
+         (FWHM {fwhm_nm} nm); move the centre there, or tilt less"
+    )]
+    OutsidePassband {
+        /// As it was typed.
+        wanted: String,
+        /// Where the line lies, nm.
+        line_nm: f64,
+        /// Where the passband lies in this light, nm.
+        centre_nm: f64,
+        /// Its width, nm.
+        fwhm_nm: f64,
+    },
+    /// A target without a rate.
+    #[error("{wanted}: no rate of this line is known, so no filter can be weighed for it")]
+    TargetUnrated {
+        /// As it was typed.
+        wanted: String,
+    },
+    /// A filter or an illumination that no transmission can be computed from.
+    #[error(transparent)]
+    Filter(#[from] crate::calc::filter::FilterError),
+    /// A continuum that cannot be computed.
+    #[error("the free–free continuum: {0}")]
+    Continuum(#[from] PlasmaError),
     /// Wavelengths in air outside the range of the index.
     #[error(transparent)]
     Light(#[from] vocabulary::light::QuantityError),

@@ -8,7 +8,7 @@ use super::position::placed;
 use super::scene::Scene;
 
 /// How far from the typed position a line may lie, nm, where the instrument is narrower.
-const LEAST_TOLERANCE_NM: f64 = 0.05;
+pub(super) const LEAST_TOLERANCE_NM: f64 = 0.05;
 /// How many lines are offered where none is found.
 const OFFERED: usize = 3;
 
@@ -30,17 +30,17 @@ impl Wanted {
 }
 
 /// The feature that is meant: of a named species the one with the line nearest to the position;
-/// else the brightest within reach. A line is in reach within one instrument width, or 0.05 nm.
+/// else the brightest within reach.
 ///
 /// # Errors
 /// No line in reach: the nearest ones are offered.
 pub(super) fn find(
     scene: &Scene<'_>,
     wanted: &Wanted,
+    reach_nm: f64,
     medium: Medium,
     air: &Air,
 ) -> Result<usize, AdviseError> {
-    let reach_nm = scene.width.at_nm(wanted.vacuum_nm).max(LEAST_TOLERANCE_NM);
     let near = scene
         .around(wanted.vacuum_nm, reach_nm)
         .filter(|&i| wanted.means(scene.spectra[scene.emissions[i].spectrum].species));

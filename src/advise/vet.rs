@@ -11,7 +11,7 @@ use super::position::{Placed, placed};
 use super::resolving::clear_at_resolving_power;
 use super::scene::{REACH_WIDTHS, Scene, seen};
 use super::spectrum::Spectrum;
-use super::target::{Wanted, find, strongest};
+use super::target::{LEAST_TOLERANCE_NM, Wanted, find, strongest};
 use super::verdict::{Interference, Verdict, VerdictRange};
 use super::window::{Unjudged, WindowFeature};
 use crate::calc::plasma::{absorption_f, line_centre_optical_depth, self_absorption_factor};
@@ -136,7 +136,9 @@ pub fn answer(
 ) -> Result<Answer, AdviseError> {
     let air = Air::standard();
     let scene = Scene::new(spectra, &question.conditions, question.width)?;
-    let index = find(&scene, &question.wanted, question.medium, air)?;
+    let wanted = &question.wanted;
+    let reach_nm = (question.width.at_nm(wanted.vacuum_nm)).max(LEAST_TOLERANCE_NM);
+    let index = find(&scene, wanted, reach_nm, question.medium, air)?;
     let nothing_held = !question.not_held.is_empty();
     let judge = Judge::new(&scene, scene.features[index].nm, nothing_held);
     let feature = judge.feature(index, 0.0, question.medium, air)?;

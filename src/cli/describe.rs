@@ -1,11 +1,13 @@
 //! What every answer states beside its rows: conditions, assumptions, sources.
 
 use serde_json::{Map, Value, json};
-use vocabulary::light::Medium;
+use vocabulary::atom::SpeciesRequest;
+use vocabulary::light::{Medium, Temperature};
 use vocabulary::spectrum::Line;
 
 use super::CliError;
 use super::options::Checked;
+use crate::advise::Conditions;
 use crate::catalogue::Catalogue;
 use crate::show::Context;
 
@@ -20,10 +22,25 @@ pub fn context<'l>(
     let mut context = Context {
         command,
         medium: medium.to_string(),
-        conditions: conditions(checked),
+        conditions: conditions(
+            &checked.conditions,
+            checked.te,
+            checked.gas,
+            &checked.amounts,
+        ),
         assumed: checked.assumed.clone(),
         ..Context::default()
     };
+    cite(&mut context, catalogue, lines)?;
+    Ok(context)
+}
+
+/// Adds the sources of lines.
+pub fn cite<'l>(
+    context: &mut Context,
+    catalogue: &Catalogue,
+    lines: impl Iterator<Item = &'l Line> + Clone,
+) -> Result<(), CliError> {
     let used = |key: &str| {
         lines
             .clone()
@@ -34,27 +51,31 @@ pub fn context<'l>(
             context.sources.insert(key, (citation, licence));
         }
     }
-    Ok(context)
+    Ok(())
 }
 
 /// The light source under its stable keys.
-fn conditions(checked: &Checked) -> Map<String, Value> {
+pub fn conditions(
+    source: &Conditions,
+    te: Temperature,
+    gas: Temperature,
+    amounts: &[(SpeciesRequest, f64)],
+) -> Map<String, Value> {
     let mut out = Map::new();
     let mut put = |key: &str, value: Value| out.insert(key.to_owned(), value);
-    let model = format!("{:?}", checked.conditions.model).to_lowercase();
+    let model = format!("{:?}", source.model).to_lowercase();
     put("model", json!(model));
-    put("electron_temperature_ev", json!(checked.te.ev()));
+    put("electron_temperature_ev", json!(te.ev()));
     put(
         "electron_density_per_m3",
-        json!(checked.conditions.electron_density_per_m3),
+        json!(source.electron_density_per_m3),
     );
-    put("gas_temperature_k", json!(checked.gas.kelvin()));
+    put("gas_temperature_k", json!(gas.kelvin()));
     put(
         "air",
         json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"),
     );
-    let amounts: Map<String, Value> = checked
-        .amounts
+    let amounts: Map<String, Value> = amounts
         .iter()
         .map(|(species, a)| (species.to_string(), json!(a)))
         .collect();

@@ -58,6 +58,18 @@ pub enum CliError {
     /// The catalogue.
     #[error(transparent)]
     Catalogue(#[from] CatalogueError),
+    /// A filter or a beam that no transmission can be computed from.
+    #[error(transparent)]
+    Filter(#[from] crate::calc::filter::FilterError),
+    /// A measured curve that cannot be used.
+    #[error("{}: {cause}", path.display())]
+    Curve {
+        /// The file.
+        path: PathBuf,
+        /// What is wrong with it.
+        #[source]
+        cause: crate::calc::filter::FilterError,
+    },
     /// The answer.
     #[error(transparent)]
     Advise(#[from] AdviseError),
@@ -92,6 +104,8 @@ impl CliError {
             | Self::Species(_)
             | Self::Mix { .. }
             | Self::Usage(_)
+            | Self::Filter(_)
+            | Self::Advise(AdviseError::Filter(_) | AdviseError::OutsidePassband { .. })
             | Self::Options(_) => Exit::Usage,
             Self::Laser(cause) if cause.is_usage() => Exit::Usage,
             Self::Output(cause) if cause.kind() == std::io::ErrorKind::BrokenPipe => Exit::Answered,

@@ -5,6 +5,7 @@ mod audit;
 mod bench;
 mod climb;
 mod contrast;
+mod choose;
 mod describe;
 mod error;
 mod exit;
@@ -12,8 +13,10 @@ mod forget;
 mod import;
 mod line;
 mod marks;
+mod optics;
 mod options;
 mod pairs;
+mod passband;
 mod progress;
 mod sources;
 mod table_file;
@@ -49,6 +52,7 @@ enum Command {
     Contrast(contrast::Arguments),
     Tune(tune::Arguments),
     Climb(climb::Arguments),
+    Passband(Box<passband::Arguments>),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -80,6 +84,7 @@ pub fn run() -> Result<Exit, CliError> {
         Command::Contrast(arguments) => contrast::run(&arguments, context)?,
         Command::Tune(arguments) => tune::run(arguments, context)?,
         Command::Climb(arguments) => climb::run(arguments, context)?,
+        Command::Passband(arguments) => passband::run(*arguments, context)?,
         Command::Import(arguments) => import::run(&arguments, context)?,
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,

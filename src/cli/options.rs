@@ -73,9 +73,9 @@ pub struct OutputOptions {
     pub format: Format,
 }
 
-/// The light source and the instrument.
+/// The light source.
 #[derive(Args, Debug)]
-pub struct ConditionOptions {
+pub struct SourceOptions {
     /// How the light of species compares: `visible` takes each species as seen, `lte` takes real
     /// amounts at one temperature
     #[arg(long, value_enum, default_value_t = ModelName::Visible, value_name = "MODEL")]
@@ -89,9 +89,17 @@ pub struct ConditionOptions {
     /// Temperature of the atoms, for Doppler widths [default: 1000K]
     #[arg(long, value_name = "TEMPERATURE", allow_hyphen_values = true)]
     gas_temperature: Option<String>,
-    /// Relative amounts, `Fe=0.01,He=1`; species not named here have the amount 1
+    /// Relative amounts, `Fe=0.01,He=1`, or a file mix.toml with a table [amounts]; species not named
+    /// there have the amount 1
     #[arg(long, value_name = "AMOUNTS", allow_hyphen_values = true)]
     mix: Option<String>,
+}
+
+/// The light source and the instrument.
+#[derive(Args, Debug)]
+pub struct ConditionOptions {
+    #[command(flatten)]
+    source: SourceOptions,
     /// Full width at half maximum of the instrument [default: 0.1nm]
     #[arg(
         long,
@@ -109,6 +117,23 @@ pub struct ConditionOptions {
 enum ModelName {
     Visible,
     Lte,
+}
+
+/// A checked light source, and what nobody gave.
+#[derive(Clone, Debug)]
+pub struct CheckedSource {
+    /// The light source.
+    pub conditions: Conditions,
+    /// Electron temperature, as it will be shown.
+    pub te: Temperature,
+    /// Temperatures to scan, where a range was given; `te` is then their middle.
+    pub te_scan: Vec<Temperature>,
+    /// Gas temperature, as it will be shown.
+    pub gas: Temperature,
+    /// Amounts given.
+    pub amounts: Vec<(SpeciesRequest, f64)>,
+    /// What was assumed, one phrase each.
+    pub assumed: Vec<String>,
 }
 
 /// Checked conditions, and what nobody gave.
@@ -131,6 +156,37 @@ pub struct Checked {
 impl ConditionOptions {
     /// Resolves what was typed; `range` is where a resolving power becomes a width.
     pub fn check(&self, range: &SpectralRange) -> Result<Checked, CliError> {
+        let mut source = self.source.check()?;
+        if !source.te_scan.is_empty() {
+            return Err(CliError::Options(
+                "--te takes one temperature here, such as 1eV; `passband` scans a range",
+            ));
+        }
+        let width = match (self.resolving, &self.fwhm) {
+            (Some(power), _) => resolving(power, range)?,
+            (None, Some(width)) => width.parse()?,
+            (None, None) => {
+                let before = usize::from(source.amounts.is_empty());
+                let at = source.assumed.len() - before;
+                let assumed = "instrument width (FWHM) 0.1nm".to_owned();
+                source.assumed.insert(at, assumed);
+                SpectralWidth::from_nm(0.1)
+            }
+        };
+        Ok(Checked {
+            conditions: source.conditions,
+            te: source.te,
+            gas: source.gas,
+            width,
+            amounts: source.amounts,
+            assumed: source.assumed,
+        })
+    }
+}
+
+impl SourceOptions {
+    /// Resolves what was typed.
+    pub fn check(&self) -> Result<CheckedSource, CliError> {
         let mut assumed = Vec::new();
         if self.model == ModelName::Visible {
             assumed.push("model visible (each species as bright as its amount)".to_owned());
@@ -141,12 +197,23 @@ impl ConditionOptions {
                 default.to_owned()
             })
         };
-        let te: Temperature = or_assume(&self.te, "1eV", "electron temperature").parse()?;
+        let te_text = or_assume(&self.te, "1eV", "electron temperature");
         let gas: Temperature =
             or_assume(&self.gas_temperature, "1000K", "gas temperature").parse()?;
-        let width = match self.resolving {
-            Some(power) => resolving(power, range)?,
-            None => or_assume(&self.fwhm, "0.1nm", "instrument width (FWHM)").parse()?,
+        let te_scan = match te_text.split_once("..") {
+            Some((from, rest)) => temperatures(&te_text, from, rest)?,
+            None => Vec::new(),
+        };
+        let te = match (te_scan.first(), te_scan.last()) {
+            (Some(first), Some(last)) => {
+                let middle = (first.ev() * last.ev()).sqrt();
+                let te = Temperature::from_ev(middle.clamp(first.ev(), last.ev()));
+                assumed.push(format!(
+                    "electron temperature {middle:.3}eV outside the scan"
+                ));
+                te.unwrap_or(*first)
+            }
+            _ => te_text.parse()?,
         };
         let ne = self
             .ne
@@ -162,7 +229,7 @@ impl ConditionOptions {
         let amounts = self
             .mix
             .as_deref()
-            .map(parse_mix)
+            .map(mix)
             .transpose()?
             .unwrap_or_default();
         if amounts.is_empty() {
@@ -177,15 +244,97 @@ impl ConditionOptions {
             electron_density_per_m3: ne.map(NumberDensity::per_m3),
             gas_temperature_k: gas.kelvin(),
         };
-        Ok(Checked {
+        Ok(CheckedSource {
             conditions,
             te,
+            te_scan,
             gas,
-            width,
             amounts,
             assumed,
         })
     }
+}
+
+/// How many temperatures a range stands for where no number follows.
+const TEMPERATURES: u32 = 20;
+
+/// `0.5..5eV:20`: temperatures at equal ratios, ends included.
+fn temperatures(text: &str, from: &str, rest: &str) -> Result<Vec<Temperature>, CliError> {
+    let bad = |problem: &str| {
+        CliError::Usage(format!(
+            "`{text}`: {problem}; write a range of temperatures such as 0.5..5eV:20"
+        ))
+    };
+    let (to, count) = match rest.split_once(':') {
+        Some((to, count)) => {
+            let count = count.trim().parse::<u32>();
+            let count = count.ok().filter(|n| (2..=1000).contains(n));
+            (
+                to,
+                count.ok_or_else(|| bad("the number of steps lies between 2 and 1000"))?,
+            )
+        }
+        None => (rest, TEMPERATURES),
+    };
+    let last: Temperature = to.parse()?;
+    let unit = to.trim_start_matches(|c: char| !c.is_alphabetic());
+    let first: Temperature = match from.trim().parse::<f64>() {
+        Ok(_) => format!("{}{unit}", from.trim()).parse()?,
+        Err(_) => from.parse()?,
+    };
+    if first.ev() >= last.ev() {
+        return Err(bad("the range is empty or runs backwards"));
+    }
+    let ratio = last.ev() / first.ev();
+    let at = |step: u32| first.ev() * ratio.powf(f64::from(step) / f64::from(count - 1));
+    Ok((0..count)
+        .filter_map(|step| Temperature::from_ev(at(step)))
+        .collect())
+}
+
+/// Amounts typed, or in a file.
+fn mix(text: &str) -> Result<Vec<(SpeciesRequest, f64)>, CliError> {
+    let path = std::path::Path::new(text.trim());
+    if path
+        .extension()
+        .is_some_and(|e| e.eq_ignore_ascii_case("toml"))
+    {
+        return mix_file(path);
+    }
+    parse_mix(text)
+}
+
+/// The table `[amounts]` of a file, `"Fe I" = 0.01`.
+fn mix_file(path: &std::path::Path) -> Result<Vec<(SpeciesRequest, f64)>, CliError> {
+    let text = std::fs::read_to_string(path).map_err(|cause| CliError::Unreadable {
+        path: path.to_owned(),
+        cause,
+    })?;
+    let bad = |problem: String| {
+        CliError::Usage(format!(
+            "{}: {problem}; write a table [amounts] with lines such as \"Fe I\" = 0.01",
+            path.display()
+        ))
+    };
+    let table: toml::Table = text
+        .parse()
+        .map_err(|e: toml::de::Error| bad(e.message().trim().to_owned()))?;
+    let amounts = table
+        .get("amounts")
+        .and_then(toml::Value::as_table)
+        .ok_or_else(|| bad("holds no table [amounts]".into()))?;
+    let number = |value: &toml::Value| value.as_float().or(value.as_integer().map(|i| i as f64));
+    let entries = amounts
+        .iter()
+        .map(|(species, value)| match number(value) {
+            Some(amount) => Ok(format!("{species}={amount}")),
+            None => Err(bad(format!("the amount of {species} is no number"))),
+        })
+        .collect::<Result<Vec<_>, _>>()?;
+    if entries.is_empty() {
+        return Err(bad("the table [amounts] is empty".into()));
+    }
+    parse_mix(&entries.join(","))
 }
 
 fn resolving(power: f64, range: &SpectralRange) -> Result<SpectralWidth, CliError> {

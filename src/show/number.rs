@@ -47,6 +47,20 @@ pub fn percent(fraction: f64) -> String {
     }
 }
 
+/// A fraction near 1 as a percentage with two digits of what is missing: `99.948 %`; others as
+/// [`percent`].
+pub fn purity(fraction: f64) -> String {
+    let missing = 100.0 * (1.0 - fraction);
+    match missing {
+        m if !(0.0..=10.0).contains(&m) => percent(fraction),
+        m if m < 1e-4 => ">99.9999 %".into(),
+        m => {
+            let decimals = (1 - m.log10().floor() as i32).max(0) as usize;
+            format!("{:.decimals$} %", 100.0 - m)
+        }
+    }
+}
+
 /// A relative uncertainty in whole per cent, at least 1: ` ±1%`; ` ±?` where it is not stated.
 pub fn plus_minus(relative: Option<f64>) -> String {
     relative.map_or_else(
@@ -65,6 +79,15 @@ mod tests {
         assert_eq!(with_uncertainty(587.562_148, 0.000_097), "587.5621(1)");
         assert_eq!(with_uncertainty(587.562_148, 12.0), "588(12)");
         assert_eq!(with_uncertainty(587.562_148, 0.0), "587.5621");
+    }
+
+    #[test]
+    fn purities_show_what_is_missing() {
+        assert_eq!(purity(0.999_48), "99.948 %");
+        assert_eq!(purity(0.95), "95.0 %");
+        assert_eq!(purity(0.5), "50 %");
+        assert_eq!(purity(1.0), ">99.9999 %");
+        assert_eq!(purity(f64::NAN), "?");
     }
 
     #[test]

@@ -164,6 +164,11 @@ impl Filter {
         Ok(self)
     }
 
+    /// The form of the passband.
+    pub fn shape(&self) -> &Shape {
+        &self.shape
+    }
+
     /// Centre at normal incidence, nm.
     pub fn centre_nm(&self) -> f64 {
         self.centre_nm

@@ -1,0 +1,398 @@
+//! The answer of `passband`.
+
+use serde_json::{Map, Value, json};
+
+use super::line::{line_object, position_cell, transition_cell};
+use super::number::{percent, percent_in_table, purity};
+use super::sheet::{Align, Column, Context, Sheet};
+use super::vet::WORTH_A_ROW;
+use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
+use crate::advise::passband::{Answer, PassbandLine, Question, SPOILERS, Target};
+use crate::advise::scan::{TemperaturePoint, TiltPoint};
+use crate::advise::{Placed, Verdict};
+
+/// How many rows the table shows.
+const ROWS: usize = 15;
+
+const COLUMNS: [Column; 7] = [
+    Column::whole("position\nnm", Align::Left),
+    Column::whole("species", Align::Left),
+    Column::wrapped("lower → upper", Align::Left),
+    Column::whole("trans-\nmission", Align::Right),
+    Column::whole("part of\nlight", Align::Right),
+    Column::whole("", Align::Left),
+    Column::whole("source", Align::Left),
+];
+
+/// Builds the sheet of a passband.
+pub fn passband(answer: &Answer, question: &Question, context: Context) -> Sheet {
+    let worthy: Vec<&PassbandLine> = answer.lines.iter().filter(|l| is_worthy(l)).collect();
+    let notes = notes(answer, question, &context, worthy.len());
+    Sheet {
+        headline: headline(answer, question),
+        columns: COLUMNS.to_vec(),
+        rows: worthy.iter().take(ROWS).map(|l| row(l, answer)).collect(),
+        object: object(answer, context, &notes),
+        notes,
+        list: "lines",
+    }
+}
+
+fn is_worthy(line: &PassbandLine) -> bool {
+    line.is_target || line.light_fraction.is_some_and(|f| f >= WORTH_A_ROW)
+}
+
+pub(super) fn name(line: &vocabulary::spectrum::Line, placed: &Placed) -> String {
+    format!(
+        "{} {:.3} nm ({})",
+        line.species, placed.wavelength_nm, placed.medium
+    )
+}
+
+pub(super) fn headline(answer: &Answer, question: &Question) -> Vec<String> {
+    let filter = &question.filter;
+    let mut light = Vec::new();
+    if question.light.tilt_deg > 0.0 {
+        light.push(format!("tilted {}°", question.light.tilt_deg));
+    }
+    if let Some(f) = question.light.f_number {
+        light.push(format!("f/{f}"));
+    }
+    if question.light.warming_k != 0.0 {
+        light.push(format!("{:+} K", question.light.warming_k));
+    }
+    let how = if light.is_empty() {
+        String::new()
+    } else {
+        format!(", {}", light.join(", "))
+    };
+    let mut out = vec![format!(
+        "Filter {:.3} nm, FWHM {:.3} nm{how}: passes around {:.3} nm.",
+        filter.centre_nm(),
+        filter.fwhm_nm(),
+        answer.seen_centre_nm
+    )];
+    match &answer.target {
+        Some(target) => out.extend(target_words(target, answer)),
+        None => out.push("No rated line of these species comes through.".into()),
+    }
+    out
+}
+
+fn target_words(target: &Target, answer: &Answer) -> Vec<String> {
+    let pure = target.purity.map_or_else(|| "?".into(), purity);
+    let mut out = vec![format!(
+        "{}: {}; transmission {}, purity {pure}.",
+        name(&target.line, &target.placed),
+        verdict_words(target),
+        percent(target.transmission)
+    )];
+    if let Some(i) = target.interference {
+        let own = target
+            .own_species_fraction
+            .filter(|own| *own >= WORTH_A_ROW)
+            .map_or_else(String::new, |own| {
+                format!(
+                    "; other lines of {} add {}",
+                    target.line.species,
+                    percent(own)
+                )
+            });
+        let rated = if target.verdict.central == Verdict::Unrated {
+            "Rated light"
+        } else {
+            "Light"
+        };
+        out.push(format!(
+            "{rated} of other species: {} of its own (68 % interval {} to {}){own}.",
+            percent(i.fraction),
+            percent(i.low),
+            percent(i.high)
+        ));
+    }
+    out.extend(spoilers(answer));
+    if let Some(background) = answer.background_fraction {
+        out.push(format!(
+            "Background: {} of the light behind the filter.",
+            purity(background)
+        ));
+    }
+    out.push(drift_words(target));
+    out
+}
+
+/// The verdict; where it is `unrated`, what the rated lines alone say beside it.
+fn verdict_words(target: &Target) -> String {
+    match target.interference {
+        Some(i) if target.verdict.central == Verdict::Unrated => {
+            format!("unrated (the rated lines alone: {})", i.verdict())
+        }
+        _ => target.verdict.to_string(),
+    }
+}
+
+/// The lines of others that spoil most.
+pub(super) fn spoilers(answer: &Answer) -> Option<String> {
+    let words: Vec<String> = answer
+        .lines
+        .iter()
+        .filter(|l| !l.is_target && l.light_fraction.is_some_and(|f| f >= WORTH_A_ROW))
+        .take(SPOILERS)
+        .map(|l| {
+            let part = percent(l.light_fraction.unwrap_or(0.0));
+            format!("{} {:.3} ({part})", l.line.species, l.placed.wavelength_nm)
+        })
+        .collect();
+    (!words.is_empty()).then(|| format!("What spoils it most: {}.", words.join(", ")))
+}
+
+fn drift_words(target: &Target) -> String {
+    if target.interference.is_none() {
+        return "None of its light can be counted, so nothing can be said of drift.".into();
+    }
+    let way = |nm: Option<f64>, where_to: &str| match nm {
+        Some(nm) => format!("{nm:.2} nm to the {where_to}"),
+        None => format!("three widths to the {where_to}"),
+    };
+    let (blue, red) = target.drift_nm;
+    format!(
+        "The verdict on the rated lines holds while the passband drifts up to {} or {}.",
+        way(blue, "blue"),
+        way(red, "red")
+    )
+}
+
+fn row(line: &PassbandLine, answer: &Answer) -> Vec<String> {
+    let first = answer.target.as_ref().map(|t| t.placed.medium);
+    vec![
+        position_cell(&line.placed, first != Some(line.placed.medium)),
+        line.line.species.to_string(),
+        transition_cell(&line.line),
+        line.transmission
+            .map_or_else(|| "?".into(), percent_in_table),
+        line.light_fraction
+            .map_or_else(|| "?".into(), percent_in_table),
+        if line.is_target {
+            "target".into()
+        } else {
+            String::new()
+        },
+        sources_cell(std::iter::once(&line.line)),
+    ]
+}
+
+fn notes(answer: &Answer, question: &Question, context: &Context, worthy: usize) -> Vec<String> {
+    let mut notes = Vec::new();
+    if worthy > ROWS {
+        notes.push(format!(
+            "Shown: the {ROWS} brightest of {worthy} lines above 0.001 %."
+        ));
+    }
+    if answer.target.is_some() {
+        notes.extend(temperature_words(&answer.scan));
+        notes.extend(tilt_words(&answer.tilts));
+    }
+    notes.extend(judgement_notes(answer, question));
+    if !context.assumed.is_empty() {
+        notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
+    }
+    notes.push(MODEL.into());
+    notes.extend(lower_bound_note(&answer.lower_bounds));
+    notes.extend(context.source_notes());
+    notes
+}
+
+/// What the light and the filter are taken to be.
+pub(super) const MODEL: &str = "Optically thin; light is power; populations of LTE inside each \
+    species, Planck–Larkin weighted. Purity is the target's part of all rated light behind filter \
+    and detector. A filter moves to the blue by √(1 − sin²θ/n²) when tilted.";
+
+/// What cannot be judged, and what the filter leaves open.
+pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<String> {
+    let mut notes = Vec::new();
+    if let Some(target) = answer.target.as_ref().filter(|t| !t.remarks.is_empty()) {
+        let target_name = name(&target.line, &target.placed);
+        notes.push(format!("{target_name}: {}.", target.remarks.join("; ")));
+    }
+    let unrated: Vec<String> = answer
+        .lines
+        .iter()
+        .filter(|l| l.light_fraction.is_none())
+        .filter(|l| {
+            l.transmission
+                .is_some_and(|t| t >= 1e-2 * question.filter.peak())
+        })
+        .map(|l| format!("{} {:.3}", l.line.species, l.placed.wavelength_nm))
+        .collect();
+    if !unrated.is_empty() {
+        let more = unrated.len().saturating_sub(ROWS);
+        let end = if more > 0 {
+            format!(" and {more} more")
+        } else {
+            String::new()
+        };
+        notes.push(format!(
+            "Come through but are not rated (no rate is known, or the detector is not): {}{end}.",
+            unrated[..unrated.len().min(ROWS)].join(", ")
+        ));
+    }
+    notes.extend(unjudged_notes(&answer.unrated));
+    notes.push(reach_note(question));
+    notes
+}
+
+fn reach_note(question: &Question) -> String {
+    let (low, high) = question.background.reach_nm;
+    format!("Light from {low:.1} to {high:.1} nm counts; what leaks from beyond is not known.")
+}
+
+fn temperature_words(scan: &[TemperaturePoint]) -> Option<String> {
+    let known = || scan.iter().filter_map(|p| Some((p.kt_per_cm, p.purity?)));
+    let words: Vec<String> = thinned(known().collect())
+        .iter()
+        .map(|(kt, pure)| {
+            let ev = kt / vocabulary::light::constants::PER_CM_PER_EV;
+            format!("{} at {}", purity(*pure), temperature(ev))
+        })
+        .collect();
+    (!words.is_empty()).then(|| {
+        format!(
+            "Purity (lines alone) by electron temperature: {}.",
+            words.join(", ")
+        )
+    })
+}
+
+/// A temperature with three digits.
+fn temperature(ev: f64) -> String {
+    let digits = format!("{ev:.2e}");
+    format!("{} eV", digits.parse::<f64>().unwrap_or(ev))
+}
+
+fn tilt_words(tilts: &[TiltPoint]) -> Option<String> {
+    let known = tilts
+        .iter()
+        .filter_map(|p| Some((p.tilt_deg, (p.transmission?, p.purity?))))
+        .collect();
+    let words: Vec<String> = thinned(known)
+        .iter()
+        .map(|(tilt, (through, pure))| {
+            format!("{tilt}° {} at {}", purity(*pure), percent(*through))
+        })
+        .collect();
+    (!words.is_empty()).then(|| format!("Purity and transmission by tilt: {}.", words.join(", ")))
+}
+
+/// At most six entries, first and last among them.
+fn thinned<T: Copy>(all: Vec<T>) -> Vec<T> {
+    const MOST: usize = 6;
+    if all.len() <= MOST {
+        return all;
+    }
+    (0..MOST)
+        .map(|k| all[k * (all.len() - 1) / (MOST - 1)])
+        .collect()
+}
+
+fn object(answer: &Answer, mut context: Context, notes: &[String]) -> Map<String, Value> {
+    let filter = context.conditions.remove("filter").unwrap_or_default();
+    let mut object = context.object(notes);
+    let mut put = |key: &str, value: Value| object.insert(key.to_owned(), value);
+    put("filter", filter);
+    put("seen_centre_nm", json!(answer.seen_centre_nm));
+    put_target(&mut put, answer);
+    put("background_fraction", json!(answer.background_fraction));
+    put("spoilers", spoiler_values(answer));
+    put("lines", answer.lines.iter().filter_map(line).collect());
+    put("scan", answer.scan.iter().map(temperature_value).collect());
+    put("tilt_scan", answer.tilts.iter().map(tilt_value).collect());
+    put("unrated", unrated_value(&answer.unrated));
+    object
+}
+
+/// The stable keys about the target.
+pub(super) fn put_target(put: &mut dyn FnMut(&str, Value) -> Option<Value>, answer: &Answer) {
+    let target = answer.target.as_ref();
+    put(
+        "target",
+        target.map_or(Value::Null, |t| {
+            Value::Object(line_object(&t.line, &t.placed))
+        }),
+    );
+    put("transmission", json!(target.map(|t| t.transmission)));
+    put("purity", json!(target.and_then(|t| t.purity)));
+    let interference = target.and_then(|t| t.interference);
+    put(
+        "interference_fraction",
+        json!(interference.map(|i| i.fraction)),
+    );
+    put("interference_low", json!(interference.map(|i| i.low)));
+    put("interference_high", json!(interference.map(|i| i.high)));
+    put(
+        "own_species_fraction",
+        json!(target.and_then(|t| t.own_species_fraction)),
+    );
+    put(
+        "verdict",
+        json!(target.map_or("unrated", |t| t.verdict.central.word())),
+    );
+    put(
+        "verdict_range",
+        json!(target.map_or_else(|| "unrated".into(), |t| t.verdict.to_string())),
+    );
+    put(
+        "remarks",
+        json!(target.map(|t| t.remarks.clone()).unwrap_or_default()),
+    );
+    put("drift_to_blue_nm", json!(target.and_then(|t| t.drift_nm.0)));
+    put("drift_to_red_nm", json!(target.and_then(|t| t.drift_nm.1)));
+}
+
+fn spoiler_values(answer: &Answer) -> Value {
+    answer
+        .lines
+        .iter()
+        .filter(|l| !l.is_target && l.light_fraction.is_some())
+        .take(SPOILERS)
+        .filter_map(line)
+        .collect()
+}
+
+/// Below this part of the light a line is left out of the JSON.
+const LEAST: f64 = 1e-9;
+
+fn line(line: &PassbandLine) -> Option<Value> {
+    if line.light_fraction.is_some_and(|f| f < LEAST) && !line.is_target {
+        return None;
+    }
+    let mut object = line_object(&line.line, &line.placed);
+    object.insert("transmission".into(), json!(line.transmission));
+    object.insert("light_fraction".into(), json!(line.light_fraction));
+    object.insert("is_target".into(), json!(line.is_target));
+    Some(Value::Object(object))
+}
+
+fn temperature_value(point: &TemperaturePoint) -> Value {
+    json!({
+        "electron_temperature_ev": point.kt_per_cm / vocabulary::light::constants::PER_CM_PER_EV,
+        "purity": point.purity,
+        "interference_fraction": point.interference_fraction,
+        "verdict": word(point.interference_fraction),
+    })
+}
+
+fn tilt_value(point: &TiltPoint) -> Value {
+    json!({
+        "tilt_deg": point.tilt_deg,
+        "seen_centre_nm": point.centre_nm,
+        "transmission": point.transmission,
+        "purity": point.purity,
+        "interference_fraction": point.interference_fraction,
+        "verdict": word(point.interference_fraction),
+    })
+}
+
+/// What the rated lines alone say.
+fn word(fraction: Option<f64>) -> &'static str {
+    fraction.map_or(Verdict::Unrated, Verdict::of).word()
+}
