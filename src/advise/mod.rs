@@ -5,6 +5,7 @@ pub mod climb;
 pub mod contrast;
 pub mod background;
 pub mod choose;
+pub mod contrast;
 mod coverage;
 mod emission;
 mod error;

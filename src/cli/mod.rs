@@ -6,6 +6,7 @@ mod bench;
 mod climb;
 mod contrast;
 mod choose;
+mod contrast;
 mod describe;
 mod error;
 mod exit;
