@@ -1,10 +1,9 @@
 //! The answers: pure functions from lines and conditions to verdicts. No I/O here.
 
 pub mod audit;
-pub mod climb;
-pub mod contrast;
 pub mod background;
 pub mod choose;
+pub mod climb;
 pub mod contrast;
 mod coverage;
 mod emission;

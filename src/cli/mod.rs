@@ -3,9 +3,8 @@
 mod assemble;
 mod audit;
 mod bench;
-mod climb;
-mod contrast;
 mod choose;
+mod climb;
 mod contrast;
 mod describe;
 mod error;

@@ -1,9 +1,8 @@
 //! Answers as tables, CSV, JSON and Markdown. No physics here.
 
 mod audit;
-mod climb;
-mod contrast;
 mod choose;
+mod climb;
 mod contrast;
 mod csv;
 mod json;
@@ -23,8 +22,8 @@ mod vet;
 mod window;
 
 pub use audit::{AuditWish, audit};
-pub use climb::{ClimbWish, climb};
 pub use choose::chosen;
+pub use climb::{ClimbWish, climb};
 pub use contrast::contrast;
 pub use listing::{forgotten, imported, sources};
 pub use marks::marks;
