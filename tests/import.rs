@@ -135,3 +135,59 @@ fn a_table_without_a_licence_needs_one_stated() {
             .contains("by permission")
     );
 }
+
+#[test]
+fn a_file_that_describes_itself_comes_in_with_a_citation_and_a_licence() {
+    let folder = tempfile::tempdir().unwrap();
+    let file = folder.path().join("bench.ecsv");
+    let text = "# %ECSV 1.0\n# ---\n# datatype:\n# - {name: species, datatype: string}\n\
+                # - {name: wavelength, unit: nm, datatype: float64}\n\
+                # - {name: rate, unit: 1 / s, datatype: float64}\n\
+                species wavelength rate\n\"W I\" 500.1234 1e7\n";
+    std::fs::write(&file, text).unwrap();
+    let path = file.to_str().unwrap();
+    let (_, said, exit) = run(folder.path(), &["import", path, "--medium", "air"]);
+    assert!(exit != 0 && said.contains("--citation"), "{said}");
+    let stated = [
+        "--citation",
+        "Harrow Bay logbook 13 (invented)",
+        "--licence",
+        "CC0-1.0",
+    ];
+    let mut command = vec!["import", path];
+    command.extend(stated);
+    let (_, said, exit) = run(folder.path(), &command);
+    assert!(
+        exit == 1 && said.contains("medium"),
+        "never guessed: {said}"
+    );
+    command.extend(["--medium", "air"]);
+    let (said, error, exit) = run(folder.path(), &command);
+    assert!(
+        exit == 0 && said.contains("bench: 1 rows read, 1 kept"),
+        "{said}{error}"
+    );
+    let (lines, _, _) = run(
+        folder.path(),
+        &["window", "500.1..500.2nm", "--of", "W I", "--as", "csv"],
+    );
+    assert!(
+        lines.contains("500.1234") && lines.contains("bench"),
+        "{lines}"
+    );
+}
+
+#[test]
+fn a_plain_table_is_explained_with_a_mapping_to_edit() {
+    let folder = tempfile::tempdir().unwrap();
+    table(folder.path(), GOOD);
+    let file = folder.path().join("lines.csv");
+    let path = file.to_str().unwrap();
+    let (said, _, exit) = run(folder.path(), &["import", "--explain", path]);
+    assert!(
+        exit == 0 && said.contains("wavelength_nm") && said.contains("[table.columns]"),
+        "{said}"
+    );
+    let (_, said, exit) = run(folder.path(), &["import", path]);
+    assert!(exit == 1 && said.contains("--explain"), "{said}");
+}

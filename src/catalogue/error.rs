@@ -92,6 +92,17 @@ pub enum CatalogueError {
         /// What was stated.
         stated: String,
     },
+    /// A file that does not say what its columns mean.
+    #[error(
+        "{}: this file does not describe itself; `lineclear import --explain {}` offers a \
+         source.toml to edit",
+        path.display(),
+        path.display()
+    )]
+    NeedsDescription {
+        /// The file.
+        path: PathBuf,
+    },
     /// No licence is known.
     #[error("`{key}`: source.toml names no licence; state one with --licence, in words if need be")]
     NoLicence {

@@ -4,8 +4,10 @@ use std::fs::File;
 use std::io::{self, BufReader, Read};
 use std::path::{Path, PathBuf};
 
-use importers::source::SourceDescription;
-use importers::{ReadOptions, read_source};
+use importers::detect::Detected;
+use importers::explain::Explanation;
+use importers::source::{Format, SourceDescription};
+use importers::{Limits, ReadOptions, read_source};
 use sha2::{Digest, Sha256};
 
 use super::error::{CatalogueError, Result};
@@ -57,6 +59,45 @@ impl SourceFiles {
             description,
             folder,
             checksum,
+        })
+    }
+
+    /// Takes a file that describes itself (a machine-readable table, VOTable, ECSV, XSAMS, FITS;
+    /// packed or not) as a source of its own.
+    ///
+    /// # Errors
+    /// A file that cannot be read or does not describe itself; a key that cannot be used.
+    pub fn self_describing(path: &Path, stated: &Stated) -> Result<Self> {
+        let found = explain(path)?.detected;
+        let format = match (stated.format, found) {
+            (Some(format), _) | (None, Detected::Table(format)) => format,
+            _ => Format::Delimited,
+        };
+        let Some(word) = self_describing_word(format) else {
+            return Err(CatalogueError::NeedsDescription {
+                path: path.to_owned(),
+            });
+        };
+        let name = path.file_name().unwrap_or_default().to_string_lossy();
+        let quoted = |text: &str| toml::Value::from(text).to_string();
+        let mut text = format!(
+            "key = {}\ntitle = {}\ncitation = {}\nlicence = {}\nkind = \"paper\"\n[[table]]\n\
+             file = {}\nrecords = \"lines\"\nformat = \"{word}\"\n",
+            quoted(&stated.key.clone().unwrap_or_else(|| key_of(&name))),
+            quoted(&name),
+            quoted(&stated.citation),
+            quoted(&stated.licence),
+            quoted(&name),
+        );
+        if let Some(medium) = &stated.medium {
+            text.push_str(&format!("medium = {}\n", quoted(medium)));
+        }
+        let description = SourceDescription::parse(&text, &path.display().to_string())?;
+        let hash = sha256(path).map_err(unreadable(path))?;
+        Ok(Self {
+            checksum: source_checksum(&text, &[hash]),
+            folder: path.parent().map(Path::to_owned).unwrap_or_default(),
+            description,
         })
     }
 
@@ -112,6 +153,58 @@ impl SourceFiles {
         };
         catalogue.import(&incoming, read, dry_run)
     }
+}
+
+/// What is said on the command line of a file that describes itself.
+#[derive(Clone, Debug, Default)]
+pub struct Stated {
+    /// Key; the file's name where absent.
+    pub key: Option<String>,
+    /// Citation.
+    pub citation: String,
+    /// Licence.
+    pub licence: String,
+    /// Medium of wavelengths that do not state their own: `air` or `vacuum`.
+    pub medium: Option<String>,
+    /// Format, where its content does not tell.
+    pub format: Option<Format>,
+}
+
+/// As much of a file as is looked at to explain it, bytes.
+const EXPLAINED_BYTES: u64 = 8 << 20;
+
+/// Says what a file is and offers a mapping for it.
+///
+/// # Errors
+/// A file that cannot be read.
+pub fn explain(path: &Path) -> Result<Explanation> {
+    let file = File::open(path).map_err(unreadable(path))?;
+    let unpacked = importers::unpack::unpack(Box::new(file), &Limits::default());
+    let mut bytes = Vec::new();
+    unpacked
+        .and_then(|input| input.take(EXPLAINED_BYTES).read_to_end(&mut bytes))
+        .map_err(unreadable(path))?;
+    let name = path.file_name().unwrap_or_default().to_string_lossy();
+    Ok(importers::explain::explain(&bytes, &name))
+}
+
+const fn self_describing_word(format: Format) -> Option<&'static str> {
+    match format {
+        Format::Delimited | Format::Fixed => None,
+        Format::Mrt => Some("mrt"),
+        Format::Votable => Some("votable"),
+        Format::Ecsv => Some("ecsv"),
+        Format::Xsams => Some("xsams"),
+        Format::Fits => Some("fits"),
+    }
+}
+
+/// A key from a file name: lower case, what is no letter or digit becomes a hyphen.
+fn key_of(name: &str) -> String {
+    let stem = name.split('.').next().unwrap_or(name).to_lowercase();
+    stem.chars()
+        .map(|c| if c.is_ascii_alphanumeric() { c } else { '-' })
+        .collect()
 }
 
 /// Names the content of a source: SHA-256 over the text of its description and the SHA-256 (hex) of

@@ -14,7 +14,7 @@ mod sources;
 mod store;
 
 pub use error::{CatalogueError, Result};
-pub use files::SourceFiles;
+pub use files::{SourceFiles, Stated, explain};
 pub use ingest::{ImportSummary, Incoming, ReportWriter};
 pub use query::Levels;
 pub use resonance::{BranchingRow, HyperfineRow, LifetimeRow, NamedLevel, ResonanceTables};

@@ -3,23 +3,34 @@
 use std::path::PathBuf;
 
 use clap::Args;
+use importers::source::Format;
 
 use super::options::{CatalogueOptions, OutputOptions};
 use super::progress::Bar;
 use super::{CliError, Exit, Outcome};
-use crate::catalogue::SourceFiles;
+use crate::catalogue::{self, SourceFiles, Stated};
 use crate::show;
 
 /// Load a table of levels or lines, whole or not at all
 ///
-/// The table is described by a source.toml beside it: citation, licence, scope and what each
-/// column means (data/README.md of the project explains it; the bundled sources are examples).
+/// A table is described by a source.toml beside it: citation, licence, scope and what each column
+/// means (data/README.md of the project explains it; the bundled sources are examples). Files that
+/// describe themselves (machine-readable tables with a byte-by-byte description, VOTable, ECSV,
+/// XSAMS, FITS tables; gzip of any) need only a citation and a licence. --explain says what a file
+/// is and writes a source.toml to edit.
 #[derive(Args, Debug)]
-#[command(after_help = "Example:\n  lineclear import data/morton2003 --dry-run")]
+#[command(
+    after_help = "Examples:\n  lineclear import data/morton2003 --dry-run\n  \
+    lineclear import lines.vot --citation \"A. Author 2020, Journal 1, 2\" --licence CC-BY-4.0\n  \
+    lineclear import --explain lines.csv"
+)]
 pub struct Arguments {
-    /// source.toml, or the folder that holds it and its tables
+    /// source.toml, the folder that holds it and its tables, or a file that describes itself
     #[arg(value_name = "SOURCE")]
     source: PathBuf,
+    /// Say what the file is and offer a source.toml for it; nothing is loaded
+    #[arg(long, conflicts_with_all = ["dry_run", "skip_bad"])]
+    explain: bool,
     /// Leave out at most N bad rows and list them
     #[arg(long, value_name = "N", default_value_t = 0)]
     skip_bad: usize,
@@ -29,12 +40,83 @@ pub struct Arguments {
     /// Licence of the table, where its source.toml names none
     #[arg(long, value_name = "LICENCE")]
     licence: Option<String>,
+    /// Citation of a file that describes itself
+    #[arg(long, value_name = "TEXT")]
+    citation: Option<String>,
+    /// Key of a file that describes itself [default: its name]
+    #[arg(long, value_name = "KEY")]
+    key: Option<String>,
+    /// Medium of wavelengths in a file that describes itself but does not say it
+    #[arg(long, value_enum, value_name = "MEDIUM")]
+    medium: Option<TableMedium>,
+    /// Format of a file that describes itself, where its content does not tell
+    #[arg(long, value_enum, value_name = "FORMAT")]
+    format: Option<TableFormat>,
     #[command(flatten)]
     output: OutputOptions,
 }
 
+#[derive(clap::ValueEnum, Clone, Copy, Debug, PartialEq, Eq)]
+enum TableMedium {
+    Air,
+    Vacuum,
+}
+
+#[derive(clap::ValueEnum, Clone, Copy, Debug, PartialEq, Eq)]
+enum TableFormat {
+    Mrt,
+    Votable,
+    Ecsv,
+    Xsams,
+    Fits,
+}
+
+impl Arguments {
+    fn files(&self) -> Result<SourceFiles, CliError> {
+        let described = self.source.is_dir()
+            || self
+                .source
+                .extension()
+                .is_some_and(|e| e.eq_ignore_ascii_case("toml"));
+        if described {
+            let files = SourceFiles::find(&self.source)?;
+            return Ok(files.with_licence(self.licence.as_deref())?);
+        }
+        let stated = Stated {
+            key: self.key.clone(),
+            citation: self.citation.clone().unwrap_or_default(),
+            licence: self.licence.clone().unwrap_or_default(),
+            medium: self.medium.map(|m| format!("{m:?}").to_lowercase()),
+            format: self.format.map(|format| match format {
+                TableFormat::Mrt => Format::Mrt,
+                TableFormat::Votable => Format::Votable,
+                TableFormat::Ecsv => Format::Ecsv,
+                TableFormat::Xsams => Format::Xsams,
+                TableFormat::Fits => Format::Fits,
+            }),
+        };
+        let files = SourceFiles::self_describing(&self.source, &stated)?;
+        if stated.citation.trim().is_empty() {
+            return Err(CliError::Options(
+                "a file that describes its columns does not say whose it is; add --citation",
+            ));
+        }
+        Ok(files.with_licence(None)?)
+    }
+}
+
 pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
-    let files = SourceFiles::find(&arguments.source)?.with_licence(arguments.licence.as_deref())?;
+    let format = arguments.output.format;
+    if arguments.explain {
+        let name = arguments.source.display().to_string();
+        let sheet = show::explained(&name, &catalogue::explain(&arguments.source)?);
+        return Ok(Outcome {
+            sheet,
+            format,
+            exit: Exit::Answered,
+        });
+    }
+    let files = arguments.files()?;
     let mut catalogue = context.open()?;
     let bar = Bar::new(context.quiet(), "importing");
     bar.pulse();
@@ -43,7 +125,7 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
     let sheet = show::imported(&summary?, arguments.dry_run);
     Ok(Outcome {
         sheet,
-        format: arguments.output.format,
+        format,
         exit: Exit::Answered,
     })
 }

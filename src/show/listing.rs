@@ -1,5 +1,8 @@
 //! The answers of `import`, `sources` and `forget`.
 
+use importers::detect::Detected;
+use importers::explain::Explanation;
+use importers::row::ColumnInfo;
 use serde_json::{Value, json};
 
 use super::sheet::{Align, Column, Context, Sheet};
@@ -149,5 +152,51 @@ pub fn sources(rows: &[SourceRow], path: &str) -> Sheet {
         notes: Vec::new(),
         object,
         list: "list",
+    }
+}
+
+const EXPLAINED_COLUMNS: [Column; 4] = [
+    Column::wrapped("column", Align::Left),
+    Column::wrapped("unit", Align::Left),
+    Column::wrapped("kind of quantity", Align::Left),
+    Column::wrapped("taken for", Align::Left),
+];
+
+/// What a file is, and a mapping to edit.
+pub fn explained(name: &str, explanation: &Explanation) -> Sheet {
+    let mut object = context("import").object(&explanation.notes);
+    let list: Vec<Value> = explanation
+        .columns
+        .iter()
+        .map(
+            |(c, target)| json!({"column": c.name, "unit": c.unit, "ucd": c.ucd, "target": target}),
+        )
+        .collect();
+    object.insert("columns".into(), Value::Array(list));
+    if !explanation.mapping.is_empty() {
+        object.insert("mapping".into(), json!(explanation.mapping));
+    }
+    let cells = |(column, target): &(ColumnInfo, Option<&'static str>)| {
+        let or_dash = |text: &Option<String>| text.clone().unwrap_or_else(|| "–".into());
+        let target = target.unwrap_or("not used").to_owned();
+        vec![
+            column.name.clone(),
+            or_dash(&column.unit),
+            or_dash(&column.ucd),
+            target,
+        ]
+    };
+    let what = match explanation.detected {
+        Detected::Table(format) => format!("{format:?}").to_lowercase(),
+        other => format!("{other:?}").to_lowercase(),
+    };
+    let count = explanation.columns.len();
+    Sheet {
+        headline: vec![format!("{name}: {what}, {count} columns.")],
+        columns: EXPLAINED_COLUMNS.to_vec(),
+        rows: explanation.columns.iter().map(cells).collect(),
+        notes: explanation.notes.clone(),
+        object,
+        list: "columns",
     }
 }

@@ -25,7 +25,7 @@ pub use audit::{AuditWish, audit};
 pub use choose::chosen;
 pub use climb::{ClimbWish, climb};
 pub use contrast::contrast;
-pub use listing::{forgotten, imported, sources};
+pub use listing::{explained, forgotten, imported, sources};
 pub use marks::marks;
 pub use pairs::{Measured, pairs, plot};
 pub use passband::passband;

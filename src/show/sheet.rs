@@ -121,6 +121,11 @@ impl Sheet {
         }
     }
 
+    /// Text to be copied as it stands, shown below all else.
+    pub(super) fn verbatim(&self) -> Option<&str> {
+        self.object.get("mapping").and_then(Value::as_str)
+    }
+
     /// The rows of the machine-readable forms.
     pub(super) fn list(&self) -> &[Value] {
         self.object

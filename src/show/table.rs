@@ -29,6 +29,9 @@ pub(super) fn write(sheet: &Sheet, terminal: bool, out: &mut dyn Write) -> io::R
     for note in &sheet.notes {
         writeln!(out, "{}", wrap(&safe(note), usize::from(width)))?;
     }
+    if let Some(text) = sheet.verbatim() {
+        write!(out, "\n{}", safe(text))?;
+    }
     Ok(())
 }
 
