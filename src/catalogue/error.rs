@@ -103,6 +103,12 @@ pub enum CatalogueError {
         /// The file.
         path: PathBuf,
     },
+    /// A file that describes its columns but not its origin.
+    #[error("{}: the file does not say whose it is; add --citation", path.display())]
+    NoCitation {
+        /// The file.
+        path: PathBuf,
+    },
     /// No licence is known.
     #[error("`{key}`: source.toml names no licence; state one with --licence, in words if need be")]
     NoLicence {

@@ -78,6 +78,11 @@ impl SourceFiles {
                 path: path.to_owned(),
             });
         };
+        if stated.citation.trim().is_empty() {
+            return Err(CatalogueError::NoCitation {
+                path: path.to_owned(),
+            });
+        }
         let name = path.file_name().unwrap_or_default().to_string_lossy();
         let quoted = |text: &str| toml::Value::from(text).to_string();
         let mut text = format!(

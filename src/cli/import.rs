@@ -50,8 +50,8 @@ pub struct Arguments {
     #[arg(long, value_enum, value_name = "MEDIUM")]
     medium: Option<TableMedium>,
     /// Format of a file that describes itself, where its content does not tell
-    #[arg(long, value_enum, value_name = "FORMAT")]
-    format: Option<TableFormat>,
+    #[arg(long = "format", value_enum, value_name = "FORMAT")]
+    table_format: Option<TableFormat>,
     #[command(flatten)]
     output: OutputOptions,
 }
@@ -87,7 +87,7 @@ impl Arguments {
             citation: self.citation.clone().unwrap_or_default(),
             licence: self.licence.clone().unwrap_or_default(),
             medium: self.medium.map(|m| format!("{m:?}").to_lowercase()),
-            format: self.format.map(|format| match format {
+            format: self.table_format.map(|format| match format {
                 TableFormat::Mrt => Format::Mrt,
                 TableFormat::Votable => Format::Votable,
                 TableFormat::Ecsv => Format::Ecsv,
@@ -96,11 +96,6 @@ impl Arguments {
             }),
         };
         let files = SourceFiles::self_describing(&self.source, &stated)?;
-        if stated.citation.trim().is_empty() {
-            return Err(CliError::Options(
-                "a file that describes its columns does not say whose it is; add --citation",
-            ));
-        }
         Ok(files.with_licence(None)?)
     }
 }
