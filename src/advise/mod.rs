@@ -1,5 +1,6 @@
 //! The answers: pure functions from lines and conditions to verdicts. No I/O here.
 
+pub mod attribute;
 pub mod audit;
 pub mod background;
 pub mod choose;

@@ -76,6 +76,29 @@ pub enum CliError {
     /// A table that the user handed in.
     #[error(transparent)]
     TableFile(#[from] super::table_file::TableFileError),
+    /// A table of peaks in which there is none.
+    #[error(
+        "{}: no peak stands out of the noise; check --fwhm, which the spectrum is filtered with",
+        path.display()
+    )]
+    NoPeak {
+        /// The file.
+        path: PathBuf,
+    },
+    /// No line is held where the peaks are.
+    #[error(
+        "{}: no line of these species is held from {from_nm:.1} to {to_nm:.1} nm (vacuum); check \
+         the unit in the name of the column and --among",
+        path.display()
+    )]
+    NothingHeldThere {
+        /// The file.
+        path: PathBuf,
+        /// Shortest peak, vacuum nm.
+        from_nm: f64,
+        /// Longest peak, vacuum nm.
+        to_nm: f64,
+    },
     /// No temperature from measured lines.
     #[error(transparent)]
     Plot(#[from] crate::advise::pairs::PlotError),

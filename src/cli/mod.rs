@@ -1,6 +1,7 @@
 //! The command line: what was typed, the question, the answer, shown.
 
 mod assemble;
+mod attribute;
 mod audit;
 mod bench;
 mod choose;
@@ -53,6 +54,7 @@ enum Command {
     Tune(tune::Arguments),
     Climb(climb::Arguments),
     Passband(Box<passband::Arguments>),
+    Attribute(attribute::Arguments),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -77,6 +79,7 @@ pub fn run() -> Result<Exit, CliError> {
     let context = &cli.catalogue;
     let outcome = match cli.command {
         Command::Window(arguments) => window::run(arguments, context)?,
+        Command::Attribute(arguments) => attribute::run(&arguments, context)?,
         Command::Pairs(arguments) => pairs::run(&arguments, context)?,
         Command::Marks(arguments) => marks::run(&arguments, context)?,
         Command::Vet(arguments) => vet::run(arguments, context)?,

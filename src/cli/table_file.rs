@@ -179,11 +179,6 @@ impl TableFile {
         self.rows.len()
     }
 
-    /// Whether there is no row (never after reading).
-    pub fn is_empty(&self) -> bool {
-        self.rows.is_empty()
-    }
-
     /// Line of a row in the file.
     pub fn line(&self, row: usize) -> u64 {
         self.rows.get(row).map_or(0, |(line, _)| *line)

@@ -187,9 +187,12 @@ fn reason(refusal: Refusal) -> String {
     }
 }
 
+/// Words for a kind of refusal, and which it is.
+type Kind = (&'static str, fn(&Refusal) -> bool);
+
 fn notes(answer: &Answer, question: &Question, context: &Context) -> Vec<String> {
     let mut notes = Vec::new();
-    let kinds: [(&str, fn(&Refusal) -> bool); 6] = [
+    let kinds: [Kind; 6] = [
         ("not clear of other species, or not rated", |r| {
             matches!(r, Refusal::NotClear(_))
         }),

@@ -1,5 +1,6 @@
 //! Answers as tables, CSV, JSON and Markdown. No physics here.
 
+mod attribute;
 mod audit;
 mod choose;
 mod climb;
@@ -21,6 +22,7 @@ mod tune;
 mod vet;
 mod window;
 
+pub use attribute::attribute;
 pub use audit::{AuditWish, audit};
 pub use choose::chosen;
 pub use climb::{ClimbWish, climb};

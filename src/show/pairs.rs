@@ -128,6 +128,9 @@ fn set_object(answer: &Answer, (index, error): &(usize, Option<f64>)) -> Value {
     })
 }
 
+/// Words for a kind of reason, and which it is.
+type Kind = (&'static str, fn(&LeftOut) -> bool);
+
 fn notes(answer: &Answer, question: &Question, shown: usize, context: &Context) -> Vec<String> {
     let mut notes = Vec::new();
     if shown < answer.pairs.len() {
@@ -136,7 +139,7 @@ fn notes(answer: &Answer, question: &Question, shown: usize, context: &Context) 
             answer.pairs.len()
         ));
     }
-    let kinds: [(&str, fn(&LeftOut) -> bool); 4] = [
+    let kinds: [Kind; 4] = [
         ("not clear in the mix, or not judged", |r| {
             matches!(r, LeftOut::NotClear(_))
         }),

@@ -157,7 +157,7 @@ fn inverse(mut matrix: Vec<Vec<f64>>) -> Option<Vec<Vec<f64>>> {
         let pivot = (column..n)
             .max_by(|&a, &b| matrix[a][column].abs().total_cmp(&matrix[b][column].abs()))?;
         let size = matrix[pivot][column];
-        if !(size.abs() > 1e-13 * largest) {
+        if size.is_nan() || size.abs() <= 1e-13 * largest {
             return None;
         }
         matrix.swap(column, pivot);
