@@ -5,6 +5,7 @@ import re
 import morton_labels as labels
 import morton_source as source
 
+FUDGE = "this Mg II atom has 3p of J = 3/2 at 35672.8 per cm, 88 below 35760.88 (Morton 2003): no level is there"
 NOTICE = """model-atoms
 Data     Model atoms for non-equilibrium radiative transfer (levels and oscillator strengths, no citation per row)
 Carried  lightweaver 0.17.0 (PyPI), lightweaver/rh_atoms.py; the lines used are kept with their numbers in original.txt
@@ -56,18 +57,23 @@ def manifest(written, counts, wrong_rates):
         *(f"{why}: no rate entered ({lower} to {upper})" for (_, lower, upper), why in wrong_rates.items()),
         "energies are counted from the lowest level of the ion in its atom",
         "level uncertainty 0.3 per cm; Al II and O I 2.5 per cm, by which they differ from the papers",
+        "level scale uncertainty 10 per cm: the singlets of one He I atom lie 4 and of another 6 per cm below the measured "
+        "levels, Mg II 4s 9 per cm; the 0.1 per cm first taken for the scale proved wrong. Levels of one name in two atoms "
+        "are one level",
+        f"not read: Mg II 280.326 nm (atom MgII_fun) and its upper level: {FUDGE}",
         "no rate carries an uncertainty; no row has a citation: lowest preference",
     ]
     columns = source.COMMON_LINE_COLUMNS
     head = [
         'key = "model-atoms"', 'title = "Model atoms for non-equilibrium radiative transfer"',
         'citation = "Model atoms distributed with lightweaver 0.17.0 (C. M. J. Osborne, I. Milić 2021, ApJ 917, 14); no citation per row"',
-        'licence = "MIT"', 'kind = "model"', "level_scale_uncertainty_per_cm = 0.1",
+        'licence = "MIT"', 'kind = "model"', "level_scale_uncertainty_per_cm = 10.0",
         "level_scale_uncertainty_relative = 0.0", "notes = [",
         *("  " + source.quoted(n) + "," for n in notes), "]", "",
         "# No scope: each atom is a selection of levels made for one stellar problem, and none lists all strong lines of its ion.",
         "",
     ]
     ignore = ["row", "oscillator_strength", "atom"]
-    return "\n".join(["\n".join(head), source.table("levels.csv", written, "levels", [], source.LEVEL_COLUMNS),
-                      source.table("lines.csv", written, "lines", ignore, columns)])
+    return "\n".join(["\n".join(head), source.table("levels.csv", written, "levels", [], source.LEVEL_COLUMNS,
+                                                      [("energy_per_cm", "35672.800", FUDGE)]),
+                      source.table("lines.csv", written, "lines", ignore, columns, [("atom", "MgII_fun", FUDGE)])])

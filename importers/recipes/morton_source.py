@@ -107,12 +107,14 @@ g = { column = "g" }
 """
 
 
-def table(name, written, records, ignore, columns):
+def table(name, written, records, ignore, columns, skip=()):
     digest, rows = written[name]
     lines = ["[[table]]", f'file = "{name}"', f'sha256 = "{digest}"', f"rows = {rows}",
              f'records = "{records}"', 'format = "delimited"']
     if ignore:
         lines.append("ignore = [" + ", ".join(quoted(i) for i in ignore) + "]")
+    for column, text, reason in skip:
+        lines.append(f"skip = [{{ column = {quoted(column)}, equals = {quoted(text)}, reason = {quoted(reason)} }}]")
     return "\n".join(lines) + "\n[table.columns]\n" + columns
 
 

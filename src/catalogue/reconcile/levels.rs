@@ -42,11 +42,13 @@ pub(super) fn join(species: Species, reports: &[SourceReports]) -> Joined {
                 .energy_per_cm
                 .total_cmp(&of.levels[b].energy_per_cm)
         });
-        let mut fresh = Vec::new();
+        let mut known: Vec<(usize, usize)> = (0..of.levels.len())
+            .filter_map(|report| Some((report, taken[report]?)))
+            .collect();
         for report in order {
             let place = taken[report].unwrap_or_else(|| {
-                same_in_source(of, report, &fresh).unwrap_or_else(|| {
-                    fresh.push((report, anchors.len()));
+                same_in_source(species, of, report, &known).unwrap_or_else(|| {
+                    known.push((report, anchors.len()));
                     anchors.push(Anchor::new(&of.levels[report], of));
                     anchors.len() - 1
                 })
@@ -60,18 +62,42 @@ pub(super) fn join(species: Species, reports: &[SourceReports]) -> Joined {
     conclude(reports, anchors, anchor_of, apart)
 }
 
-/// A row that repeats a level of its own source: same label, same J, same energy within 3 σ.
-fn same_in_source(of: &SourceReports, report: usize, fresh: &[(usize, usize)]) -> Option<usize> {
+/// A row that repeats a level of its own source: same label, same J, same energy within 3 σ; where
+/// the label names configuration and term, the uncertainty of the source's scale is added, since
+/// some sources are made of parts on scales of their own. The nearest in energy is taken.
+fn same_in_source(
+    species: Species,
+    of: &SourceReports,
+    report: usize,
+    known: &[(usize, usize)],
+) -> Option<usize> {
     let level = &of.levels[report];
-    fresh.iter().rev().find_map(|&(earlier, anchor)| {
+    let named = level.label.configuration.is_some() && level.label.term.is_some();
+    let scale = if named {
+        of.source.scale_at(level.energy_per_cm)
+    } else {
+        0.0
+    };
+    let distance = |other: usize| (level.energy_per_cm - of.levels[other].energy_per_cm).abs();
+    let same = |&&(earlier, _): &&(usize, usize)| {
         let other = &of.levels[earlier];
         let sigma = level.uncertainty_per_cm.hypot(other.uncertainty_per_cm);
-        let same = level.twice_j == other.twice_j
+        level.twice_j == other.twice_j
             && level.g == other.g
-            && level.label == other.label
-            && (level.energy_per_cm - other.energy_per_cm).abs() <= 3.0 * sigma;
-        same.then_some(anchor)
-    })
+            && same_name(&level.label, &other.label, species)
+            && distance(earlier) <= 3.0 * sigma + scale
+    };
+    known
+        .iter()
+        .filter(same)
+        .min_by(|a, b| distance(a.0).total_cmp(&distance(b.0)).then(a.0.cmp(&b.0)))
+        .map(|&(_, anchor)| anchor)
+}
+
+/// One label, or one with and one without the parents of the same.
+fn same_name(a: &Label, b: &Label, species: Species) -> bool {
+    let parents = |l: &Label| l.configuration.as_ref().is_some_and(|c| c.contains('('));
+    a == b || (parents(a) != parents(b) && a.agreement(b, species) == Agreement::Same)
 }
 
 /// Keeps anchors sorted by energy, so that neighbours are found by halving.

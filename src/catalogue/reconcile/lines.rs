@@ -39,9 +39,10 @@ pub(super) fn join(
             }
         }
     }
+    let held = measured(reports, level_of, levels.len());
     let mut lines: Vec<DerivedLine> = by_pair
         .into_iter()
-        .filter_map(|(pair, members)| by_levels(reports, levels, pair, members))
+        .filter_map(|(pair, members)| by_levels(reports, levels, &held, pair, members))
         .collect();
     sort(&mut lines);
     join_loose(reports, levels, &loose, &mut lines, apart);
@@ -76,14 +77,56 @@ fn pair_of(line: &LineReport, level_of: &[Option<usize>]) -> Linked {
     }
 }
 
+/// For each concluded level the measured level reports that joined it.
+fn measured(
+    reports: &[SourceReports],
+    level_of: &[Vec<Option<usize>>],
+    levels: usize,
+) -> Vec<Reports> {
+    let mut held = vec![Reports::new(); levels];
+    for (source, of) in level_of.iter().enumerate() {
+        for (report, level) in of.iter().enumerate() {
+            let measured = !reports[source].levels[report].computed;
+            if let Some(level) = level.filter(|_| measured) {
+                held[level].push((source, report));
+            }
+        }
+    }
+    held
+}
+
+/// Ritz positions of a pair from each source that holds both levels, whether or not it lists the
+/// line.
+fn ritz_of_pair<'a>(
+    reports: &'a [SourceReports],
+    held: &'a [Reports],
+    pair: Pair,
+) -> impl Iterator<Item = Position> + 'a {
+    held[pair.0].iter().flat_map(move |&(source, a)| {
+        let of = &reports[source].levels;
+        held[pair.1]
+            .iter()
+            .filter(move |(other, _)| *other == source)
+            .map(move |&(_, b)| Position {
+                wavenumber_per_cm: (of[a].energy_per_cm - of[b].energy_per_cm).abs(),
+                uncertainty_per_cm: of[a].uncertainty_per_cm.hypot(of[b].uncertainty_per_cm),
+                origin: PositionOrigin::Ritz,
+                source,
+            })
+            .filter(|position| position.wavenumber_per_cm > 0.0)
+    })
+}
+
 /// A line between two concluded levels.
 fn by_levels(
     reports: &[SourceReports],
     levels: &[DerivedLevel],
+    held: &[Reports],
     pair: Pair,
     members: Reports,
 ) -> Option<DerivedLine> {
-    let position = best_position(reports, &members)?;
+    let between = ritz_of_pair(reports, held, pair).collect();
+    let position = best_position(reports, &members, between)?;
     let (lower, upper) = if levels[pair.0].energy_per_cm <= levels[pair.1].energy_per_cm {
         pair
     } else {
@@ -128,8 +171,11 @@ struct Position {
 
 /// The best of all observed positions and of the Ritz positions of each source's own levels.
 /// A blend's position belongs to several lines and counts only where nothing else is known.
-fn best_position(reports: &[SourceReports], members: &Reports) -> Option<Position> {
-    let mut positions = Vec::with_capacity(2 * members.len());
+fn best_position(
+    reports: &[SourceReports],
+    members: &Reports,
+    mut positions: Vec<Position>,
+) -> Option<Position> {
     let mut blended = Vec::new();
     for &(source, report) in members {
         let line = &reports[source].lines[report];
@@ -226,7 +272,7 @@ fn join_loose(
         let mut fresh = Vec::new();
         for &(source, report) in of_source {
             let of = &reports[source].lines[report];
-            let Some(position) = best_position(reports, &vec![(source, report)]) else {
+            let Some(position) = best_position(reports, &vec![(source, report)], Vec::new()) else {
                 continue;
             };
             match near(lines, levels, of, &position, widest).as_slice() {
