@@ -99,7 +99,7 @@ fn compatible(a: &Line, b: &Line) -> bool {
 /// Pairs that are two lines, each with what tells them apart. Keyed by the start of the words.
 const EXPLAINED: [(&str, &str); 1] = [(
     "S I 95206.360 (verner1996) and 95207.991 (cashman2017)",
-    "cashman2017 names no level energies; its J of the lower or upper level contradicts the other",
+    "cashman2017 names no level; its upper J is 1, that of the other line 2",
 )];
 
 #[test]

@@ -172,7 +172,7 @@ mod tests {
         let a = label("1s 4f", "3Fo");
         assert_eq!(
             a.agreement(&label("1s 4f", "1Fo"), Species::new(2, 1)),
-            Agreement::Different
+            Agreement::OtherTerm
         );
     }
 
