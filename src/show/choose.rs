@@ -106,7 +106,7 @@ fn words(wanted: &Wanted, answer: &Answer) -> Vec<String> {
 /// What the ends of the front would cost.
 fn why(best: &Choice, answer: &Answer) -> Option<String> {
     let front = || answer.candidates.iter().filter(|c| c.on_front);
-    let (brightest, purest) = (front().next()?, front().last()?);
+    let (brightest, purest) = (front().next()?, front().next_back()?);
     let mut parts = Vec::new();
     if brightest.transmission > best.transmission * 1.001 {
         parts.push(format!(
