@@ -259,9 +259,6 @@ fn bad_lists_are_refused_in_one_sentence_each() {
             "position_nm\n1e9\n2e9\n",
             "no line of these species is held",
         ),
-            "position_nm\n1e9\n2e9\n",
-            "no line of these species is held",
-        ),
         ("position_nm,uncertainty_A\n500,0.1\n", "units are mixed"),
         ("position_nm,wavelength_A\n500,5000\n", "units are mixed"),
         (
