@@ -3,6 +3,8 @@
 //! Reports of one line are those that the catalogue joined. Where two sources differ so much that
 //! their lines did not join, lines that the index of air brings together are paired as well.
 
+use std::collections::HashMap;
+
 use vocabulary::atom::Species;
 use vocabulary::light::Air;
 use vocabulary::report::{ReportedLine, ReportedSource, Reports};
@@ -170,13 +172,19 @@ fn pairs_of(
         return (Vec::new(), (lines(first).len(), lines(second).len()));
     };
     let (one, other) = (&of.sources[a], &of.sources[b]);
+    let mut by_line: HashMap<usize, Vec<usize>> = HashMap::new();
+    for (at, line) in other.lines.iter().enumerate().rev() {
+        if let Some(joined) = line.joined {
+            by_line.entry(joined).or_default().push(at);
+        }
+    }
     let mut used = vec![false; other.lines.len()];
     let mut pairs = Vec::new();
     let mut alone = Vec::new();
     for line in &one.lines {
-        let partner = line.joined.and_then(|joined| {
-            (0..other.lines.len()).find(|&i| !used[i] && other.lines[i].joined == Some(joined))
-        });
+        let partner = line
+            .joined
+            .and_then(|joined| by_line.get_mut(&joined)?.pop());
         match partner.and_then(|i| Some((i, pair(of, (one, line), (other, &other.lines[i]))?))) {
             Some((i, pair)) => {
                 used[i] = true;
@@ -322,6 +330,9 @@ const LEAST_FOR_A_TREND: usize = 4;
 /// Part of the pairs that must follow it.
 const MOST_OF: f64 = 0.7;
 
+/// What an offset (cm⁻¹) is proportional to.
+type Shape = dyn Fn(&Pair) -> Option<f64>;
+
 /// One cause that explains most offsets: the index of air, a factor, a length, a wavenumber. Of
 /// several that do, the first, which says most.
 fn trend(pairs: &[Pair]) -> Trend {
@@ -332,7 +343,7 @@ fn trend(pairs: &[Pair]) -> Trend {
         let index = Air::standard().index(p.vacuum_nm()).ok()?;
         Some(index.index - 1.0)
     };
-    let kinds: [(&dyn Fn(&Pair) -> Option<f64>, &dyn Fn(f64) -> Trend); 4] = [
+    let kinds: [(&Shape, &dyn Fn(f64) -> Trend); 4] = [
         // The wavenumber of an air wavelength taken for vacuum is too large by σ (n − 1).
         (
             &|p| refractivity(p).map(|r| r * p.wavenumber_per_cm),
@@ -361,7 +372,7 @@ fn trend(pairs: &[Pair]) -> Trend {
 /// The factor on a shape that most offsets follow within 3 σ, and which part of them; `None`
 /// where the factor does not stand out of its scatter (5 σ of the median) or is small against
 /// the uncertainty of single lines.
-fn follow(pairs: &[Pair], shape: &dyn Fn(&Pair) -> Option<f64>) -> Option<(f64, f64)> {
+fn follow(pairs: &[Pair], shape: &Shape) -> Option<(f64, f64)> {
     let shaped: Vec<(&Pair, f64)> = pairs.iter().filter_map(|p| Some((p, shape(p)?))).collect();
     if shaped.len() < LEAST_FOR_A_TREND {
         return None;

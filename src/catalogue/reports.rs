@@ -10,6 +10,7 @@ use vocabulary::spectrum::Parity;
 
 use super::derive::{self, Labels};
 use super::error::Result;
+use super::gap_fill;
 use super::reconcile::{self, Derived, LevelReport, LineReport, SourceKind, SourceReports};
 use super::store::Catalogue;
 
@@ -17,8 +18,8 @@ use super::store::Catalogue;
 type Rows = HashMap<i64, Vec<u64>>;
 
 impl Catalogue {
-    /// All reports of each species asked for, in their order, and what the rule concludes from
-    /// them. Nothing is written.
+    /// All reports of each species asked for, in their order, those that the calculator makes
+    /// included (their row is 0), and what the rule concludes from them. Nothing is written.
     ///
     /// # Errors
     /// A catalogue that cannot be read.
@@ -35,6 +36,7 @@ impl Catalogue {
 
     fn reports_of(&self, species: Species, labels: &Labels) -> rusqlite::Result<Reports> {
         let mut given = derive::read(&self.connection, species.code(), labels)?;
+        given.extend(gap_fill::Sources::held(&self.connection)?.fill(species));
         reconcile::rank(&mut given);
         let derived = reconcile::derive(species, given.clone());
         let level_rows = self.rows(

@@ -60,6 +60,12 @@ pub fn audit(
     let context = Context {
         command: "audit",
         medium: "auto".into(),
+        conditions: [(
+            "air".to_owned(),
+            json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"),
+        )]
+        .into_iter()
+        .collect(),
         sources: citations
             .into_iter()
             .filter(|(key, ..)| keys.contains(key.as_str()))

@@ -30,6 +30,12 @@ pub fn contrast(
     let context = Context {
         command: "contrast",
         medium: "auto".into(),
+        conditions: [(
+            "air".to_owned(),
+            json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"),
+        )]
+        .into_iter()
+        .collect(),
         sources: citations
             .into_iter()
             .filter(|(key, ..)| *key == answer.keys.0 || *key == answer.keys.1)
@@ -135,7 +141,7 @@ fn comparison_object(name: &str, c: &Comparison) -> Value {
 }
 
 fn comparison_row(name: &str, c: &Comparison) -> Vec<String> {
-    let pm = |nm: Option<f64>| nm.map_or_else(String::new, |nm| format!("{:.2}", 1e3 * nm + 0.0));
+    let pm = |nm: Option<f64>| nm.map_or_else(String::new, |nm| picometres(nm, 2));
     let some = |count: usize, of: usize| {
         if of == 0 {
             String::new()
@@ -250,8 +256,8 @@ fn pair_words(pair: &Pair, what: &str) -> String {
         )
     } else {
         format!(
-            "{at} {:+.1} pm, {:.1} sigma ({rows})",
-            1e3 * pair.offset_nm(),
+            "{at} {} pm, {:.1} sigma ({rows})",
+            picometres(pair.offset_nm(), 2),
             pair.pull().abs()
         )
     }
@@ -262,5 +268,14 @@ fn times(ratio: f64) -> String {
     match ratio {
         r if (0.01..1000.0).contains(&r) => format!("{r:.3}"),
         r => format!("{r:.2e}"),
+    }
+}
+
+/// A length in pm; one that rounds to nothing has no sign.
+fn picometres(nm: f64, decimals: usize) -> String {
+    let text = format!("{:.decimals$}", 1e3 * nm);
+    match text.strip_prefix('-') {
+        Some(rest) if rest.chars().all(|c| c == '0' || c == '.') => rest.to_owned(),
+        _ => text,
     }
 }

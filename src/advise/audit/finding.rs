@@ -203,7 +203,7 @@ pub struct Finding {
 impl Finding {
     /// By species, source, rule, row, then words.
     pub fn order(&self, other: &Self) -> Ordering {
-        let key = |f: &Self| (f.species.code(), f.rule, f.place.row.map(|(t, r)| (t, r)));
+        let key = |f: &Self| (f.species.code(), f.rule, f.place.row);
         (self.species.code().cmp(&other.species.code()))
             .then_with(|| self.source.cmp(&other.source))
             .then_with(|| key(self).cmp(&key(other)))

@@ -44,12 +44,11 @@ fn term_j(of: &Reports, source: &ReportedSource, level: &ReportedLevel) -> Optio
 }
 
 /// Fastest forbidden line that is taken for one, s⁻¹: rates of magnetic dipole lines grow with the
-/// third power of the wavenumber and with the square of the charge's fine structure, so the bound
-/// rises with both.
-fn slow_per_s(of: &Reports, wavenumber_per_cm: f64) -> f64 {
+/// third power of the wavenumber, and so does the bound.
+fn slow_per_s(wavenumber_per_cm: f64) -> f64 {
     // A(M1) = 2.697e-11 σ³ S with S ≤ 20 (common practice), and never less than 100 s⁻¹.
     let dipole = 2.697e-11 * wavenumber_per_cm.powi(3) * 20.0;
-    dipole.max(100.0) * f64::from(of.species.stage).powi(2)
+    dipole.max(100.0)
 }
 
 fn line_rules(of: &Reports, source: &ReportedSource, line: &ReportedLine) -> Option<Finding> {
@@ -58,7 +57,7 @@ fn line_rules(of: &Reports, source: &ReportedSource, line: &ReportedLine) -> Opt
     let momenta = lower.j.zip(upper.j);
     let slow = line
         .rate_per_s
-        .is_none_or(|rate| rate <= slow_per_s(of, wavenumber));
+        .is_none_or(|rate| rate <= slow_per_s(wavenumber));
     let finding = |rule, size, unit, advice: String| {
         Some(Finding {
             rule,
