@@ -331,7 +331,12 @@ const LEAST_FOR_A_TREND: usize = 4;
 const MOST_OF: f64 = 0.7;
 
 /// What an offset (cm⁻¹) is proportional to.
-type Shape = dyn Fn(&Pair) -> Option<f64>;
+type Shape = fn(&Pair) -> Option<f64>;
+
+fn refractivity(pair: &Pair) -> Option<f64> {
+    let index = Air::standard().index(pair.vacuum_nm()).ok()?;
+    Some(index.index - 1.0)
+}
 
 /// One cause that explains most offsets: the index of air, a factor, a length, a wavenumber. Of
 /// several that do, the first, which says most.
@@ -339,25 +344,21 @@ fn trend(pairs: &[Pair]) -> Trend {
     if pairs.len() < LEAST_FOR_A_TREND {
         return Trend::TooFew;
     }
-    let refractivity = |p: &Pair| {
-        let index = Air::standard().index(p.vacuum_nm()).ok()?;
-        Some(index.index - 1.0)
-    };
-    let kinds: [(&Shape, &dyn Fn(f64) -> Trend); 4] = [
+    let kinds: [(Shape, fn(f64) -> Trend); 4] = [
         // The wavenumber of an air wavelength taken for vacuum is too large by σ (n − 1).
         (
-            &|p| refractivity(p).map(|r| r * p.wavenumber_per_cm),
-            &|scale| match scale {
+            |p| refractivity(p).map(|r| r * p.wavenumber_per_cm),
+            |scale| match scale {
                 s if (s - 1.0).abs() < 0.15 => Trend::SecondInAir,
                 s if (s + 1.0).abs() < 0.15 => Trend::FirstInAir,
                 _ => Trend::None,
             },
         ),
-        (&|p| Some(p.wavenumber_per_cm), &|s| Trend::Relative(-s)),
-        (&|_| Some(1.0), &Trend::ConstantPerCm),
+        (|p| Some(p.wavenumber_per_cm), |s| Trend::Relative(-s)),
+        (|_| Some(1.0), Trend::ConstantPerCm),
         (
-            &|p| Some(-1e-7 * p.wavenumber_per_cm.powi(2)),
-            &Trend::Constant,
+            |p| Some(-1e-7 * p.wavenumber_per_cm.powi(2)),
+            Trend::Constant,
         ),
     ];
     let found = kinds
@@ -372,7 +373,7 @@ fn trend(pairs: &[Pair]) -> Trend {
 /// The factor on a shape that most offsets follow within 3 σ, and which part of them; `None`
 /// where the factor does not stand out of its scatter (5 σ of the median) or is small against
 /// the uncertainty of single lines.
-fn follow(pairs: &[Pair], shape: &Shape) -> Option<(f64, f64)> {
+fn follow(pairs: &[Pair], shape: Shape) -> Option<(f64, f64)> {
     let shaped: Vec<(&Pair, f64)> = pairs.iter().filter_map(|p| Some((p, shape(p)?))).collect();
     if shaped.len() < LEAST_FOR_A_TREND {
         return None;
