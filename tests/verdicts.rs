@@ -17,7 +17,7 @@ use lineclear::vocabulary::spectrum::{
 
 const HELIUM: Species = Species::new(2, 1);
 const IRON: Species = Species::new(26, 1);
-const KT_1EV_PER_CM: f64 = 8065.543_937;
+const KT_1EV_PER_CM: f64 = 8_065.543_937;
 
 fn level(species: Species, number: u32, energy_per_cm: f64) -> Arc<Level> {
     Arc::new(Level {
