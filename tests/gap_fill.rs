@@ -1,5 +1,11 @@
 //! Gap fill in the catalogue: what the calculator adds, and what it must leave alone.
 
+#![allow(
+    clippy::unwrap_used,
+    clippy::expect_used,
+    reason = "a panic in a test is its report"
+)]
+
 use std::collections::BTreeSet;
 use std::path::{Path, PathBuf};
 use std::process::Command;

@@ -424,7 +424,7 @@ fn energies_in_another_unit_are_named() {
     let found = examine(|records| {
         records.retain(|r| species_of(r) == MG_I);
         for record in records.iter_mut() {
-            let scale = |energy: &mut f64| *energy /= 8065.543_94;
+            let scale = |energy: &mut f64| *energy /= 8_065.543_94;
             match record {
                 Record::Level(level) => {
                     scale(&mut level.energy_per_cm);

@@ -333,6 +333,9 @@ const MOST_OF: f64 = 0.7;
 /// What an offset (cm⁻¹) is proportional to.
 type Shape = fn(&Pair) -> Option<f64>;
 
+/// A shape and what its scale means.
+type Kind = (Shape, fn(f64) -> Trend);
+
 fn refractivity(pair: &Pair) -> Option<f64> {
     let index = Air::standard().index(pair.vacuum_nm()).ok()?;
     Some(index.index - 1.0)
@@ -344,7 +347,7 @@ fn trend(pairs: &[Pair]) -> Trend {
     if pairs.len() < LEAST_FOR_A_TREND {
         return Trend::TooFew;
     }
-    let kinds: [(Shape, fn(f64) -> Trend); 4] = [
+    let kinds: [Kind; 4] = [
         // The wavenumber of an air wavelength taken for vacuum is too large by σ (n − 1).
         (
             |p| refractivity(p).map(|r| r * p.wavenumber_per_cm),
