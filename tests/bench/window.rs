@@ -58,7 +58,7 @@ fn question(range: &str) -> Question {
 #[divan::bench]
 fn read_five_elements(bencher: Bencher) {
     let catalogue = Catalogue::bundled_in_memory(&mut |_, _| {}).expect("a catalogue");
-    bencher.bench(|| spectra(black_box(&catalogue), (665.0, 671.0)));
+    bencher.bench_local(|| spectra(black_box(&catalogue), (665.0, 671.0)));
 }
 
 #[divan::bench(args = ["667..669nm", "400..700nm"])]
@@ -66,5 +66,5 @@ fn answer_five_elements(bencher: Bencher, range: &str) {
     let catalogue = Catalogue::bundled_in_memory(&mut |_, _| {}).expect("a catalogue");
     let held = spectra(&catalogue, (390.0, 710.0));
     let question = question(range);
-    bencher.bench(|| answer(black_box(&question), &held));
+    bencher.bench_local(|| answer(black_box(&question), &held));
 }
