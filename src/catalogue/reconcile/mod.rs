@@ -3,9 +3,9 @@
 //!
 //! Sources are taken in a fixed rank (papers, curated tables, model atoms, computed tables; inside
 //! a kind by the declared uncertainty of their level scale, then by key). Each level report joins
-//! a level that is there already or becomes one ([`levels`]); lines join by their pair of levels,
-//! or by position where a source has no levels ([`lines`]). Each quantity then comes from the best
-//! report for it ([`choose`]).
+//! a level that is there already or becomes one (`levels`); lines join by their pair of levels,
+//! or by position where a source has no levels (`lines`). Each quantity then comes from the best
+//! report for it (`choose`).
 
 mod choose;
 mod label;
