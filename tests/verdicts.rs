@@ -67,6 +67,7 @@ fn spectrum(
         .map(|l| Strength {
             wavenumber_per_cm: l.wavenumber_per_cm,
             rate_per_s: l.rate_per_s,
+            computed: false,
             lower: Some(0),
             upper: l.upper.as_ref().map(|u| u.number),
         })

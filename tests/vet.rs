@@ -165,6 +165,7 @@ fn invented(atomic_number: u8, nm: f64, amount: f64) -> Spectrum {
         strengths: vec![Strength {
             wavenumber_per_cm: line.wavenumber_per_cm,
             rate_per_s: line.rate_per_s,
+            computed: false,
             lower: Some(0),
             upper: Some(1),
         }],

@@ -92,7 +92,7 @@ pub(super) fn conclude(
     })?;
     let mut reports = read(connection, code, labels).map_err(failed(path, "read"))?;
     let computed = gap_fill::Sources::held(connection).map_err(failed(path, "read"))?;
-    reports.extend(computed.fill(species));
+    reports.extend(computed.fill(species, &reports));
     reconcile::rank(&mut reports);
     let own_rows = reports
         .iter()

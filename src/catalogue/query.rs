@@ -112,7 +112,7 @@ impl Catalogue {
         let read = || -> rusqlite::Result<Vec<Strength>> {
             self.connection
                 .prepare_cached(
-                    "SELECT wavenumber_per_cm, rate_per_s, lower, upper
+                    "SELECT wavenumber_per_cm, rate_per_s, lower, upper, position_origin
                        FROM line
                       WHERE species = ?1
                       ORDER BY wavenumber_per_cm, number",
@@ -123,6 +123,7 @@ impl Catalogue {
                         rate_per_s: row.get(1)?,
                         lower: row.get(2)?,
                         upper: row.get(3)?,
+                        computed: position_origin(row.get(4)?) == PositionOrigin::Computed,
                     })
                 })?
                 .collect()

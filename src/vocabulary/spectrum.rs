@@ -164,6 +164,8 @@ pub struct Strength {
     pub wavenumber_per_cm: f64,
     /// Rate, s⁻¹, where known.
     pub rate_per_s: Option<f64>,
+    /// Its position is computed: no table lists it.
+    pub computed: bool,
     /// Number of the lower level.
     pub lower: Option<u32>,
     /// Number of the upper level.

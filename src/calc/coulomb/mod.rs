@@ -20,6 +20,7 @@ mod gaps;
 mod integral;
 mod orbital;
 mod rate;
+mod setting;
 mod strength;
 
 pub use decay::{
@@ -34,4 +35,5 @@ pub use gaps::{
 pub use integral::{CorePolarisation, RadialIntegral, radial_integral};
 pub use orbital::{Orbital, effective_quantum_number};
 pub use rate::{Active, DEEPEST, Rate, RateClass, RateModel, rate};
+pub use setting::Setting;
 pub use strength::{LsState, line_strength_factor, rate_per_s, strength_e2_a0_2};

@@ -8,22 +8,24 @@
 
 mod one_electron;
 mod scope;
+mod series;
 mod source;
 
 use rusqlite::Connection;
 use vocabulary::atom::Species;
 
-use super::reconcile::{RankedSource, SourceReports};
+use super::reconcile::{self, RankedSource, SourceReports};
 
 pub(super) use source::{install, is_ours};
 
 /// Changes whenever the calculator or the choice of what it fills changes, so that catalogues
 /// built before are brought up to date.
-pub(super) const REVISION: &str = "gap fill 1";
+pub(super) const REVISION: &str = "gap fill 2";
 
 /// The computed sources that a catalogue holds; a catalogue without them has no gap fill.
 pub(super) struct Sources {
     one_electron: Option<RankedSource>,
+    series: Option<RankedSource>,
 }
 
 impl Sources {
@@ -31,15 +33,21 @@ impl Sources {
     pub fn held(connection: &Connection) -> rusqlite::Result<Self> {
         Ok(Self {
             one_electron: source::ranked(connection, &source::ONE_ELECTRON)?,
+            series: source::ranked(connection, &source::SERIES)?,
         })
     }
 
-    /// What the calculator reports of a species.
-    pub fn fill(&self, species: Species) -> Vec<SourceReports> {
-        let one_electron = self
-            .one_electron
-            .as_ref()
-            .and_then(|source| one_electron::reports(species, source));
-        one_electron.into_iter().collect()
+    /// What the calculator reports of a species of which tables report so much. What it fits, it
+    /// fits to the levels concluded from the tables alone.
+    pub fn fill(&self, species: Species, tables: &[SourceReports]) -> Option<SourceReports> {
+        if species.is_one_electron() {
+            return one_electron::reports(species, self.one_electron.as_ref()?);
+        }
+        let source = self.series.as_ref()?;
+        if !series::may_fill(species) || tables.iter().all(|t| t.levels.is_empty()) {
+            return None;
+        }
+        let held = reconcile::derive(species, tables.to_vec());
+        series::reports(species, tables, &held, source)
     }
 }
