@@ -17,6 +17,7 @@ mod median;
 pub mod pairs;
 pub mod passband;
 mod position;
+pub mod predict;
 mod resolving;
 pub mod scan;
 mod scene;

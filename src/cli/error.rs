@@ -111,6 +111,9 @@ pub enum CliError {
     /// The answer about a laser.
     #[error(transparent)]
     Laser(#[from] crate::advise::tune::LaserError),
+    /// Nothing can be predicted.
+    #[error(transparent)]
+    Predict(#[from] crate::advise::predict::PredictError),
     /// A table to import.
     #[error(transparent)]
     Import(#[from] importers::ImportError),
@@ -131,6 +134,7 @@ impl CliError {
             | Self::Advise(AdviseError::Filter(_) | AdviseError::OutsidePassband { .. })
             | Self::Options(_) => Exit::Usage,
             Self::Laser(cause) if cause.is_usage() => Exit::Usage,
+            Self::Predict(cause) if cause.is_usage() => Exit::Usage,
             Self::Output(cause) if cause.kind() == std::io::ErrorKind::BrokenPipe => Exit::Answered,
             _ => Exit::Failed,
         }

@@ -18,6 +18,7 @@ mod optics;
 mod options;
 mod pairs;
 mod passband;
+mod predict;
 mod progress;
 mod sources;
 mod table_file;
@@ -49,6 +50,7 @@ enum Command {
     Marks(marks::Arguments),
     Vet(vet::Arguments),
     Pairs(Box<pairs::Arguments>),
+    Predict(predict::Arguments),
     Audit(audit::Arguments),
     Contrast(contrast::Arguments),
     Tune(tune::Arguments),
@@ -81,6 +83,7 @@ pub fn run() -> Result<Exit, CliError> {
         Command::Window(arguments) => window::run(arguments, context)?,
         Command::Attribute(arguments) => attribute::run(&arguments, context)?,
         Command::Pairs(arguments) => pairs::run(&arguments, context)?,
+        Command::Predict(arguments) => predict::run(&arguments, context)?,
         Command::Marks(arguments) => marks::run(&arguments, context)?,
         Command::Vet(arguments) => vet::run(arguments, context)?,
         Command::Audit(arguments) => audit::run(&arguments, context)?,

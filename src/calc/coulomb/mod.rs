@@ -35,5 +35,5 @@ pub use gaps::{
 pub use integral::{CorePolarisation, RadialIntegral, radial_integral};
 pub use orbital::{Orbital, effective_quantum_number};
 pub use rate::{Active, DEEPEST, Rate, RateClass, RateModel, rate};
-pub use setting::Setting;
+pub use setting::{OuterLevel, Setting};
 pub use strength::{LsState, line_strength_factor, rate_per_s, strength_e2_a0_2};

@@ -1,10 +1,29 @@
 //! From a species to what the series and the Coulomb approximation have to know of it.
 
+use std::sync::Arc;
+
 use vocabulary::atom::{Species, element, limit, mass_u};
 use vocabulary::light::constants::{ELECTRON_MASS_U, RYDBERG_PER_CM};
 
 use super::gaps::Species as Outside;
 use crate::calc::series::outer_electron;
+
+/// A measured level of one electron outside a core.
+#[derive(Clone, Debug, PartialEq)]
+pub struct OuterLevel {
+    /// Configuration as [`Setting::one_form`] gives it.
+    pub configuration: String,
+    /// Term.
+    pub term: String,
+    /// Twice J.
+    pub twice_j: u16,
+    /// Energy above the ground level, cm⁻¹.
+    pub energy_per_cm: f64,
+    /// 1 σ, cm⁻¹.
+    pub uncertainty_per_cm: f64,
+    /// Key of its source.
+    pub source: Arc<str>,
+}
 
 /// What the calculator has to know of a species.
 #[derive(Clone, Copy, Debug, PartialEq)]

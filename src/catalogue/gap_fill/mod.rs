@@ -7,6 +7,7 @@
 //! displace nothing.
 
 mod one_electron;
+mod outer;
 mod scope;
 mod series;
 mod source;
