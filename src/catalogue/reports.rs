@@ -36,7 +36,8 @@ impl Catalogue {
 
     fn reports_of(&self, species: Species, labels: &Labels) -> rusqlite::Result<Reports> {
         let mut given = derive::read(&self.connection, species.code(), labels)?;
-        given.extend(gap_fill::Sources::held(&self.connection)?.fill(species));
+        let computed = gap_fill::Sources::held(&self.connection)?.fill(species, &given);
+        given.extend(computed);
         reconcile::rank(&mut given);
         let derived = reconcile::derive(species, given.clone());
         let level_rows = self.rows(
