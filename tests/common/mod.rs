@@ -13,7 +13,7 @@ pub struct Run {
     pub exit: i32,
 }
 
-/// The catalogue of bundled tables, built by the binary itself on the first call.
+/// The catalogue of bundled tables, this process's own copy of the one that the binary built.
 pub fn catalogue() -> &'static Path {
     static PATH: OnceLock<PathBuf> = OnceLock::new();
     PATH.get_or_init(|| {
@@ -21,10 +21,27 @@ pub fn catalogue() -> &'static Path {
             Path::new(env!("CARGO_TARGET_TMPDIR")).join(format!("run-{}", std::process::id()));
         std::fs::create_dir_all(&folder).unwrap();
         let path = folder.join("catalogue.sqlite");
+        std::fs::copy(built_catalogue(&folder), &path).unwrap();
+        path
+    })
+}
+
+/// Where the binary's first catalogue lies: one for all test programs of the same binary, known
+/// by its size and time. Whoever comes first builds it aside and renames it.
+fn built_catalogue(folder: &Path) -> PathBuf {
+    let file = std::fs::metadata(env!("CARGO_BIN_EXE_lineclear")).unwrap();
+    let age = file
+        .modified()
+        .unwrap()
+        .duration_since(std::time::UNIX_EPOCH);
+    let name = format!("built-{}-{}.sqlite", file.len(), age.unwrap().as_nanos());
+    let shared = Path::new(env!("CARGO_TARGET_TMPDIR")).join(name);
+    if !shared.exists() {
+        let own = folder.join("built.sqlite");
         let built = binary()
             .arg("sources")
             .arg("--catalogue")
-            .arg(&path)
+            .arg(&own)
             .output()
             .unwrap();
         assert!(
@@ -32,8 +49,9 @@ pub fn catalogue() -> &'static Path {
             "{}",
             String::from_utf8_lossy(&built.stderr)
         );
-        path
-    })
+        std::fs::rename(&own, &shared).unwrap();
+    }
+    shared
 }
 
 /// The binary with nothing of the tester's own surroundings.
