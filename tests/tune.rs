@@ -209,6 +209,23 @@ fn cooling_lines_lie_where_the_trade_expects_them() {
     }
 }
 
+/// Of erbium and dysprosium only lines from the ground term are held: nothing is called closed, and
+/// what is known of the decays is a bound.
+#[test]
+fn ground_term_tables_close_no_cycle() {
+    for (species, vacuum_nm) in [("Er I", 400.910), ("Dy II", 400.158)] {
+        let t = transition(species, vacuum_nm, "");
+        assert_ne!(t["cycling"], "closed", "{species}");
+        assert_eq!(t["decays_complete"], false, "{species}");
+    }
+    let shown = common::run("lineclear tune 400.7..400.82nm --of Er").stdout;
+    assert!(shown.contains("≤ 100% unrated"), "{shown}");
+    assert!(
+        shown.contains("Er I 400.796: only lines from the ground term are held"),
+        "{shown}"
+    );
+}
+
 /// Lines that cycle, and ions that leak to metastable d levels (common practice of laser cooling).
 #[test]
 fn cycling_lines_close_and_leaking_ones_name_the_leak() {

@@ -289,7 +289,7 @@ fn spectrum(catalogue: &Catalogue, species: Species, load: Load) -> Result<Spect
     Ok(Spectrum {
         lines: catalogue.lines(species, &levels, load.from_per_cm, load.to_per_cm)?,
         strengths: catalogue.strengths(species)?,
-        scopes: Vec::new(),
+        scopes: catalogue.scopes(species)?,
         limit_per_cm: vocabulary::atom::limit(species).map(|l| l.energy_per_cm),
         mass_u: vocabulary::atom::mass_u(species).unwrap_or(f64::from(species.atomic_number) * 2.0),
         species,

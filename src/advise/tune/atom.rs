@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 
 use vocabulary::atom::HalfInteger;
-use vocabulary::spectrum::Level;
+use vocabulary::spectrum::{Completeness, Level};
 
 use crate::advise::Spectrum;
 use crate::advise::hyperfine::Constants;
@@ -57,6 +57,14 @@ impl Atom {
             branching: BTreeMap::new(),
             hyperfine: BTreeMap::new(),
         }
+    }
+
+    /// Whether a source claims more of the species than lines from its ground term.
+    pub fn lists_excited_states(&self) -> bool {
+        let scopes = &self.spectrum.scopes;
+        scopes
+            .iter()
+            .any(|s| s.completeness != Completeness::GroundTerm)
     }
 
     /// The level that a table names, where exactly one fits.

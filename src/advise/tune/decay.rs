@@ -25,12 +25,16 @@ pub struct Decays {
     pub sum_per_s: f64,
     /// Measured lifetime and its 1 σ, ns.
     pub measured_ns: Option<(f64, f64)>,
+    /// A source claims to list lines between excited states of the species. Without such a claim
+    /// the level may decay to levels that are not held.
+    pub excited_states_listed: bool,
 }
 
 /// Whether a transition leads back to its start for good.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Cycling {
-    /// No other level that is held can be reached by electric dipole decay.
+    /// No other level that is held can be reached by electric dipole decay, and a source claims
+    /// to list the levels between excited states.
     Closed,
     /// A part of the decays goes elsewhere.
     Leaks {
@@ -92,6 +96,11 @@ impl Decays {
         let (lifetime_ns, sigma_ns) = self.measured_ns?;
         let held = self.sum_per_s * lifetime_ns * 1e-9;
         Some((1.0 - held, held * sigma_ns / lifetime_ns))
+    }
+
+    /// Whether all decays of weight are held with their rate, as far as the sources claim.
+    pub fn is_complete(&self) -> bool {
+        self.excited_states_listed && self.unrated().next().is_none()
     }
 
     /// Levels that parity and J allow without a held rate.
@@ -190,6 +199,10 @@ impl<'a> DecayBook<'a> {
             sum_per_s: decays.iter().filter_map(|d| d.rate_per_s).sum(),
             decays,
             measured_ns,
+            excited_states_listed: this.lists_excited_states()
+                || this
+                    .mixture
+                    .is_some_and(|m| self.atoms[m].lists_excited_states()),
         }
     }
 
@@ -225,7 +238,10 @@ impl<'a> DecayBook<'a> {
             _ => {}
         }
         if elsewhere.is_empty() {
-            return Cycling::Closed;
+            return match decays.excited_states_listed {
+                true => Cycling::Closed,
+                false => Cycling::Unrated,
+            };
         }
         let back = decays.sum_per_s - rated;
         if elsewhere.iter().all(|d| d.rate_per_s.is_some()) && back > 0.0 {

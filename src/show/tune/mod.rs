@@ -222,11 +222,7 @@ fn lifetime_cell(t: &Transition) -> String {
     match (t.decays.measured_ns, t.decays.lifetime_ns()) {
         (Some((ns, _)), _) => unit(ns),
         (None, Some(ns)) => {
-            let bound = if t.decays.unrated().next().is_some() {
-                "≤ "
-            } else {
-                ""
-            };
+            let bound = if t.decays.is_complete() { "" } else { "≤ " };
             format!("{bound}{}", unit(ns))
         }
         (None, None) => "lifetime ?".into(),
@@ -234,12 +230,17 @@ fn lifetime_cell(t: &Transition) -> String {
 }
 
 fn cycling_cell(t: &Transition) -> String {
-    let back = t
-        .branching_fraction
-        .map_or_else(|| "?".into(), back_in_table);
+    let back = match (t.branching_fraction, t.decays.measured_ns) {
+        (None, _) => "?".into(),
+        (Some(back), None) if !t.decays.is_complete() => format!("≤ {}", back_in_table(back)),
+        (Some(back), _) => back_in_table(back),
+    };
     let mut cell = match (t.cycling, t.cycling.photons()) {
         (Cycling::Closed, _) => format!("{back} closed"),
-        (Cycling::Leaks { .. }, Some(n)) => format!("{back} leaks\n{} photons", photons(n)),
+        (Cycling::Leaks { .. }, Some(n)) => {
+            let most = if back.starts_with('≤') { "≤ " } else { "" };
+            format!("{back} leaks\n{most}{} photons", photons(n))
+        }
         (Cycling::AtMost { .. }, Some(n)) => format!("{back}\n> {} photons", photons(n)),
         _ => format!("{back} unrated"),
     };

@@ -49,12 +49,22 @@ pub(super) fn notes(
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
     notes.extend(PHYSICS.map(str::to_owned));
+    let bound = |t: &&Transition| {
+        !t.decays.is_complete() && t.decays.measured_ns.is_none() && t.decays.sum_per_s > 0.0
+    };
+    if shown.iter().any(bound) {
+        notes.push(BOUNDS.into());
+    }
     notes.extend(context.source_notes());
     notes
 }
 
 /// So many remarks on single transitions are printed; JSON carries the rest in its own keys.
 const MOST_REMARKS: usize = 12;
+
+/// What stands below a table with bounds in it.
+const BOUNDS: &str = "≤: decays that are not held or not rated would make it smaller, and widths and \
+                      saturation larger.";
 
 const PHYSICS: [&str; 2] = [
     "Populated: at least 0.01 % of the atoms, by Boltzmann at the gas temperature. Cross-sections are \
@@ -92,6 +102,12 @@ fn remarks(t: &Transition) -> Vec<String> {
             out.push(format!(
                 "{name}: decays to {} are not rated.",
                 unrated.join(", ")
+            ));
+        }
+        if !t.decays.excited_states_listed {
+            out.push(format!(
+                "{name}: only lines from the ground term are held; it may decay to levels that are \
+                 not."
             ));
         }
     }

@@ -39,6 +39,7 @@ pub(super) fn transition_object(t: &Transition, atoms: &[Atom], question: &Quest
     );
     put("branching_fraction", json!(t.branching_fraction));
     put("cycling", json!(t.cycling.word()));
+    put("decays_complete", json!(t.decays.is_complete()));
     put("leak_fraction", json!(leak_fraction(t.cycling)));
     put("photons_before_loss", json!(t.cycling.photons()));
     let leaks: Vec<Value> = t
