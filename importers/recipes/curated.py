@@ -5,8 +5,9 @@ usage: curated.py [DATA]        (default: the data folder of this checkout)
 
 Reads data/curated-<ion>/entered_levels.csv and entered_lines.csv (what two separate entries from memory agree on) and
 `curated_decisions.toml`; writes levels.csv, lines.csv and source.toml beside them. later_levels.csv and later_lines.csv, where they
-are, hold values that one of the two entries had and a third recollection, made without a look at it, confirmed. Standard library
-only; nothing is fetched.
+are, hold values that one of the two entries had and a third recollection, made without a look at it, confirmed. second_levels.csv
+and second_lines.csv hold what two further separate entries agree on; of these, a level of which not both are sure is kept where two
+remembered lines confirm it, and a line that is there already only gives its rate. Standard library only; nothing is fetched.
 
 Levels: those that a remembered line confirms (`line`), whose term is confirmed (`term`, three times the entry's uncertainty),
 of the lowest configuration (`ground`), or known through a coarse line only (`coarse`, widened to what the line allows);
@@ -70,9 +71,9 @@ class Ion:
         self.lines = self.make_lines()
 
     def rows(self, table):
-        """Rows of entered_TABLE and later_TABLE, numbered, with the J that the decisions correct."""
+        """Rows of entered_TABLE, later_TABLE and second_TABLE, numbered, with the J that the decisions correct."""
         out = []
-        for prefix, mark in (("entered_", ""), ("later_", "later ")):
+        for prefix, mark in (("entered_", ""), ("later_", "later "), ("second_", "second ")):
             path = os.path.join(self.folder, prefix + table)
             found = read(path) if os.path.exists(path) else []
             out += [{**row, "row": f"{mark}{number}"} for number, row in enumerate(found, start=1)]
@@ -159,8 +160,9 @@ class Ion:
             rate = self.entered_rate(row)
             if rate:
                 rated[pair] = rate
+            if pair not in seen:
+                rows += self.line_rows(row, pair, row["row"])
             seen.add(pair)
-            rows += self.line_rows(row, pair, row["row"])
         trusted = {pair: rate for pair, rate in rated.items() if not self.by_fractions.get(pair)}
         derived = rates.derive(self.levels, trusted, lambda pair: pair not in rated)
         out = [self.with_rate(row, rated, derived) for row in rows]

@@ -42,6 +42,8 @@ pub struct Ion {
     pub entered_lines: Vec<HashMap<String, String>>,
     /// Rows of later_lines.csv, where there is one.
     pub later_lines: Vec<HashMap<String, String>>,
+    /// Rows of second_lines.csv, where there is one.
+    pub second_lines: Vec<HashMap<String, String>>,
 }
 
 impl Ion {
@@ -53,11 +55,20 @@ impl Ion {
 
     /// The kept row that a bundled line comes from; `None` for a component that follows from its multiplet.
     pub fn kept_row(&self, line: &Line) -> Option<&HashMap<String, String>> {
-        let (table, number) = match line.row.strip_prefix("later ") {
-            Some(number) => (&self.later_lines, number),
-            None => (&self.entered_lines, line.row.as_str()),
+        let (table, number) = match line.row.split_once(' ') {
+            Some(("later", number)) => (&self.later_lines, number),
+            Some(("second", number)) => (&self.second_lines, number),
+            _ => (&self.entered_lines, line.row.as_str()),
         };
         number.parse::<usize>().ok().map(|n| &table[n - 1])
+    }
+
+    /// The row of a second entry that rates a line which the first entry left without a rate.
+    pub fn second_rate(&self, line: &Line) -> Option<f64> {
+        let row = self.second_lines.iter().find(|row| {
+            line.lower.0 == row["lower_energy_per_cm"] && line.upper.0 == row["upper_energy_per_cm"]
+        })?;
+        row["rate_per_s"].parse().ok()
     }
 
     /// Vacuum wavenumber that a line's levels give, cm⁻¹.
@@ -112,6 +123,7 @@ fn read_ion(folder: &Path) -> Ion {
         lines: lines.iter().map(line).collect(),
         entered_lines: rows(&folder.join("entered_lines.csv")),
         later_lines: rows_if_there(&folder.join("later_lines.csv")),
+        second_lines: rows_if_there(&folder.join("second_lines.csv")),
     }
 }
 
