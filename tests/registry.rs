@@ -76,6 +76,7 @@ fn every_json_key_is_documented() {
         "lineclear passband --centre 667.9nm --fwhm 2nm --among He,Fe",
         "lineclear passband choose --target \"He I 667.8nm\" --among Fe",
         "lineclear sources",
+        "lineclear convert 656.28nm",
         "lineclear import data/morton2003 --dry-run",
     ] {
         keys(&common::json(command), &mut found);

@@ -7,6 +7,7 @@ mod bench;
 mod choose;
 mod climb;
 mod contrast;
+mod convert;
 mod describe;
 mod error;
 mod exit;
@@ -57,6 +58,7 @@ enum Command {
     Climb(climb::Arguments),
     Passband(Box<passband::Arguments>),
     Attribute(attribute::Arguments),
+    Convert(convert::Arguments),
     Import(import::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
@@ -91,6 +93,7 @@ pub fn run() -> Result<Exit, CliError> {
         Command::Tune(arguments) => tune::run(arguments, context)?,
         Command::Climb(arguments) => climb::run(arguments, context)?,
         Command::Passband(arguments) => passband::run(*arguments, context)?,
+        Command::Convert(arguments) => convert::run(&arguments)?,
         Command::Import(arguments) => import::run(&arguments, context)?,
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,
