@@ -10,6 +10,7 @@ use std::path::{Path, PathBuf};
 use importers::record::{LevelRecord, LineRecord, Record};
 use importers::source::SourceDescription;
 use importers::{ImportError, ReadOptions, ReadReport, read_source};
+use lineclear::vocabulary::spectrum::RateOrigin;
 
 fn bundled() -> Vec<PathBuf> {
     let data = Path::new(env!("CARGO_MANIFEST_DIR")).join("data");
@@ -414,11 +415,36 @@ fn descriptions_with_a_slip_are_refused_at_their_place() {
             "[[scope]]\nspecies = [\"*\"]\nband_nm = [5.0, 1.0]\ncompleteness = \"full\"\n",
             "source.toml: scope 1: band_nm must be two wavelengths",
         ),
+        (
+            "computed_species = [\"Xy I\"]\n",
+            "source.toml: computed_species: ",
+        ),
     ] {
         let error = SourceDescription::parse(&format!("{head}{tail}"), "source.toml").unwrap_err();
         assert!(
             error.to_string().starts_with(expected),
             "{error}\n{expected}"
         );
+    }
+}
+
+#[test]
+fn species_that_a_paper_took_from_theory_are_computed_and_no_others() {
+    let table = "species,nm,medium,lower,jl,upper,ju,a\n\
+                 Na I,588.995,air,0,1/2,16973.366,1.5,6.16e7\n\
+                 H I,121.567,vacuum,0,1/2,82259.285,1.5,6.26e8\n";
+    let declared = format!("computed_species = [\"H I\"]\n{LINES}");
+    for (description, hydrogen) in [(LINES, false), (declared.as_str(), true)] {
+        for record in read_text(description, table, 0).unwrap().1 {
+            let Record::Line(line) = record else { panic!() };
+            let expected = hydrogen && line.species.atomic_number == 1;
+            assert_eq!(line.computed, expected, "{line:?}");
+            let origin = if expected {
+                RateOrigin::Computed
+            } else {
+                RateOrigin::Published
+            };
+            assert_eq!(line.rate_origin, Some(origin), "{line:?}");
+        }
     }
 }

@@ -62,13 +62,14 @@ def manifest(written, counts, wrong_rates):
         "are one level",
         f"not read: Mg II 280.326 nm (atom MgII_fun) and its upper level: {FUDGE}",
         "no rate carries an uncertainty; no row has a citation: lowest preference",
+        "C VI has a single electron: its energies and rates are theory (common practice) and count as computed",
     ]
     columns = source.COMMON_LINE_COLUMNS
     head = [
         'key = "model-atoms"', 'title = "Model atoms for non-equilibrium radiative transfer"',
         'citation = "Model atoms distributed with lightweaver 0.17.0 (C. M. J. Osborne, I. Milić 2021, ApJ 917, 14); no citation per row"',
         'licence = "MIT"', 'kind = "model"', "level_scale_uncertainty_per_cm = 10.0",
-        "level_scale_uncertainty_relative = 0.0", "notes = [",
+        "level_scale_uncertainty_relative = 0.0", 'computed_species = ["C VI"]', "notes = [",
         *("  " + source.quoted(n) + "," for n in notes), "]", "",
         "# No scope: each atom is a selection of levels made for one stellar problem, and none lists all strong lines of its ion.",
         "",

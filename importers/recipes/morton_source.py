@@ -13,12 +13,14 @@ EDITIONS = {
         "title": "Atomic data for resonance absorption lines III: wavelengths longward of the Lyman limit, hydrogen to gallium",
         "citation": "D. C. Morton 2003, ApJS 149, 205, table 2",
         "file": "morton03_table2.dat",
+        "computed": ["H I", "D I"],
     },
     "e15cd44f967fb3aa214f217658f7465cb08a9ae7d2f46606a4270f2f8f3a9b8a": {
         "key": "morton2000",
         "title": "Atomic data for resonance absorption lines II: wavelengths longward of the Lyman limit, heavy elements",
         "citation": "D. C. Morton 2000, ApJS 130, 403, table 2",
         "file": "morton00_table2.dat",
+        "computed": [],
     },
 }
 
@@ -43,7 +45,7 @@ def quoted(text):
     return '"' + text.replace("\\", "\\\\").replace('"', '\\"') + '"'
 
 
-def notes(counts, written):
+def notes(edition, counts, written):
     """Each skipped class with its count and reason, and every mended or odd place."""
     out = [
         f"{counts['read']} data rows: {written['lines.csv'][1]} lines of {counts['ions']} ions, "
@@ -74,6 +76,9 @@ def notes(counts, written):
                "mark means doubt by common practice: its level has ten units of the last digit as uncertainty")
     out.append("rows of multiplets marked LS have components shared out by LS coupling: rate_origin derived")
     out.append("relative rate uncertainty = 10^error - 1, the error column being in dex")
+    if edition["computed"]:
+        out.append("energies of H I and D I are printed with the reference E77 (Erickson 1977, J. Phys. Chem. Ref. Data 6, "
+                   "831: calculated energies), their rates with theory: both count as computed, never as measured")
     return out
 
 
@@ -124,8 +129,10 @@ def manifest(edition, written, counts):
     head = [
         f'key = "{edition["key"]}"', f"title = {quoted(edition['title'])}",
         f"citation = {quoted(edition['citation'])}", 'licence = "BSD-3-Clause"', 'kind = "paper"',
-        "level_scale_uncertainty_per_cm = 0.1", "level_scale_uncertainty_relative = 0.0", "notes = [",
-        *("  " + quoted(n) + "," for n in notes(counts, written)), "]", "",
+        "level_scale_uncertainty_per_cm = 0.1", "level_scale_uncertainty_relative = 0.0",
+        *(["computed_species = [" + ", ".join(quoted(s) for s in edition["computed"]) + "]"] if edition["computed"] else []),
+        "notes = [",
+        *("  " + quoted(n) + "," for n in notes(edition, counts, written)), "]", "",
         "[[scope]]", 'species = ["*"]', f"band_nm = {band}", 'completeness = "ground-term"', "",
     ]
     ignore = ["row", "oscillator_strength", "rate_from_oscillator_strength", "flag"]

@@ -172,6 +172,13 @@ def write_csv(path, header, rows):
     return hashlib.sha256(path.read_bytes()).hexdigest(), len(rows)
 
 
+def one_electron(lines):
+    """The species of the table that have a single electron."""
+    held = {line["row"][0] for line in lines}
+    names = [f"{element} {roman}" for element, roman in zip(source.ELEMENTS, source.ROMAN)]
+    return [name for name in names if name in held]
+
+
 def manifest(written, lines, means, unplaced):
     apart = sum(line["row"][-1] == "false" for line in lines)
     notes = [
@@ -188,13 +195,15 @@ def manifest(written, lines, means, unplaced):
         "one that contradicts the multiplicity of its term is dropped (Fe I 3d5 4s2 (6S) 5Po)",
         "the K number that Ne I and Ar I carry in place of a term is written as a pair-coupling term",
         *(f"line {place}: {text}" for place, text in CONTRADICTIONS.items()),
+        "one-electron ions: energies and rates are theory (common practice), not measurement, and count as computed",
     ]
     columns = source.COMMON_LINE_COLUMNS.replace('{ constant = "true" }', '{ column = "from_levels" }')
     head = [
         'key = "verner1996"', 'title = "Atomic data for permitted resonance lines of atoms and ions from H to Si, and S, Ar, Ca, and Fe"',
         'citation = "D. A. Verner, E. M. Verner, G. J. Ferland 1996, Atomic Data and Nuclear Data Tables 64, 1, table 1"',
         'licence = "BSD-3-Clause"', 'kind = "paper"', "level_scale_uncertainty_per_cm = 0.3",
-        "level_scale_uncertainty_relative = 1e-5", "notes = [",
+        "level_scale_uncertainty_relative = 1e-5",
+        "computed_species = [" + ", ".join(source.quoted(s) for s in one_electron(lines)) + "]", "notes = [",
         *("  " + source.quoted(n) + "," for n in notes), "]", "",
         "[[scope]]", 'species = ["*"]', "band_nm = [0.1, 671.0]", 'completeness = "ground-term"', "",
     ]

@@ -3,7 +3,8 @@
 use std::sync::Arc;
 
 use thiserror::Error;
-use vocabulary::atom::Species;
+use vocabulary::atom::{Species, SpeciesRequest};
+use vocabulary::spectrum::RateOrigin;
 
 use super::bind::Binder;
 use super::cell::{Marks, Place};
@@ -77,6 +78,8 @@ pub struct Plan {
     species: SpeciesPlan,
     what: What,
     context: Context,
+    /// Species that the source took from theory.
+    computed_species: Vec<SpeciesRequest>,
     skips: Vec<Skip>,
     pub(crate) counts: Counts,
 }
@@ -85,6 +88,8 @@ pub struct Plan {
 #[derive(Clone, Copy, Debug)]
 struct Context {
     computed: bool,
+    /// The source took this species from theory, its rates as well, whatever their column says.
+    from_theory: bool,
     scale: LevelScale,
     /// The source has a table of levels, which says how well their energies are known.
     level_table: bool,
@@ -148,12 +153,16 @@ impl Plan {
             },
             context: Context {
                 computed: description.kind == SourceKind::Computed,
+                from_theory: false,
                 scale: LevelScale {
                     per_cm: description.level_scale_uncertainty_per_cm,
                     relative: description.level_scale_uncertainty_relative,
                 },
                 level_table: has_level_table(description),
             },
+            computed_species: (description.computed_species.iter())
+                .filter_map(|text| text.parse().ok()) // checked with the description
+                .collect(),
             skips: skips(&binder)?,
             counts: Counts::default(),
         };
@@ -177,10 +186,16 @@ impl Plan {
             file: Arc::clone(&self.file),
             line: row.line(),
         };
+        let from_theory = self.computed_species.iter().any(|s| s.matches(species));
+        let context = Context {
+            computed: self.context.computed || from_theory,
+            from_theory,
+            ..self.context
+        };
         match &self.what {
-            What::Levels(plan) => level_record(plan, row, species, self.context.computed, place),
+            What::Levels(plan) => level_record(plan, row, species, context.computed, place),
             What::Lines(plan) => {
-                let owner = (species, self.context);
+                let owner = (species, context);
                 line_record(plan, row, owner, place, &mut self.counts)
             }
         }
@@ -247,7 +262,10 @@ fn line_record(
         upper: upper.into_end(context.level_table),
         rate_per_s: rate.per_s,
         rate_relative_uncertainty: rate.relative_uncertainty,
-        rate_origin: rate.origin,
+        rate_origin: match rate.origin {
+            Some(_) if context.from_theory => Some(RateOrigin::Computed),
+            origin => origin,
+        },
         intensity: plan.intensity(row)?,
         kind: plan.kind(row)?,
         computed: context.computed,

@@ -1,5 +1,7 @@
 //! Sense checks of a description, before any table is opened.
 
+use vocabulary::atom::SpeciesRequest;
+
 use super::{
     Cell, Columns, Format, Ignore, RecordKind, SourceDescription, Split, TableDescription,
 };
@@ -35,6 +37,7 @@ pub(super) fn check(description: &SourceDescription) -> Result<(), Fault> {
         }
     }
     check_scopes(description)?;
+    check_species("computed_species", &description.computed_species)?;
     description
         .table
         .iter()
@@ -73,6 +76,14 @@ fn check_scopes(description: &SourceDescription) -> Result<(), Fault> {
         }
     }
     Ok(())
+}
+
+fn check_species(place: &str, list: &[String]) -> Result<(), Fault> {
+    let wrong = |text: &String| text.parse::<SpeciesRequest>().err();
+    match list.iter().find_map(wrong) {
+        Some(error) => fault(place, error.to_string()),
+        None => Ok(()),
+    }
 }
 
 fn check_table(table: &TableDescription) -> Result<(), Fault> {

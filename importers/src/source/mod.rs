@@ -199,6 +199,10 @@ pub struct SourceDescription {
     pub level_scale_uncertainty_relative: f64,
     /// What the energies are measured from, in words.
     pub energy_scale: Option<String>,
+    /// Species (`H I`, `He II`) whose energies and rates the source took from theory, whatever its
+    /// kind: they count as computed.
+    #[serde(default)]
+    pub computed_species: Vec<String>,
     /// Things a reader of the data should know.
     #[serde(default)]
     pub notes: Vec<String>,
