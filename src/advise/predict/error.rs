@@ -56,6 +56,20 @@ pub enum PredictError {
         /// Of which species.
         species: Species,
     },
+    /// A level of the user's own table below the series.
+    #[error(
+        "{species}, {series}: the table gives n = {n}, but the series begins at n = {lowest}; n is the principal quantum number"
+    )]
+    GivenBelow {
+        /// Of which species.
+        species: Species,
+        /// Which series.
+        series: String,
+        /// Lowest n given.
+        n: u32,
+        /// Lowest n of the series.
+        lowest: u32,
+    },
     /// The lower level is not there.
     #[error("{species}: no level {wanted} that a line of this series could end on")]
     NoLowerLevel {
@@ -104,7 +118,7 @@ impl PredictError {
                 cause,
                 SeriesError::BelowLowest { .. } | SeriesError::AngularMomentum { .. }
             ),
-            Self::NoLimit { .. } => false,
+            Self::NoLimit { .. } | Self::GivenBelow { .. } => false,
         }
     }
 }
