@@ -304,3 +304,24 @@ fn hydrogenic_expectation_values() {
         assert!((found - wanted).abs() < 1e-14 * wanted, "{found} {wanted}");
     }
 }
+
+#[test]
+fn levels_that_no_curve_joins_are_refused() {
+    // Rising energies, all below the limit, that belong to no one series.
+    let energies = [0.0, 20_132.5, 21_000.0, 33_000.0];
+    let members = (5..).zip(energies).map(|(n, energy_per_cm)| Member {
+        n,
+        energy_per_cm,
+        uncertainty_per_cm: 0.01,
+    });
+    let refused = fit(&input(members.collect())).unwrap_err();
+    assert!(
+        matches!(refused, SeriesError::Perturbed { .. }),
+        "{refused}"
+    );
+    // A level that is known to 0.5 cm⁻¹ may lie that far off.
+    let mut members = smooth();
+    members[7].uncertainty_per_cm = 0.5;
+    members[7].energy_per_cm += 1.0;
+    assert!(fit(&input(members)).is_ok());
+}

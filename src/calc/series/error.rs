@@ -8,7 +8,7 @@ use thiserror::Error;
 pub enum SeriesError {
     /// Fewer usable members than the fit needs.
     #[error(
-        "the series has {held} usable member(s) where a fit needs {needed}: give more levels or fix the limit"
+        "the series has {held} usable member{} where a fit needs {needed}: give more levels", if *.held == 1 { "" } else { "s" }
     )]
     TooFewMembers {
         /// Members that could be used.

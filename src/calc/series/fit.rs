@@ -2,7 +2,7 @@
 
 use super::linear::{Matrix, dot, times};
 use super::ritz::{NeglectedTerms, Ritz};
-use super::solve::{Solution, best_order};
+use super::solve::{Datum, Solution, best_order};
 use super::{Core, Limit, Member, SeriesError, SeriesInput};
 
 /// Most Ritz terms that are tried: δ₀, δ₂, δ₄, δ₆.
@@ -16,7 +16,8 @@ const LEAST_TO_JUDGE: usize = 4;
 const REGULAR_RATIO: f64 = 1.5;
 /// Ritz terms below this, at the lowest member, say nothing about regularity.
 const NEGLIGIBLE_TERM: f64 = 0.04;
-/// Largest scatter of the defects of a regular series.
+/// Largest scatter of the defects of a regular series, and for a rigid core the most that a
+/// member may miss the curve by, beyond 3 σ of its energy.
 const MOST_SCATTER: f64 = 0.005;
 
 /// A fitted series.
@@ -49,6 +50,8 @@ pub struct SeriesFit {
     /// Schwarz's criterion χ² + Σ ln σ² + k ln N (Schwarz 1978, Ann. Stat. 6, 461) for each number of
     /// terms tried, beginning with one.
     pub information: Vec<f64>,
+    /// Most that a member of a rigid core misses the curve by beyond 3 σ of its energy, as a defect.
+    pub(super) worst_slip: f64,
     pub(super) ritz: Ritz,
     pub(super) scaled_covariance: Matrix,
     pub(super) weights: Vec<(f64, f64)>,
@@ -124,8 +127,9 @@ fn regular(fit: &SeriesFit) -> Result<(), SeriesError> {
             return refuse(ratio);
         }
     }
-    if fit.defect_scatter > MOST_SCATTER {
-        return refuse(fit.defect_scatter / MOST_SCATTER);
+    let scatter = fit.defect_scatter.max(fit.worst_slip);
+    if scatter > MOST_SCATTER {
+        return refuse(scatter / MOST_SCATTER);
     }
     Ok(())
 }
@@ -172,6 +176,10 @@ pub(super) fn assemble(
         _ if input.core == Core::Soft => 1.0,
         freedom => (chi_squared / freedom as f64).sqrt().max(1.0),
     };
+    let worst_slip = match input.core {
+        Core::Rigid => used.iter().map(|d| slip(&ritz, d)).fold(0.0, f64::max),
+        Core::Soft => 0.0,
+    };
     let (coefficients, published) = unscaled(&ritz, &covariance, scale_factor);
     let limit_index = coefficients.len();
     SeriesFit {
@@ -191,10 +199,17 @@ pub(super) fn assemble(
             .map(|datum| (datum.n, datum.sigma_per_cm.powi(-2)))
             .collect(),
         defect_scatter: scatter,
+        worst_slip,
         ritz,
         scaled_covariance: covariance,
         neglected,
     }
+}
+
+/// How far a member lies off the curve beyond 3 σ of its energy, as a defect.
+fn slip(ritz: &Ritz, datum: &Datum) -> f64 {
+    let missed = (datum.energy_per_cm - ritz.energy_per_cm(datum.n)).abs();
+    (missed - 3.0 * datum.sigma_per_cm).max(0.0) / ritz.stiffness_per_cm(datum.n).abs()
 }
 
 /// Coefficients of `(n − δ₀)^(−2k)` and their covariance with the limit.

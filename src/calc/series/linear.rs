@@ -3,30 +3,41 @@
 /// A symmetric matrix, row by row.
 pub(super) type Matrix = Vec<Vec<f64>>;
 
+/// Largest system: four Ritz terms and a limit, with room. Factors stay off the heap.
+const LARGEST: usize = 6;
+
+type Factor = [[f64; LARGEST]; LARGEST];
+
 /// Inverse of a positive definite matrix by Cholesky decomposition, after scaling its diagonal
-/// to one; `None` when it is not positive definite to working accuracy.
+/// to one; `None` when it is not positive definite to working accuracy, or larger than any fit's.
 pub(super) fn inverse(matrix: &Matrix) -> Option<Matrix> {
     let size = matrix.len();
-    let scale: Vec<f64> = (0..size).map(|i| matrix[i][i].sqrt()).collect();
-    if scale.iter().any(|s| !s.is_finite() || *s <= 0.0) {
+    if size > LARGEST {
         return None;
+    }
+    let mut scale = [0.0; LARGEST];
+    for (i, s) in scale.iter_mut().enumerate().take(size) {
+        *s = matrix[i][i].sqrt();
+        if !s.is_finite() || *s <= 0.0 {
+            return None;
+        }
     }
     let factor = cholesky(matrix, &scale)?;
     let mut result = vec![vec![0.0; size]; size];
     for column in 0..size {
-        let mut unit = vec![0.0; size];
+        let mut unit = [0.0; LARGEST];
         unit[column] = 1.0;
-        let solved = solve(&factor, unit);
+        solve(&factor, &mut unit[..size]);
         for row in 0..size {
-            result[row][column] = solved[row] / (scale[row] * scale[column]);
+            result[row][column] = unit[row] / (scale[row] * scale[column]);
         }
     }
     Some(result)
 }
 
-fn cholesky(matrix: &Matrix, scale: &[f64]) -> Option<Matrix> {
+fn cholesky(matrix: &Matrix, scale: &[f64; LARGEST]) -> Option<Factor> {
     let size = matrix.len();
-    let mut factor = vec![vec![0.0; size]; size];
+    let mut factor = [[0.0; LARGEST]; LARGEST];
     for i in 0..size {
         for j in 0..=i {
             let known: f64 = (0..j).map(|k| factor[i][k] * factor[j][k]).sum();
@@ -45,8 +56,8 @@ fn cholesky(matrix: &Matrix, scale: &[f64]) -> Option<Matrix> {
     Some(factor)
 }
 
-fn solve(factor: &Matrix, mut vector: Vec<f64>) -> Vec<f64> {
-    let size = factor.len();
+fn solve(factor: &Factor, vector: &mut [f64]) {
+    let size = vector.len();
     for i in 0..size {
         let known: f64 = (0..i).map(|k| factor[i][k] * vector[k]).sum();
         vector[i] = (vector[i] - known) / factor[i][i];
@@ -55,7 +66,6 @@ fn solve(factor: &Matrix, mut vector: Vec<f64>) -> Vec<f64> {
         let known: f64 = (i + 1..size).map(|k| factor[k][i] * vector[k]).sum();
         vector[i] = (vector[i] - known) / factor[i][i];
     }
-    vector
 }
 
 /// Product of a matrix and a vector.

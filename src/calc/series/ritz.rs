@@ -93,11 +93,18 @@ impl Ritz {
 
     /// Change of the energy with each scaled term and with the limit.
     pub fn gradient(&self, n: f64) -> Vec<f64> {
+        let mut gradient = Vec::with_capacity(self.scaled.len() + 1);
+        self.gradient_into(n, &mut gradient);
+        gradient
+    }
+
+    /// As [`Ritz::gradient`], in place of what a buffer held.
+    pub fn gradient_into(&self, n: f64, gradient: &mut Vec<f64>) {
         let x = self.expansion(n);
         let stiffness = self.stiffness_per_cm(n);
         let mut power = 1.0;
         let mut through_scale = 0.0;
-        let mut gradient = Vec::with_capacity(self.scaled.len() + 1);
+        gradient.clear();
         for (k, c) in self.scaled.iter().enumerate() {
             gradient.push(stiffness * power);
             through_scale += k as f64 * c * power;
@@ -106,7 +113,6 @@ impl Ritz {
         // x itself moves with c₀: dx/dc₀ = 2x/(n − c₀).
         gradient[0] += stiffness * through_scale * 2.0 / (n - self.scaled[0]);
         gradient.push(1.0);
-        gradient
     }
 
     /// Change of the energy with a term that was left out.

@@ -248,8 +248,9 @@ fn normal_equations(input: &SeriesInput, data: &[Datum], ritz: &Ritz) -> (Matrix
     let size = ritz.scaled.len() + 1;
     let mut normal = vec![vec![0.0; size]; size];
     let mut right = vec![0.0; size];
+    let mut gradient = Vec::with_capacity(size);
     for datum in data {
-        let gradient = ritz.gradient(datum.n);
+        ritz.gradient_into(datum.n, &mut gradient);
         let weight = datum.sigma_per_cm.powi(-2);
         let residual = datum.energy_per_cm - ritz.energy_per_cm(datum.n);
         accumulate(&mut normal, &mut right, &gradient, weight, residual);
