@@ -8,7 +8,7 @@ use vocabulary::atom::{HalfInteger, SpeciesRequest};
 use vocabulary::light::{Medium, Temperature};
 
 use super::options::{CatalogueOptions, OutputOptions, medium};
-use super::table_file::TableFile;
+use super::table_file::{ColumnIndex, TableFile};
 use super::{CliError, Exit, Outcome};
 use crate::advise::predict::{self, Answer, LowerName, PredictError, Question, SeriesName};
 use crate::calc::series::{Member, orbital_number};
@@ -229,15 +229,44 @@ fn members(path: &Path) -> Result<(Vec<Member>, Option<String>), CliError> {
         if number.fract() != 0.0 || number > f64::from(MOST_N) {
             return Err(table.bad(row, n, "is not a whole number up to 150").into());
         }
+        let energy_per_cm = table.number(row, energy)?;
+        if energy_per_cm < 0.0 {
+            let problem = "lies below the ground level; give energies above it";
+            return Err(table.bad(row, energy, problem).into());
+        }
         members.push(Member {
             n: number as u32,
-            energy_per_cm: table.number(row, energy)?,
+            energy_per_cm,
             uncertainty_per_cm: match uncertainty {
                 Some(column) => table.positive(row, column)?,
                 None => UNSTATED_PER_CM,
             },
         });
     }
+    rising(&table, (n, energy), &members)?;
     let assumed = format!("levels known to {UNSTATED_PER_CM} cm⁻¹ (no column uncertainty_per_cm)");
     Ok((members, uncertainty.is_none().then_some(assumed)))
+}
+
+/// Each n once, and energies that rise with n.
+fn rising(
+    table: &TableFile,
+    (n, energy): (ColumnIndex, ColumnIndex),
+    members: &[Member],
+) -> Result<(), CliError> {
+    let mut order: Vec<usize> = (0..members.len()).collect();
+    order.sort_by_key(|&row| members[row].n);
+    for pair in order.windows(2) {
+        let [low, high] = [&members[pair[0]], &members[pair[1]]];
+        if low.n == high.n {
+            return Err(table
+                .bad(pair[1], n, "stands twice; give each n once")
+                .into());
+        }
+        if high.energy_per_cm <= low.energy_per_cm {
+            let problem = "does not lie above the level of the n before; energies of a series rise";
+            return Err(table.bad(pair[1], energy, problem).into());
+        }
+    }
+    Ok(())
 }

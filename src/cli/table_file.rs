@@ -19,6 +19,21 @@ pub enum TableFileError {
         #[source]
         cause: csv::Error,
     },
+    /// A row of another length than the header.
+    #[error(
+        "{}: line {line}: {found} cell{} where the header has {wanted}; give each row one cell per column",
+        path.display(), if *.found == 1 { "" } else { "s" }
+    )]
+    Cells {
+        /// The file.
+        path: PathBuf,
+        /// Line, the header being 1.
+        line: u64,
+        /// Cells of the row.
+        found: u64,
+        /// Cells of the header.
+        wanted: u64,
+    },
     /// No rows.
     #[error("{}: holds no row; write a header line and one row per entry", path.display())]
     Empty {
@@ -143,9 +158,21 @@ impl TableFile {
     /// No CSV, or no row.
     pub fn parse(path: &Path, bytes: &[u8]) -> Result<Self, TableFileError> {
         let bytes = bytes.strip_prefix(b"\xef\xbb\xbf").unwrap_or(bytes);
-        let not_csv = |cause| TableFileError::NotCsv {
-            path: path.to_owned(),
-            cause,
+        let not_csv = |cause: csv::Error| match cause.kind() {
+            csv::ErrorKind::UnequalLengths {
+                pos: Some(place),
+                expected_len,
+                len,
+            } => TableFileError::Cells {
+                path: path.to_owned(),
+                line: place.line(),
+                found: *len,
+                wanted: *expected_len,
+            },
+            _ => TableFileError::NotCsv {
+                path: path.to_owned(),
+                cause,
+            },
         };
         let mut reader = ReaderBuilder::new()
             .trim(Trim::All)

@@ -53,7 +53,9 @@ pub fn predict(answer: &Answer, species: Species, lines_first: bool, context: Co
     } else {
         (
             LEVEL_COLUMNS.to_vec(),
-            answer.levels.iter().map(level_row).collect(),
+            (answer.levels.iter())
+                .map(|level| level_row(level, limit_sigma))
+                .collect(),
         )
     };
     Sheet {
@@ -79,18 +81,25 @@ fn headline(answer: &Answer, species: Species, lines_first: bool) -> Vec<String>
     )];
     if let Some(placed) = answer.limit_line {
         let medium = medium_word(placed.medium);
-        let nm = with_uncertainty(placed.wavelength_nm, placed.uncertainty_nm.max(1e-4));
+        let nm = with_uncertainty(placed.wavelength_nm, placed.uncertainty_nm.max(1e-6));
         out.push(format!("The lines end at {nm} nm in {medium}."));
     }
     out
 }
 
-fn level_row(level: &PredictedLevel) -> Vec<String> {
+fn level_row(level: &PredictedLevel, limit_sigma_per_cm: f64) -> Vec<String> {
     let sigma = level.uncertainty_per_cm;
+    // A level that is measured knows nothing of the limit; one that is computed hangs on it.
+    let measured = level.method == "given" || level.method.starts_with("held");
+    let below = if measured {
+        sigma.hypot(limit_sigma_per_cm)
+    } else {
+        sigma
+    };
     vec![
         level.label.clone(),
         with_uncertainty(level.energy_per_cm, sigma),
-        with_uncertainty(level.binding_per_cm, sigma),
+        with_uncertainty(level.binding_per_cm, below),
         format!("{:.5}", level.quantum_defect),
         lifetime_cell(level.lifetime),
         lifetime_cell(level.black_body_lifetime),
