@@ -53,7 +53,7 @@ pub struct Arguments {
     output: OutputOptions,
 }
 
-/// Species expected in a list of unknown origin; the prior of each is this over those held.
+/// Species expected in a list of unknown origin.
 const SPECIES_EXPECTED: f64 = 8.0;
 /// Temperatures tried where none is given, eV.
 const TEMPERATURES_EV: [f64; 6] = [0.3, 0.6, 1.0, 2.0, 4.0, 8.0];
@@ -75,14 +75,16 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
         path: arguments.file.clone(),
     })?;
     let catalogue = context.open()?;
-    let all = requests.is_empty();
-    let requests = if all {
+    let requests = if requests.is_empty() {
         everything(&catalogue)?
     } else {
         requests
     };
     let margin_nm = 10.0 * checked.width.at_nm(range.vacuum_high_nm);
-    let held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    let mut held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    if !arguments.among.is_empty() {
+        name_isotopes(&mut held.spectra, &requests);
+    }
     let first_order = 1e7
         / peaks
             .iter()
@@ -100,14 +102,27 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
             to_nm: range.vacuum_high_nm,
         });
     }
-    let question = question(arguments, &mut checked, &range, all, held.spectra.len())?;
+    let question = question(arguments, &mut checked, &range)?;
     let answer = attribute::answer(&question, &peaks, &held.spectra)?;
+    let asked = show::Asked {
+        named: !arguments.among.is_empty(),
+        not_held: held.not_held,
+    };
     let described = describe(&catalogue, &answer, &question, &checked, &range)?;
     Ok(Outcome {
-        sheet: show::attribute(&answer, &question, &held.not_held, described),
+        sheet: show::attribute(&answer, &question, &asked, described),
         format: arguments.output.format,
         exit: Exit::Answered,
     })
+}
+
+/// An isotope that was asked for is as likely as a stage that was.
+fn name_isotopes(spectra: &mut [crate::advise::Spectrum], requests: &[SpeciesRequest]) {
+    for spectrum in spectra.iter_mut().filter(|s| s.species.isotope.is_some()) {
+        let isotope = spectrum.species.isotope;
+        let asked = |r: &SpeciesRequest| r.isotope == isotope && r.matches(spectrum.species);
+        spectrum.named |= requests.iter().any(asked);
+    }
 }
 
 /// All elements and isotopes held, each with all stages.
@@ -144,8 +159,6 @@ fn question(
     arguments: &Arguments,
     checked: &mut Checked,
     range: &SpectralRange,
-    all: bool,
-    species: usize,
 ) -> Result<Question, CliError> {
     let width_nm = checked.width.at_nm(range.centre_vacuum_nm());
     let shift_bound_nm = match &arguments.shift {
@@ -177,12 +190,7 @@ fn question(
         width: checked.width,
         grid,
         shift_bound_nm,
-        prior: if all {
-            (SPECIES_EXPECTED / species.max(1) as f64).min(0.5)
-        } else {
-            0.5
-        },
-        fewest_matched: if all { 2 } else { 1 },
+        species_expected: SPECIES_EXPECTED,
     })
 }
 
@@ -307,7 +315,7 @@ fn describe(
         .insert("shift_bound_nm".into(), json!(question.shift_bound_nm));
     context
         .conditions
-        .insert("prior".into(), json!(question.prior));
+        .insert("prior".into(), json!(answer.prior));
     let lines = || {
         answer
             .peaks

@@ -6,6 +6,7 @@ use vocabulary::light::{Air, Medium};
 use super::line::{line_object, medium_word};
 use super::number::{percent, percent_in_table, with_uncertainty};
 use super::sheet::{Align, Column, Context, Sheet};
+use super::window::stages;
 use crate::advise::attribute::{Answer, Candidate, Mark, PeakAnswer, Question, SpeciesAnswer};
 use crate::advise::{Placed, placed};
 use vocabulary::light::constants::PER_CM_PER_EV;
@@ -18,23 +19,30 @@ const COLUMNS: [Column; 5] = [
     Column::wrapped("others", Align::Left),
 ];
 
+/// A false-discovery rate below this is said to be so.
+const LEAST_RATE: f64 = 1e-3;
+
 /// Species without a match, or of which nothing speaks, are left out of the list.
 const WORTH_LISTING: f64 = 0.05;
 
+/// What was asked for by name.
+#[derive(Clone, Debug, Default)]
+pub struct Asked {
+    /// Species were named: what cannot be told of them is said.
+    pub named: bool,
+    /// Requests of which nothing is held.
+    pub not_held: Vec<String>,
+}
+
 /// Builds the sheet.
-pub fn attribute(
-    answer: &Answer,
-    question: &Question,
-    not_held: &[String],
-    context: Context,
-) -> Sheet {
+pub fn attribute(answer: &Answer, question: &Question, asked: &Asked, context: Context) -> Sheet {
     let medium = question.medium;
-    let notes = notes(answer, not_held, &context);
+    let notes = notes(answer, asked, &context);
     let listed = || {
         answer
             .species
             .iter()
-            .filter(|s| s.present || s.probability >= WORTH_LISTING)
+            .filter(|s| s.present || (s.judged && s.probability >= WORTH_LISTING))
     };
     let mut object = context.object(&notes);
     object.insert(
@@ -83,7 +91,13 @@ fn headline(answer: &Answer) -> Vec<String> {
         .filter(|p| p.attributed().is_some())
         .count();
     let rate = answer.false_discovery_rate.map_or_else(String::new, |f| {
-        format!("; {} of these are expected to be wrong", percent(f))
+        // Less is not to be told from ten shifted lists.
+        let part = if f < LEAST_RATE {
+            format!("less than {}", percent(LEAST_RATE))
+        } else {
+            percent(f)
+        };
+        format!("; {part} of these are expected to be wrong")
     });
     let mut out = vec![format!(
         "{count} of {} peaks attributed{rate}.",
@@ -215,7 +229,7 @@ fn species_object(species: &SpeciesAnswer, question: &Question, medium: Medium) 
     })
 }
 
-fn notes(answer: &Answer, not_held: &[String], context: &Context) -> Vec<String> {
+fn notes(answer: &Answer, asked: &Asked, context: &Context) -> Vec<String> {
     let mut notes = Vec::new();
     for species in answer.species.iter().filter(|s| s.present) {
         notes.push(format!(
@@ -229,7 +243,7 @@ fn notes(answer: &Answer, not_held: &[String], context: &Context) -> Vec<String>
     let doubtful: Vec<String> = answer
         .species
         .iter()
-        .filter(|s| !s.present && s.probability >= WORTH_LISTING)
+        .filter(|s| !s.present && s.judged && s.probability >= WORTH_LISTING)
         .map(|s| format!("{} ({})", s.species, percent(s.probability)))
         .collect();
     if !doubtful.is_empty() {
@@ -246,8 +260,21 @@ fn notes(answer: &Answer, not_held: &[String], context: &Context) -> Vec<String>
         "Scale: {:+.4} nm at {:.1} nm and {:+.1e} nm per nm were added to the peaks.",
         answer.scale.shift_nm, answer.scale.middle_nm, answer.scale.stretch
     ));
-    if !not_held.is_empty() {
-        notes.push(format!("Nothing is held of {}.", not_held.join(", ")));
+    let silent: Vec<String> = answer
+        .species
+        .iter()
+        .filter(|s| !s.judged)
+        .map(|s| s.species.to_string())
+        .collect();
+    if asked.named && !silent.is_empty() {
+        let names: Vec<&str> = silent.iter().map(String::as_str).collect();
+        notes.push(format!(
+            "No line is held in this range of {}.",
+            stages(&names)
+        ));
+    }
+    if !asked.not_held.is_empty() {
+        notes.push(format!("Nothing is held of {}.", asked.not_held.join(", ")));
     }
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));

@@ -24,7 +24,7 @@ mod tune;
 mod vet;
 mod window;
 
-pub use attribute::attribute;
+pub use attribute::{Asked, attribute};
 pub use audit::{AuditWish, audit};
 pub use choose::chosen;
 pub use climb::{ClimbWish, climb};

@@ -364,7 +364,7 @@ pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
 }
 
 /// Stages that follow each other are written as a range: `Fe III..XXVI`.
-fn stages(species: &[&str]) -> String {
+pub(super) fn stages(species: &[&str]) -> String {
     let read = |name: &str| name.parse::<vocabulary::atom::Species>().ok();
     let mut runs: Vec<(&str, &str)> = Vec::new();
     for &name in species {

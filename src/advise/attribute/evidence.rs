@@ -10,13 +10,18 @@
 
 use super::features::Template;
 use super::matches::Matches;
-use super::{PRESENT, Question};
+use super::{LARGEST_PRIOR, PRESENT};
 
 /// Chance that a present species shows a feature at least as strong as its weakest counted one. A
 /// choice: peak lists leave out blended lines, and rates are off.
 const SHOWN: f64 = 0.6;
-/// The same for features of which no rate is known.
+/// The same for features of which no rate is known, at most …
 const SHOWN_UNRATED: f64 = 0.05;
+/// … and so many of them in all: of lines that follow from levels alone hardly one is seen, and a
+/// species with thousands of them must not be found on their account.
+const SHOWN_UNRATED_IN_ALL: f64 = 2.0;
+/// Fewest matched features of a species that nobody named, among many: one alone is chance.
+const FEWEST_MATCHED: usize = 2;
 /// Beyond this loss nothing can make good what is missing.
 const GIVE_UP: f64 = -40.0;
 
@@ -81,6 +86,12 @@ impl Ranking {
         Self { ranked, unrated }
     }
 
+    /// Whether a species has a feature in the range.
+    pub fn is_judged(&self, species: usize) -> bool {
+        let rated = self.ranked[species].first().is_some_and(|r| !r.is_empty());
+        rated || !self.unrated[species].is_empty()
+    }
+
     fn all(&self, species: usize, temperature: usize) -> impl Iterator<Item = usize> {
         let ranked = self.ranked[species].get(temperature).into_iter().flatten();
         ranked.chain(&self.unrated[species]).copied()
@@ -99,8 +110,6 @@ pub struct Case<'a> {
     pub density: &'a [f64],
     /// Logarithm of the prior odds of each species.
     pub log_prior: &'a [f64],
-    /// What was asked.
-    pub question: &'a Question,
 }
 
 impl Case<'_> {
@@ -113,7 +122,7 @@ impl Case<'_> {
         loop {
             let odds = |s: usize| out[s].log_ratio + self.log_prior[s];
             let best = (0..count)
-                .filter(|&s| !out[s].present && self.passes(&out[s]))
+                .filter(|&s| !out[s].present && self.passes(s, &out[s]))
                 .max_by(|&a, &b| odds(a).total_cmp(&odds(b)).then(b.cmp(&a)));
             let Some(best) = best else { break };
             out[best].present = true;
@@ -127,8 +136,20 @@ impl Case<'_> {
         (out, claimed)
     }
 
-    fn passes(&self, evidence: &Evidence) -> bool {
-        evidence.probability >= PRESENT && evidence.matched.len() >= self.question.fewest_matched
+    fn passes(&self, species: usize, evidence: &Evidence) -> bool {
+        let even = (LARGEST_PRIOR / (1.0 - LARGEST_PRIOR)).ln();
+        let fewest = if self.log_prior[species] < even {
+            FEWEST_MATCHED
+        } else {
+            1
+        };
+        evidence.probability >= PRESENT && evidence.matched.len() >= fewest
+    }
+
+    /// Chance that a feature of unknown rate of a present species is seen.
+    fn shown_unrated(&self, species: usize) -> f64 {
+        let count = self.ranking.unrated[species].len().max(1) as f64;
+        SHOWN_UNRATED.min(SHOWN_UNRATED_IN_ALL / count)
     }
 
     /// Species with a feature at any of these peaks.
@@ -170,7 +191,7 @@ impl Case<'_> {
     /// Chance that a feature of a present species is seen: L/(L + light of the weakest counted).
     pub fn shown(&self, template: usize, evidence: &Evidence) -> f64 {
         let Some(light) = &self.templates[template].light else {
-            return SHOWN_UNRATED;
+            return self.shown_unrated(self.templates[template].spectrum);
         };
         let light = light[evidence.temperature];
         if light > 0.0 {
@@ -188,7 +209,8 @@ impl Case<'_> {
                 .max_by(|a, b| a.log_ratio.total_cmp(&b.log_ratio))
                 .unwrap_or_default()
         } else {
-            self.along(&self.ranking.unrated[species], 0, SHOWN_UNRATED, claimed)
+            let shown = self.shown_unrated(species);
+            self.along(&self.ranking.unrated[species], 0, shown, claimed)
         };
         let odds = best.log_ratio + self.log_prior[species];
         best.probability = 1.0 / (1.0 + (-odds).exp());
