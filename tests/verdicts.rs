@@ -8,7 +8,7 @@
 use std::sync::Arc;
 
 use lineclear::advise::window::{Answer, Question, WindowFeature, answer};
-use lineclear::advise::{Conditions, EmissionModel, Spectrum, Verdict};
+use lineclear::advise::{Conditions, Details, EmissionModel, Spectrum, Verdict};
 use lineclear::vocabulary::atom::{HalfInteger, Species};
 use lineclear::vocabulary::light::{Air, Medium, SpectralWidth, TypedRange};
 use lineclear::vocabulary::spectrum::{
@@ -104,6 +104,7 @@ fn ask(spectra: &[Spectrum]) -> Answer {
             kt_per_cm: KT_1EV_PER_CM,
             electron_density_per_m3: None,
             gas_temperature_k: 1000.0,
+            details: Details::default(),
         },
         not_held: Vec::new(),
     };

@@ -4,14 +4,17 @@ use vocabulary::atom::Species;
 use vocabulary::light::{Air, Medium};
 
 use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
+use super::emission::{Emitter, shared_sigma};
 use super::error::AdviseError;
 use super::position::placed;
-use super::scene::{REACH_WIDTHS, Scene};
+use super::scene::Scene;
 use super::spectrum::Spectrum;
 use super::unrated::Unrated;
 use super::verdict::{Interference, VerdictRange, Worst};
 use super::window::{Unjudged, WindowFeature};
 
+/// How many lines are named in one sentence.
+const NAMED: usize = 4;
 /// From this chance on, lines without a rate that may change a verdict are named.
 const CHANCE_NAMED: f64 = 0.01;
 
@@ -41,7 +44,7 @@ impl<'a, 's> Judge<'a, 's> {
     pub(super) fn decides(&self, spectrum: usize) -> bool {
         let this = &self.scene.spectra[spectrum];
         let known = |c: &Coverage| !matches!(c, Coverage::Nothing { .. });
-        if known(&self.coverage[spectrum]) || this.amount == 0.0 {
+        if known(&self.coverage[spectrum]) || self.scene.emitters[spectrum].is_absent {
             return false;
         }
         let same_element = |s: &Spectrum| {
@@ -83,6 +86,9 @@ impl<'a, 's> Judge<'a, 's> {
             let Coverage::Nothing { ground_term } = *coverage else {
                 continue;
             };
+            if self.scene.emitters[index].is_absent {
+                continue;
+            }
             let reason = if ground_term {
                 "only lines from its ground term are held here"
             } else {
@@ -104,6 +110,47 @@ impl<'a, 's> Judge<'a, 's> {
         medium: Medium,
         air: &Air,
     ) -> Result<WindowFeature, AdviseError> {
+        let mut out = self.unjudged_feature(index, total, medium, air)?;
+        self.interfere(index, &mut out);
+        out.worst_placed = out
+            .worst
+            .as_ref()
+            .map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air))
+            .transpose()?;
+        Ok(out)
+    }
+
+    /// Judges a feature behind a filter: `interference` is what the rated lines do there, and
+    /// `unrated` what the others may do.
+    pub(super) fn filtered(
+        &self,
+        index: usize,
+        medium: Medium,
+        air: &Air,
+        interference: Option<Interference>,
+        unrated: &Unrated,
+    ) -> Result<WindowFeature, AdviseError> {
+        let mut out = self.unjudged_feature(index, 0.0, medium, air)?;
+        let Some(interference) = interference else {
+            if self.scene.features[index].light.is_none_or(|l| l <= 0.0) {
+                out.remarks.push(self.why_unknown(index).into());
+            }
+            return Ok(out);
+        };
+        out.interference = Some(interference);
+        out.verdict = interference.verdict();
+        self.rateless(unrated, &mut out);
+        self.unknowns(index, &mut out);
+        Ok(out)
+    }
+
+    fn unjudged_feature(
+        &self,
+        index: usize,
+        total: f64,
+        medium: Medium,
+        air: &Air,
+    ) -> Result<WindowFeature, AdviseError> {
         let feature = &self.scene.features[index];
         let sigma = feature
             .components
@@ -111,7 +158,7 @@ impl<'a, 's> Judge<'a, 's> {
             .map(|&c| self.scene.emissions[c].line.wavenumber_uncertainty_per_cm)
             .fold(f64::INFINITY, f64::min);
         let (rate_per_s, rate_relative_uncertainty) = self.mean_rate(index);
-        let mut out = WindowFeature {
+        Ok(WindowFeature {
             species: self.scene.spectra[feature.spectrum].species,
             placed: placed(1e7 / feature.nm, sigma, medium, air)?,
             components: Vec::new(),
@@ -126,14 +173,7 @@ impl<'a, 's> Judge<'a, 's> {
             worst_placed: None,
             unlisted_chance: 0.0,
             prior_chance: None,
-        };
-        self.interfere(index, &mut out);
-        out.worst_placed = out
-            .worst
-            .as_ref()
-            .map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air))
-            .transpose()?;
-        Ok(out)
+        })
     }
 
     /// Σ g A / Σ g over the rated components, each upper level counted once.
@@ -166,7 +206,7 @@ impl<'a, 's> Judge<'a, 's> {
     fn interfere(&self, index: usize, out: &mut WindowFeature) {
         let target = &self.scene.features[index];
         let Some(signal) = target.signal.filter(|s| *s > 0.0) else {
-            out.remarks.push("its own rate is not known".into());
+            out.remarks.push(self.why_unknown(index).into());
             return;
         };
         let width_nm = self.scene.width.at_nm(target.nm);
@@ -176,7 +216,8 @@ impl<'a, 's> Judge<'a, 's> {
                 sum.own += part.fraction;
                 continue;
             }
-            sum.add(part.fraction, part.relative_sigma);
+            let of = self.scene.emissions[part.emission].spectrum;
+            sum.add(of, part.fraction, part.relative_sigma);
             if part.fraction > out.worst.as_ref().map_or(0.0, |w| w.fraction) {
                 let emission = &self.scene.emissions[part.emission];
                 out.worst = Some(Worst {
@@ -188,20 +229,50 @@ impl<'a, 's> Judge<'a, 's> {
             }
         }
         out.own_species_fraction = Some(sum.own);
-        let interference = sum.interference(target.signal_sigma);
+        let target_sigma = target.signal_sigma.hypot(self.own_pressure_sigma(index));
+        let interference = sum.interference(self.scene, target.spectrum, target_sigma);
         out.interference = Some(interference);
         out.verdict = interference.verdict();
-        let reach_nm = REACH_WIDTHS * width_nm;
-        let unrated = Unrated::around(self.scene, index, reach_nm, interference.fraction);
+        let unrated = Unrated::around(self.scene, index, interference.fraction);
         self.rateless(&unrated, out);
         self.unknowns(index, out);
+    }
+
+    /// Why the light of a feature is not known.
+    fn why_unknown(&self, index: usize) -> &'static str {
+        let target = &self.scene.features[index];
+        let emitter = &self.scene.emitters[target.spectrum];
+        let mut lines = target
+            .components
+            .iter()
+            .map(|&c| self.scene.emissions[c].line);
+        if emitter.is_absent {
+            "there is none of its species"
+        } else if target.light.is_some() {
+            "it emits nothing under these conditions"
+        } else if lines.any(|l| emitter.is_unfed(l)) {
+            "nothing in the model excites it from the ground term (spin or parity forbid it); give \
+             the population of a metastable level (--metastable)"
+        } else {
+            "its own rate is not known"
+        }
+    }
+
+    /// Relative 1 σ of a feature's own signal from pressure widths that are not known exactly.
+    pub(super) fn own_pressure_sigma(&self, index: usize) -> f64 {
+        let target = &self.scene.features[index];
+        let sigma = |&c: &usize| {
+            let emission = &self.scene.emissions[c];
+            self.scene.pressure_sigma(emission, emission.nm - target.nm)
+        };
+        target.components.iter().map(sigma).fold(0.0, f64::max)
     }
 
     /// What each rated line outside a feature adds to its signal, lines by wavelength.
     pub(super) fn parts(&self, index: usize, signal: f64) -> Vec<Part> {
         let target = &self.scene.features[index];
         let width_nm = self.scene.width.at_nm(target.nm);
-        let around = self.scene.around(target.nm, REACH_WIDTHS * width_nm);
+        let around = self.scene.reaching(target.nm, width_nm);
         let part = |i: usize| {
             let emission = &self.scene.emissions[i];
             let offset_nm = emission.nm - target.nm;
@@ -212,7 +283,8 @@ impl<'a, 's> Judge<'a, 's> {
                 fraction: light * emission.profile.density(offset_nm) / signal,
                 relative_sigma: emission
                     .light_sigma
-                    .hypot(self.shift_sigma(index, i, width_nm)),
+                    .hypot(self.shift_sigma(index, i, width_nm))
+                    .hypot(self.scene.pressure_sigma(emission, offset_nm)),
                 own: emission.spectrum == target.spectrum,
             })
         };
@@ -255,22 +327,51 @@ impl<'a, 's> Judge<'a, 's> {
             let species = self.scene.spectra[emission.spectrum].species;
             format!("{species} {:.3} nm", emission.nm)
         };
-        if !unrated.unbounded.is_empty() {
-            let names: Vec<String> = unrated.unbounded.iter().map(|&i| name(i)).collect();
+        let (unfed, rateless): (Vec<usize>, Vec<usize>) =
+            unrated.unbounded.iter().partition(|&&i| {
+                let emission = &self.scene.emissions[i];
+                self.scene.emitters[emission.spectrum].is_unfed(emission.line)
+            });
+        let names = |lines: Vec<usize>| {
+            let mut words: Vec<String> = lines.iter().take(NAMED).map(|&i| name(i)).collect();
+            if lines.len() > NAMED {
+                words.push(format!("{} more", lines.len() - NAMED));
+            }
+            words.join(", ")
+        };
+        if !rateless.is_empty() {
+            out.remarks
+                .push(format!("no rate is known for {} (vacuum)", names(rateless)));
+        }
+        if !unfed.is_empty() {
             out.remarks.push(format!(
-                "no rate is known for {} (vacuum)",
-                names.join(", ")
+                "nothing in the model excites {} (vacuum)",
+                names(unfed)
             ));
         }
         if let (Some(chance), Some(&(first, ..))) = (unrated.chance, unrated.bounded.first())
             && chance >= CHANCE_NAMED
         {
             out.remarks.push(format!(
-                "{:.0} % chance (prior for unknown rates) that lines without a rate change the \
-                 verdict, first {} (vacuum)",
+                "{:.0} % chance ({}) that {} change the verdict, first {} (vacuum)",
                 100.0 * chance,
+                self.prior_words(first).0,
+                self.prior_words(first).1,
                 name(first)
             ));
+        }
+    }
+
+    /// What bounds a line, and what such lines lack.
+    fn prior_words(&self, index: usize) -> (&'static str, &'static str) {
+        let emission = &self.scene.emissions[index];
+        if emission.line.rate_per_s.is_some() {
+            (
+                "usual collision strengths",
+                "lines that the model does not excite",
+            )
+        } else {
+            ("prior for unknown rates", "lines without a rate")
         }
     }
 
@@ -283,7 +384,7 @@ impl<'a, 's> Judge<'a, 's> {
         let mut likeliest = (0.0, target.spectrum);
         let mut blind: Vec<Species> = Vec::new();
         for (s, coverage) in self.coverage.iter().enumerate() {
-            if s == target.spectrum || self.scene.spectra[s].amount == 0.0 {
+            if s == target.spectrum || self.scene.emitters[s].is_absent {
                 continue;
             }
             match coverage.expected_unlisted(light, width_nm) {
@@ -357,20 +458,41 @@ pub(super) struct Sum {
     variance: f64,
     /// Fraction of other features of the same species.
     pub own: f64,
+    /// Fraction of each spectrum.
+    by_spectrum: std::collections::BTreeMap<usize, f64>,
 }
 
 impl Sum {
-    pub(super) fn add(&mut self, part: f64, relative_uncertainty: f64) {
+    /// Adds a line of a spectrum (an index into the scene's) with the relative 1 σ of its own.
+    pub(super) fn add(&mut self, spectrum: usize, part: f64, relative_uncertainty: f64) {
         self.other += part;
         self.variance += (part * relative_uncertainty).powi(2);
+        *self.by_spectrum.entry(spectrum).or_default() += part;
     }
 
-    pub(super) fn interference(&self, target_sigma: f64) -> Interference {
-        let own = if self.other > 0.0 {
-            self.variance.sqrt() / self.other
-        } else {
-            0.0
-        };
-        Interference::new(self.other, own.hypot(target_sigma))
+    /// The interference over a target of a spectrum whose signal has a relative 1 σ of its own:
+    /// lines count as independent, what a whole species shares (amount, ionisation) does not.
+    pub(super) fn interference(
+        &self,
+        scene: &Scene<'_>,
+        target: usize,
+        target_sigma: f64,
+    ) -> Interference {
+        if self.other <= 0.0 {
+            return Interference::new(0.0, 0.0);
+        }
+        let parts: Vec<(&Emitter, f64)> = self
+            .by_spectrum
+            .iter()
+            .map(|(&s, part)| (&scene.emitters[s], part / self.other))
+            .collect();
+        let shared = shared_sigma(&parts, &scene.emitters[target]);
+        let own = self.variance.sqrt() / self.other;
+        // Variances of logarithms add.
+        let all = [own, target_sigma, shared]
+            .map(|s| s * s)
+            .iter()
+            .fold(1.0, |a, v| a * (1.0 + v));
+        Interference::new(self.other, (all - 1.0).sqrt())
     }
 }

@@ -7,6 +7,7 @@ use vocabulary::spectrum::Line;
 use super::emission::Conditions;
 use super::error::AdviseError;
 use super::judge::Judge;
+use super::physics::Physics;
 use super::position::{Placed, placed};
 pub use super::scene::REACH_WIDTHS;
 use super::scene::Scene;
@@ -109,6 +110,8 @@ pub struct Answer {
     pub unstated_rates: bool,
     /// A position in air needed an extrapolated index.
     pub air_extrapolated: bool,
+    /// What the answer rests on.
+    pub physics: Physics,
 }
 
 /// Answers the question from what is held of each species: lines from at least [`REACH_WIDTHS`]
@@ -124,7 +127,9 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         !question.not_held.is_empty(),
     );
     let inside = |nm: f64| question.range.contains_per_cm(1e7 / nm);
+    let is_there = |&f: &usize| !scene.emitters[scene.features[f].spectrum].is_absent;
     let chosen: Vec<usize> = (0..scene.features.len())
+        .filter(is_there)
         .filter(|&f| {
             scene.features[f]
                 .components
@@ -151,6 +156,8 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     }
     in_order(&mut features, &mut lines);
     let unrated = judge.unjudged(&question.not_held);
+    let components = chosen.iter().flat_map(|&f| &scene.features[f].components);
+    let physics = Physics::of(&scene, question.conditions.model, components.copied());
     let emits = |s: usize| chosen.iter().any(|&f| scene.features[f].spectrum == s);
     Ok(Answer {
         unrated,
@@ -162,6 +169,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         unstated_rates: lines.iter().any(|l: &WindowLine| {
             l.line.rate_per_s.is_some() && l.line.rate_relative_uncertainty.is_none()
         }),
+        physics,
         air_extrapolated: lines.iter().any(|l| l.placed.extrapolated),
         lines,
         features,
@@ -219,7 +227,7 @@ fn components(
             )?,
             feature: position,
             light_fraction: emission.light.filter(|_| total > 0.0).map(|l| l / total),
-            prior: emission.prior.map(|p| p.prior),
+            prior: emission.prior.and_then(|p| p.rate),
             prior_light_fraction: emission
                 .prior
                 .filter(|_| total > 0.0)

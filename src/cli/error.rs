@@ -61,6 +61,15 @@ pub enum CliError {
     /// A filter or a beam that no transmission can be computed from.
     #[error(transparent)]
     Filter(#[from] crate::calc::filter::FilterError),
+    /// A measured response of an instrument that cannot be used.
+    #[error("{}: {cause}", path.display())]
+    Response {
+        /// The file.
+        path: PathBuf,
+        /// What is wrong with it.
+        #[source]
+        cause: crate::calc::shape::ShapeError,
+    },
     /// A measured curve that cannot be used.
     #[error("{}: {cause}", path.display())]
     Curve {

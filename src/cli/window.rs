@@ -9,6 +9,7 @@ use super::options::{
     CatalogueOptions, Checked, ConditionOptions, OutputOptions, Required, medium,
 };
 use super::{CliError, Exit, Outcome, assemble, describe};
+use crate::advise::pressure_reach_nm;
 use crate::advise::window::{self, Answer, Question, REACH_WIDTHS};
 use crate::catalogue::Catalogue;
 use crate::show::{self, Context, Wish};
@@ -59,8 +60,9 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
     }
     let catalogue = context.open()?;
     let width_nm = checked.width.at_nm(range.vacuum_high_nm);
-    let margin_nm = REACH_WIDTHS * width_nm;
-    let held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    let margin_nm = (REACH_WIDTHS * width_nm).max(pressure_reach_nm(&checked.conditions));
+    let mut held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    assemble::complete(&catalogue, &mut held.spectra, &checked.conditions)?;
     let question = Question {
         medium: arguments.medium,
         width: checked.width,

@@ -15,6 +15,7 @@ mod marks;
 mod number;
 mod pairs;
 mod passband;
+mod physics;
 mod predict;
 mod prior;
 mod sheet;

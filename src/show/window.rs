@@ -10,6 +10,7 @@ use super::line::{
     line_object, multiplet_cell, position_cell, put_verdict, rate_cell, transition_cell,
 };
 use super::number::{percent, percent_in_table};
+use super::physics::physics_notes;
 use super::prior::{prior_note, put_prior};
 use super::sheet::{Align, Column, Context, Sheet};
 use crate::advise::Verdict;
@@ -41,10 +42,21 @@ pub struct Wish {
 /// Builds the sheet of a window.
 pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     let shown = chosen(answer, wish.strongest);
-    let mut notes = notes(answer, &context);
-    if shown.len() < answer.features.len() {
-        let (some, all) = (shown.len(), answer.features.len());
-        notes.insert(0, format!("Shown: the {some} brightest of {all} features."));
+    let mut notes = notes(answer, &context, &shown);
+    let counts = answer.features.iter().filter(|f| counts(f)).count();
+    let dark = answer.features.len() - counts;
+    if dark > 0 {
+        notes.insert(
+            0,
+            format!("Left out: features with less than 1e-9 of the light ({dark})."),
+        );
+    }
+    if shown.len() < counts {
+        let some = shown.len();
+        notes.insert(
+            0,
+            format!("Shown: the {some} brightest of {counts} features."),
+        );
     }
     let medium = one_medium(answer, &shown);
     let rows = if wish.components {
@@ -63,7 +75,7 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     };
     let object = object(answer, &shown, context, &notes);
     Sheet {
-        headline: headline(answer, wish),
+        headline: headline(answer, wish, counts),
         columns,
         rows,
         notes,
@@ -72,9 +84,19 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     }
 }
 
+/// Below this part of the light in the window a feature is as good as absent.
+const DARK: f64 = 1e-9;
+
+/// Whether a feature is worth a word.
+fn counts(feature: &WindowFeature) -> bool {
+    feature.light_fraction.is_none_or(|f| f >= DARK)
+}
+
 /// Features to show, by wavelength.
 fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<usize> {
-    let mut all: Vec<usize> = (0..answer.features.len()).collect();
+    let mut all: Vec<usize> = (0..answer.features.len())
+        .filter(|&f| counts(&answer.features[f]))
+        .collect();
     if let Some(count) = strongest {
         let light = |f: usize| answer.features[f].light_fraction.unwrap_or(-1.0);
         all.sort_by(|&a, &b| light(b).total_cmp(&light(a)).then(a.cmp(&b)));
@@ -91,7 +113,7 @@ fn one_medium(answer: &Answer, shown: &[usize]) -> Option<PositionMedium> {
     media.all(|m| m == first).then_some(first)
 }
 
-fn headline(answer: &Answer, wish: &Wish) -> Vec<String> {
+fn headline(answer: &Answer, wish: &Wish, count: usize) -> Vec<String> {
     if answer.features.is_empty() {
         let end = if answer.unrated.iter().any(|u| u.decides) {
             "the window cannot be judged (see below)".to_owned()
@@ -106,9 +128,9 @@ fn headline(answer: &Answer, wish: &Wish) -> Vec<String> {
     let species: BTreeSet<String> = answer
         .features
         .iter()
+        .filter(|f| counts(f))
         .map(|f| f.species.to_string())
         .collect();
-    let count = answer.features.len();
     let plural = if count == 1 { "feature" } else { "features" };
     let first = format!(
         "{}: {count} {plural} of {} species.",
@@ -152,7 +174,7 @@ fn verdict_words(answer: &Answer, verdict: Verdict) -> Option<String> {
     let mut of: Vec<&WindowFeature> = answer
         .features
         .iter()
-        .filter(|f| f.verdict.central == verdict)
+        .filter(|f| f.verdict.central == verdict && counts(f))
         .collect();
     if of.is_empty() {
         return None;
@@ -288,25 +310,21 @@ fn broken(key: &str) -> String {
     }
 }
 
-fn notes(answer: &Answer, context: &Context) -> Vec<String> {
+fn notes(answer: &Answer, context: &Context, shown: &[usize]) -> Vec<String> {
     let mut notes = Vec::new();
-    for feature in &answer.features {
+    for feature in shown.iter().map(|&f| &answer.features[f]) {
         if !feature.remarks.is_empty() {
             let name = format!("{} {:.3}", feature.species, feature.placed.wavelength_nm);
             notes.push(format!("{name}: {}.", feature.remarks.join("; ")));
         }
     }
     join_like(&mut notes);
-    notes.extend(prior_note(&answer.features));
+    notes.extend(prior_note(&answer.features, answer.physics.model));
     notes.extend(unjudged_notes(&answer.unrated));
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
-    notes.push(
-        "Optically thin; light is power; populations of LTE inside each species, Planck–Larkin \
-         weighted; Doppler, natural and Gaussian instrument widths (Voigt)."
-            .into(),
-    );
+    notes.extend(physics_notes(&answer.physics));
     notes.extend(lower_bound_note(&answer.lower_bounds));
     if answer.unstated_rates {
         notes.push("±? marks rates whose source states no uncertainty; 50 % is taken.".into());
