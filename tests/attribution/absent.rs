@@ -104,6 +104,7 @@ fn asked(spectra: &[Spectrum], places_nm: &[f64]) -> Answer {
         kt_per_cm: 8065.5 * ev,
         electron_density_per_m3: None,
         gas_temperature_k: 1000.0,
+        details: lineclear::advise::Details::default(),
     };
     let question = Question {
         medium: Medium::Auto,
