@@ -15,7 +15,7 @@ use super::files::{hex, source_checksum};
 use super::gap_fill;
 use super::ingest::{self, Incoming};
 use super::sources::retract;
-use super::store::{Catalogue, failed};
+use super::store::{Catalogue, LOCKED, failed};
 
 #[derive(rust_embed::Embed)]
 #[folder = "data/"]
@@ -49,6 +49,16 @@ fn folders() -> BTreeSet<String> {
     Tables::iter()
         .filter_map(|name| name.strip_suffix("/source.toml").map(str::to_owned))
         .collect()
+}
+
+/// Whether this program carries a source of this key.
+pub(super) fn is_bundled(key: &str) -> Result<bool> {
+    for folder in folders() {
+        if bundled(&folder)?.description.key == key {
+            return Ok(true);
+        }
+    }
+    Ok(false)
 }
 
 /// SHA-256 over names and contents of all bundled files and the calculator's revision: names the
@@ -157,10 +167,7 @@ fn replace(
     let transaction = catalogue
         .connection
         .transaction_with_behavior(TransactionBehavior::Immediate)
-        .map_err(failed(
-            &path,
-            "locked for writing (is another import running?)",
-        ))?;
+        .map_err(failed(&path, LOCKED))?;
     let mut labels = Labels::load(&transaction).map_err(&written)?;
     let mut species = BTreeSet::new();
     for &source in stale {
