@@ -202,6 +202,7 @@ impl SourceHeader {
             level_scale_uncertainty_per_cm: self.level_scale_uncertainty_per_cm,
             level_scale_uncertainty_relative: self.level_scale_uncertainty_relative,
             energy_scale: None,
+            computed_species: Vec::new(),
             notes: self.notes.clone(),
             scope: Vec::new(),
             table: Vec::new(),
