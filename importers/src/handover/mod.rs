@@ -76,7 +76,7 @@ pub struct SourceHeader {
     /// Things a reader of the data should know.
     pub notes: Vec<String>,
     /// Names the source's content: that of the catalogue where the file holds all of it, else one
-    /// of the selection.
+    /// of the selection; empty for conclusions.
     pub checksum: String,
     /// The file holds all reports of the source.
     pub whole: bool,
@@ -147,7 +147,7 @@ impl Header {
         for (index, source) in header.sources.iter().enumerate() {
             let twice = header.sources[..index].iter().any(|s| s.key == source.key);
             source
-                .check(twice)
+                .check(twice, header.content)
                 .map_err(|(place, message)| HeaderError::Source {
                     key: crate::sink::shown(&source.key),
                     place,
@@ -164,14 +164,15 @@ impl Header {
 }
 
 impl SourceHeader {
-    fn check(&self, twice: bool) -> Result<(), (String, String)> {
+    fn check(&self, twice: bool, content: Content) -> Result<(), (String, String)> {
         if twice {
             return Err(("key".into(), "stands twice".into()));
         }
         if self.licence.trim().is_empty() {
             return Err(("licence".into(), "is empty".into()));
         }
-        if self.checksum.is_empty() || self.checksum.len() > 128 {
+        let nameless = self.checksum.is_empty() && content == Content::Reports;
+        if nameless || self.checksum.len() > 128 {
             return Err(("checksum".into(), "must be 1 to 128 bytes long".into()));
         }
         for scope in &self.scope {

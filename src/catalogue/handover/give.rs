@@ -209,6 +209,7 @@ impl Giver<'_> {
             // What is said of the source's own rows does not hold for conclusions.
             header.notes.clear();
             header.scope.clear();
+            header.checksum.clear();
             return Ok(header);
         }
         let own: BTreeSet<i64> = self
