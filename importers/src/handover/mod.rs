@@ -117,6 +117,12 @@ pub enum HeaderError {
         /// The revision found.
         found: u32,
     },
+    /// Not what can be taken in.
+    #[error(
+        "the file holds what was concluded from several sources; taken in again, each measurement \
+         would count twice; export the sources' own rows with --content reports"
+    )]
+    Conclusions,
     /// A source that makes no sense.
     #[error("source `{key}`: {place}: {message}")]
     Source {
@@ -155,6 +161,17 @@ impl Header {
                 })?;
         }
         Ok(header)
+    }
+
+    /// Whether the rows are those of the sources.
+    ///
+    /// # Errors
+    /// Conclusions, which do not come in as measurements.
+    pub fn check_reports(&self) -> Result<(), HeaderError> {
+        match self.content {
+            Content::Reports => Ok(()),
+            Content::Lines | Content::Levels => Err(HeaderError::Conclusions),
+        }
     }
 
     /// The header as JSON in one line.

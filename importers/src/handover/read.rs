@@ -5,8 +5,8 @@ use std::sync::Arc;
 use vocabulary::atom::{HalfInteger, Species};
 use vocabulary::spectrum::{LineKind, RateOrigin};
 
+use super::Header;
 use super::columns::REPORTS;
-use super::{Content, Header};
 use crate::error::ImportError;
 use crate::number;
 use crate::row::{Row, RowReader};
@@ -122,13 +122,7 @@ pub fn read(
         line: 1,
         problem: crate::row::RowProblem::Format(message),
     };
-    if header.content != Content::Reports {
-        return Err(fail(
-            "the file holds what was concluded from several sources; taken in again, each \
-             measurement would count twice; export the sources' own rows with --content reports"
-                .to_owned(),
-        ));
-    }
+    header.check_reports().map_err(|e| fail(e.to_string()))?;
     let places = Places::find(rows, file).map_err(fail)?;
     let mut row = Row::default();
     let mut count = 0;

@@ -65,6 +65,15 @@ impl HandedOver {
         Ok(found)
     }
 
+    fn check_reports(&self) -> Result<()> {
+        self.header
+            .check_reports()
+            .map_err(|e| CatalogueError::HandedOver {
+                path: self.parts.first().map(|p| p.0.clone()).unwrap_or_default(),
+                message: e.to_string(),
+            })
+    }
+
     /// What the file says about itself.
     pub fn header(&self) -> &Header {
         &self.header
@@ -128,6 +137,7 @@ impl Catalogue {
     /// A file of conclusions, a row that cannot be used, a key that other content is held under,
     /// a catalogue that cannot be written.
     pub fn take_in(&mut self, files: &HandedOver, dry_run: bool) -> Result<ImportSummary> {
+        files.check_reports()?;
         let path = self.path.clone();
         let written = failed(&path, "written");
         self.keys.take();
