@@ -3,8 +3,7 @@
 use serde_json::{Map, Value, json};
 
 use super::number::{percent, percent_in_table, purity};
-use super::passband::{FILTER, headline, judgement_notes, put_target};
-use super::physics::filter_notes;
+use super::passband::{MODEL, headline, judgement_notes, put_target};
 use super::sheet::{Align, Column, Context, Sheet};
 use super::window::unrated_value;
 use crate::advise::Wanted;
@@ -46,15 +45,7 @@ pub fn chosen(answers: &[(Wanted, Answer)], context: Context) -> Sheet {
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
-    for (_, answer) in answers {
-        if let Some((_, _, full)) = &answer.best {
-            for note in filter_notes(&full.physics, FILTER) {
-                if !notes.contains(&note) {
-                    notes.push(note);
-                }
-            }
-        }
-    }
+    notes.push(MODEL.into());
     notes.extend(context.source_notes());
     Sheet {
         headline: lines,

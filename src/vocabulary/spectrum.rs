@@ -41,6 +41,8 @@ pub enum LineKind {
     Blend,
     /// A line of one isotope.
     Isotope,
+    /// One transition that no table lists: it follows from two levels alone.
+    Ritz,
 }
 
 /// Parity of a level.
@@ -164,7 +166,7 @@ pub struct Strength {
     pub wavenumber_per_cm: f64,
     /// Rate, s⁻¹, where known.
     pub rate_per_s: Option<f64>,
-    /// Its position is computed: no table lists it.
+    /// No table lists it: it was computed, or follows from levels alone.
     pub computed: bool,
     /// Number of the lower level.
     pub lower: Option<u32>,
