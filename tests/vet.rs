@@ -7,7 +7,7 @@ mod common;
 
 use common::{json, run};
 use lineclear::advise::vet::{Answer, Question, answer};
-use lineclear::advise::{Conditions, EmissionModel, Spectrum, Verdict, Wanted};
+use lineclear::advise::{Conditions, Details, EmissionModel, Spectrum, Verdict, Wanted};
 use lineclear::vocabulary::atom::Species;
 use lineclear::vocabulary::light::{Medium, SpectralWidth};
 use lineclear::vocabulary::spectrum::{
@@ -196,6 +196,7 @@ fn ask(spectra: &[Spectrum], nm: f64) -> Answer {
             kt_per_cm: 8000.0,
             electron_density_per_m3: None,
             gas_temperature_k: 1000.0,
+            details: Details::default(),
         },
         not_held: Vec::new(),
         column_per_m2: None,

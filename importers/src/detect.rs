@@ -32,6 +32,9 @@ pub fn detect(head: &[u8]) -> Detected {
     if head.starts_with(b"SIMPLE  =") {
         return Detected::Table(Format::Fits);
     }
+    if head.starts_with(b"PAR1") {
+        return Detected::Table(Format::Parquet);
+    }
     if [
         &b"PK\x03\x04"[..],
         b"BZh",
@@ -48,6 +51,9 @@ pub fn detect(head: &[u8]) -> Detected {
     }
     if text[0] == b'<' {
         return markup(text);
+    }
+    if text.starts_with(b"{\"") {
+        return Detected::Table(Format::Jsonl);
     }
     if text.starts_with(b"# %ECSV") {
         return Detected::Table(Format::Ecsv);
@@ -99,6 +105,8 @@ mod tests {
                 b"Title: x\nByte-by-byte Description of file: a\n",
                 Detected::Table(Format::Mrt),
             ),
+            (b"PAR1", Detected::Table(Format::Parquet)),
+            (b"{\"a\": 1}\n", Detected::Table(Format::Jsonl)),
             (b"PK\x03\x04", Detected::Packed),
             (b"a,b\n1,2\n", Detected::Text),
             (b" \n", Detected::Empty),

@@ -38,6 +38,7 @@ pub struct EcsvReader<R> {
     header_lines: u64,
     uses: Vec<Use>,
     columns: Vec<ColumnInfo>,
+    about: Option<String>,
     raw: Row,
 }
 
@@ -72,6 +73,7 @@ impl<R: Read> EcsvReader<R> {
             header_lines,
             uses,
             columns,
+            about: header.about,
             raw: Row::default(),
         })
     }
@@ -92,6 +94,10 @@ impl Declared {
 impl<R: Read> RowReader for EcsvReader<R> {
     fn columns(&self) -> &[ColumnInfo] {
         &self.columns
+    }
+
+    fn about(&self) -> Option<&str> {
+        self.about.as_deref()
     }
 
     fn read_row(&mut self, row: &mut Row) -> Result<bool, RowError> {
@@ -191,6 +197,7 @@ fn check_version(line: &str) -> Result<(), RowProblem> {
 struct Header {
     delimiter: Delimiter,
     declared: Vec<Declared>,
+    about: Option<String>,
 }
 
 fn parse_header(yaml: &str) -> Result<Header, String> {
@@ -211,7 +218,17 @@ fn parse_header(yaml: &str) -> Result<Header, String> {
     Ok(Header {
         delimiter,
         declared,
+        about: get(top, "meta").and_then(about),
     })
+}
+
+/// What stands in `meta` under the name of this program; `meta` is a map, or a list of maps that
+/// keeps their order.
+fn about(meta: &Yaml) -> Option<String> {
+    match plain(meta) {
+        Yaml::Sequence(entries) => entries.iter().find_map(about),
+        map => get(map, crate::handover::NAME).and_then(text),
+    }
 }
 
 fn declared(node: &Yaml) -> Result<Declared, String> {

@@ -8,9 +8,11 @@ use crate::error::ImportError;
 use crate::fits::FitsReader;
 use crate::infer::infer;
 use crate::input;
+use crate::jsonl::JsonlReader;
 use crate::limits::Limits;
 use crate::mapping::{Fault, Plan};
 use crate::mrt::{self, MrtReader};
+use crate::parquet::ParquetReader;
 use crate::row::{ColumnInfo, Row, RowError, RowReader};
 use crate::sink::{ReadReport, Refusal, Sink, shown};
 use crate::source::{Counting, Format, Ignore, SourceDescription, TableDescription};
@@ -100,6 +102,24 @@ fn told(
     Some(told)
 }
 
+/// The rows of a file of a format that describes itself, for [`crate::handover::read`].
+///
+/// # Errors
+/// A file that is not of the format.
+pub fn open_file(
+    file: &str,
+    format: Format,
+    input: Box<dyn Read>,
+    limits: &Limits,
+) -> Result<Box<dyn RowReader>, ImportError> {
+    open_table(
+        &TableDescription::of_file(file, format),
+        input,
+        None,
+        limits,
+    )
+}
+
 /// The rows of a table file.
 pub(crate) fn open_table(
     table: &TableDescription,
@@ -139,6 +159,8 @@ pub(crate) fn open_table(
         }
         Format::Votable => VotableReader::new(input, table.table.as_deref(), limits)
             .map(|reader| Box::new(reader) as _),
+        Format::Jsonl => JsonlReader::new(input, limits).map(|reader| Box::new(reader) as _),
+        Format::Parquet => ParquetReader::new(input, limits).map(|reader| Box::new(reader) as _),
         Format::Delimited => table::open_delimited(input, table, limits),
     };
     opened.map_err(|error| header_error(table, error))

@@ -233,6 +233,11 @@ pub trait RowReader {
     /// A row that breaks the rules of the format; reading may go on unless the error is fatal.
     fn read_row(&mut self, row: &mut Row) -> Result<bool, RowError>;
 
+    /// What the file says about itself under the name of this program (see [`crate::handover`]).
+    fn about(&self) -> Option<&str> {
+        None
+    }
+
     /// Things worth knowing that refused nothing, after the last row.
     fn warnings(&self) -> Vec<String> {
         Vec::new()

@@ -36,6 +36,25 @@ pub enum AdviseError {
         /// Whose.
         species: Species,
     },
+    /// A level that is not held.
+    #[error("{species} {typed}: no such level is held; the nearest are {nearest}")]
+    NoSuchLevel {
+        /// Whose.
+        species: Species,
+        /// As it was typed.
+        typed: String,
+        /// The nearest that are held, in words.
+        nearest: String,
+    },
+    /// The user's table says nothing of a species.
+    #[error(
+        "{species}: the table of --given says nothing of this element; add a row for it, or leave \
+         it out of the species"
+    )]
+    NothingGiven {
+        /// Whose.
+        species: Species,
+    },
     /// A line that is not held.
     #[error(
         "{wanted}: no such line is held within {reach_nm} nm{}",

@@ -1,44 +1,27 @@
 //! Judging features: what others put where a feature is, and what nobody can know.
 
-use std::cell::RefCell;
-use std::collections::HashMap;
-use std::rc::Rc;
-
 use vocabulary::atom::Species;
 use vocabulary::light::{Air, Medium};
 
 use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
+use super::emission::{Emitter, shared_sigma};
 use super::error::AdviseError;
 use super::position::placed;
-use super::scene::{REACH_WIDTHS, Scene};
+use super::scene::Scene;
 use super::spectrum::Spectrum;
 use super::unrated::Unrated;
 use super::verdict::{Interference, VerdictRange, Worst};
 use super::window::{Unjudged, WindowFeature};
 
+/// How many lines are named in one sentence.
+const NAMED: usize = 4;
 /// From this chance on, lines without a rate that may change a verdict are named.
 const CHANCE_NAMED: f64 = 0.01;
-
-/// Species whose unlisted lines are this likely against those of the first are named beside it.
-const LIKELY: f64 = 1.0 / 3.0;
-/// How many are named.
-const NAMED: usize = 3;
-
-/// Features this near to the centre (as a fraction of it) share its coverage; others share that of a
-/// place twice as far apart from the next.
-const SHARED: f64 = 0.01;
-
-/// Neutral atoms and first ions: a source that shows the one may well show the other.
-const ARC_STAGES: std::ops::RangeInclusive<u8> = 1..=2;
 
 /// Judges the features of a scene.
 pub(super) struct Judge<'a, 's> {
     scene: &'a Scene<'s>,
-    centre_nm: f64,
-    /// What is known at the centre, species by species.
-    coverage: Rc<[Coverage]>,
-    /// The same at other places, by their number.
-    elsewhere: RefCell<HashMap<i64, Rc<[Coverage]>>>,
+    coverage: Vec<Coverage>,
     /// Species typed of which nothing is held.
     nothing_held: bool,
 }
@@ -46,71 +29,35 @@ pub(super) struct Judge<'a, 's> {
 impl<'a, 's> Judge<'a, 's> {
     /// `centre_nm` (vacuum) is where the scope of the sources is looked up.
     pub(super) fn new(scene: &'a Scene<'s>, centre_nm: f64, nothing_held: bool) -> Self {
+        let coverage = (0..scene.spectra.len())
+            .map(|s| Coverage::at(&scene.spectra[s], &scene.emitters[s], centre_nm))
+            .collect();
         Self {
             scene,
-            centre_nm,
-            coverage: coverage(scene, centre_nm),
-            elsewhere: RefCell::default(),
+            coverage,
             nothing_held,
         }
     }
 
-    /// What is known around a place.
-    fn coverage_at(&self, nm: f64) -> Rc<[Coverage]> {
-        let step = (nm / self.centre_nm).ln() / (2.0 * SHARED);
-        let place = step.round();
-        if place == 0.0 || !place.is_finite() {
-            return self.coverage.clone();
-        }
-        let there = || coverage(self.scene, self.centre_nm * (place * 2.0 * SHARED).exp());
-        let mut elsewhere = self.elsewhere.borrow_mut();
-        elsewhere.entry(place as i64).or_insert_with(there).clone()
-    }
-
     /// Whether a species without knowledge spoils the verdicts of others: it does where its stage
     /// was named, and where no stage of its element is known here.
-    fn decides(&self, coverage: &[Coverage], spectrum: usize) -> bool {
+    pub(super) fn decides(&self, spectrum: usize) -> bool {
         let this = &self.scene.spectra[spectrum];
-        if coverage[spectrum].is_known() || this.amount == 0.0 {
+        let known = |c: &Coverage| !matches!(c, Coverage::Nothing { .. });
+        if known(&self.coverage[spectrum]) || self.scene.emitters[spectrum].is_absent {
             return false;
         }
-        let element_known = self.siblings(coverage, spectrum).next().is_some();
-        this.named || !element_known
-    }
-
-    /// What is known of stages of the same element that are covered.
-    fn siblings<'c>(
-        &self,
-        coverage: &'c [Coverage],
-        spectrum: usize,
-    ) -> impl Iterator<Item = &'c Coverage> {
-        let this = self.scene.spectra[spectrum].species;
-        let same_element = move |s: &Spectrum| {
-            s.species.atomic_number == this.atomic_number && s.species.isotope == this.isotope
+        let same_element = |s: &Spectrum| {
+            s.species.atomic_number == this.species.atomic_number
+                && s.species.isotope == this.species.isotope
         };
-        let spectra = self.scene.spectra;
-        (spectra.iter().zip(coverage))
-            .filter(move |(s, c)| same_element(s) && c.is_known())
-            .map(|(_, c)| c)
-    }
-
-    /// Whether a species without knowledge that does not decide is taken to lie as dense as what is
-    /// held of its element.
-    fn stands_in(&self, spectrum: usize) -> bool {
-        ARC_STAGES.contains(&self.scene.spectra[spectrum].species.stage)
-    }
-
-    /// Expected number of unlisted lines of such a species.
-    fn stand_in(&self, coverage: &[Coverage], spectrum: usize, width_nm: f64) -> f64 {
-        if !self.stands_in(spectrum) {
-            return 0.0;
-        }
-        let own = coverage[spectrum].unlisted_per_nm();
-        let densest = self
-            .siblings(coverage, spectrum)
-            .map(Coverage::unlisted_per_nm)
-            .fold(own, f64::max);
-        densest * width_nm
+        let element_known = self
+            .scene
+            .spectra
+            .iter()
+            .zip(&self.coverage)
+            .any(|(s, c)| same_element(s) && known(c));
+        this.named || !element_known
     }
 
     pub(super) fn complete_down_to(&self) -> Vec<(Species, f64)> {
@@ -121,7 +68,7 @@ impl<'a, 's> Judge<'a, 's> {
         self.scene
             .spectra
             .iter()
-            .zip(self.coverage.iter())
+            .zip(&self.coverage)
             .filter_map(known)
             .collect()
     }
@@ -132,15 +79,16 @@ impl<'a, 's> Judge<'a, 's> {
             .map(|typed| Unjudged {
                 species: typed.clone(),
                 reason: "nothing is held of it".into(),
-                counted: false,
                 decides: true,
             })
             .collect();
         for (index, coverage) in self.coverage.iter().enumerate() {
-            let Coverage::Nothing { ground_term, .. } = *coverage else {
+            let Coverage::Nothing { ground_term } = *coverage else {
                 continue;
             };
-            let decides = self.decides(&self.coverage, index);
+            if self.scene.emitters[index].is_absent {
+                continue;
+            }
             let reason = if ground_term {
                 "only lines from its ground term are held here"
             } else {
@@ -149,14 +97,54 @@ impl<'a, 's> Judge<'a, 's> {
             out.push(Unjudged {
                 species: self.scene.spectra[index].species.to_string(),
                 reason: reason.into(),
-                counted: !decides && self.stands_in(index),
-                decides,
+                decides: self.decides(index),
             });
         }
         out
     }
 
     pub(super) fn feature(
+        &self,
+        index: usize,
+        total: f64,
+        medium: Medium,
+        air: &Air,
+    ) -> Result<WindowFeature, AdviseError> {
+        let mut out = self.unjudged_feature(index, total, medium, air)?;
+        self.interfere(index, &mut out);
+        out.worst_placed = out
+            .worst
+            .as_ref()
+            .map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air))
+            .transpose()?;
+        Ok(out)
+    }
+
+    /// Judges a feature behind a filter: `interference` is what the rated lines do there, and
+    /// `unrated` what the others may do.
+    pub(super) fn filtered(
+        &self,
+        index: usize,
+        medium: Medium,
+        air: &Air,
+        interference: Option<Interference>,
+        unrated: &Unrated,
+    ) -> Result<WindowFeature, AdviseError> {
+        let mut out = self.unjudged_feature(index, 0.0, medium, air)?;
+        let Some(interference) = interference else {
+            if self.scene.features[index].light.is_none_or(|l| l <= 0.0) {
+                out.remarks.push(self.why_unknown(index).into());
+            }
+            return Ok(out);
+        };
+        out.interference = Some(interference);
+        out.verdict = interference.verdict();
+        self.rateless(unrated, &mut out);
+        self.unknowns(index, &mut out);
+        Ok(out)
+    }
+
+    fn unjudged_feature(
         &self,
         index: usize,
         total: f64,
@@ -170,7 +158,7 @@ impl<'a, 's> Judge<'a, 's> {
             .map(|&c| self.scene.emissions[c].line.wavenumber_uncertainty_per_cm)
             .fold(f64::INFINITY, f64::min);
         let (rate_per_s, rate_relative_uncertainty) = self.mean_rate(index);
-        let mut out = WindowFeature {
+        Ok(WindowFeature {
             species: self.scene.spectra[feature.spectrum].species,
             placed: placed(1e7 / feature.nm, sigma, medium, air)?,
             components: Vec::new(),
@@ -185,14 +173,7 @@ impl<'a, 's> Judge<'a, 's> {
             worst_placed: None,
             unlisted_chance: 0.0,
             prior_chance: None,
-        };
-        self.interfere(index, &mut out);
-        out.worst_placed = out
-            .worst
-            .as_ref()
-            .map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air))
-            .transpose()?;
-        Ok(out)
+        })
     }
 
     /// Σ g A / Σ g over the rated components, each upper level counted once.
@@ -225,7 +206,7 @@ impl<'a, 's> Judge<'a, 's> {
     fn interfere(&self, index: usize, out: &mut WindowFeature) {
         let target = &self.scene.features[index];
         let Some(signal) = target.signal.filter(|s| *s > 0.0) else {
-            out.remarks.push("its own rate is not known".into());
+            out.remarks.push(self.why_unknown(index).into());
             return;
         };
         let width_nm = self.scene.width.at_nm(target.nm);
@@ -235,7 +216,8 @@ impl<'a, 's> Judge<'a, 's> {
                 sum.own += part.fraction;
                 continue;
             }
-            sum.add(part.fraction, part.relative_sigma);
+            let of = self.scene.emissions[part.emission].spectrum;
+            sum.add(of, part.fraction, part.relative_sigma);
             if part.fraction > out.worst.as_ref().map_or(0.0, |w| w.fraction) {
                 let emission = &self.scene.emissions[part.emission];
                 out.worst = Some(Worst {
@@ -247,20 +229,50 @@ impl<'a, 's> Judge<'a, 's> {
             }
         }
         out.own_species_fraction = Some(sum.own);
-        let interference = sum.interference(target.signal_sigma);
+        let target_sigma = target.signal_sigma.hypot(self.own_pressure_sigma(index));
+        let interference = sum.interference(self.scene, target.spectrum, target_sigma);
         out.interference = Some(interference);
         out.verdict = interference.verdict();
-        let reach_nm = REACH_WIDTHS * width_nm;
-        let unrated = Unrated::around(self.scene, index, reach_nm, interference.fraction);
+        let unrated = Unrated::around(self.scene, index, interference.fraction);
         self.rateless(&unrated, out);
         self.unknowns(index, out);
+    }
+
+    /// Why the light of a feature is not known.
+    fn why_unknown(&self, index: usize) -> &'static str {
+        let target = &self.scene.features[index];
+        let emitter = &self.scene.emitters[target.spectrum];
+        let mut lines = target
+            .components
+            .iter()
+            .map(|&c| self.scene.emissions[c].line);
+        if emitter.is_absent {
+            "there is none of its species"
+        } else if target.light.is_some() {
+            "it emits nothing under these conditions"
+        } else if lines.any(|l| emitter.is_unfed(l)) {
+            "nothing in the model excites it from the ground term (spin or parity forbid it); give \
+             the population of a metastable level (--metastable)"
+        } else {
+            "its own rate is not known"
+        }
+    }
+
+    /// Relative 1 σ of a feature's own signal from pressure widths that are not known exactly.
+    pub(super) fn own_pressure_sigma(&self, index: usize) -> f64 {
+        let target = &self.scene.features[index];
+        let sigma = |&c: &usize| {
+            let emission = &self.scene.emissions[c];
+            self.scene.pressure_sigma(emission, emission.nm - target.nm)
+        };
+        target.components.iter().map(sigma).fold(0.0, f64::max)
     }
 
     /// What each rated line outside a feature adds to its signal, lines by wavelength.
     pub(super) fn parts(&self, index: usize, signal: f64) -> Vec<Part> {
         let target = &self.scene.features[index];
         let width_nm = self.scene.width.at_nm(target.nm);
-        let around = self.scene.around(target.nm, REACH_WIDTHS * width_nm);
+        let around = self.scene.reaching(target.nm, width_nm);
         let part = |i: usize| {
             let emission = &self.scene.emissions[i];
             let offset_nm = emission.nm - target.nm;
@@ -271,7 +283,8 @@ impl<'a, 's> Judge<'a, 's> {
                 fraction: light * emission.profile.density(offset_nm) / signal,
                 relative_sigma: emission
                     .light_sigma
-                    .hypot(self.shift_sigma(index, i, width_nm)),
+                    .hypot(self.shift_sigma(index, i, width_nm))
+                    .hypot(self.scene.pressure_sigma(emission, offset_nm)),
                 own: emission.spectrum == target.spectrum,
             })
         };
@@ -314,22 +327,51 @@ impl<'a, 's> Judge<'a, 's> {
             let species = self.scene.spectra[emission.spectrum].species;
             format!("{species} {:.3} nm", emission.nm)
         };
-        if !unrated.unbounded.is_empty() {
-            let names: Vec<String> = unrated.unbounded.iter().map(|&i| name(i)).collect();
+        let (unfed, rateless): (Vec<usize>, Vec<usize>) =
+            unrated.unbounded.iter().partition(|&&i| {
+                let emission = &self.scene.emissions[i];
+                self.scene.emitters[emission.spectrum].is_unfed(emission.line)
+            });
+        let names = |lines: Vec<usize>| {
+            let mut words: Vec<String> = lines.iter().take(NAMED).map(|&i| name(i)).collect();
+            if lines.len() > NAMED {
+                words.push(format!("{} more", lines.len() - NAMED));
+            }
+            words.join(", ")
+        };
+        if !rateless.is_empty() {
+            out.remarks
+                .push(format!("no rate is known for {} (vacuum)", names(rateless)));
+        }
+        if !unfed.is_empty() {
             out.remarks.push(format!(
-                "no rate is known for {} (vacuum)",
-                names.join(", ")
+                "nothing in the model excites {} (vacuum)",
+                names(unfed)
             ));
         }
         if let (Some(chance), Some(&(first, ..))) = (unrated.chance, unrated.bounded.first())
             && chance >= CHANCE_NAMED
         {
             out.remarks.push(format!(
-                "{:.0} % chance (prior for unknown rates) that lines without a rate change the \
-                 verdict, first {} (vacuum)",
+                "{:.0} % chance ({}) that {} change the verdict, first {} (vacuum)",
                 100.0 * chance,
+                self.prior_words(first).0,
+                self.prior_words(first).1,
                 name(first)
             ));
+        }
+    }
+
+    /// What bounds a line, and what such lines lack.
+    fn prior_words(&self, index: usize) -> (&'static str, &'static str) {
+        let emission = &self.scene.emissions[index];
+        if emission.line.rate_per_s.is_some() {
+            (
+                "usual collision strengths",
+                "lines that the model does not excite",
+            )
+        } else {
+            ("prior for unknown rates", "lines without a rate")
         }
     }
 
@@ -338,23 +380,26 @@ impl<'a, 's> Judge<'a, 's> {
         let target = &self.scene.features[index];
         let light = target.light.unwrap_or(0.0);
         let width_nm = self.scene.width.at_nm(target.nm);
-        let mut expected: Vec<(f64, Species)> = Vec::new();
+        let mut expected = 0.0;
+        let mut likeliest = (0.0, target.spectrum);
         let mut blind: Vec<Species> = Vec::new();
-        let coverage = self.coverage_at(target.nm);
-        for (s, known) in coverage.iter().enumerate() {
-            if s == target.spectrum || self.scene.spectra[s].amount == 0.0 {
+        for (s, coverage) in self.coverage.iter().enumerate() {
+            if s == target.spectrum || self.scene.emitters[s].is_absent {
                 continue;
             }
-            let number = match known.expected_unlisted(light, width_nm) {
-                Some(number) => number,
-                None if self.decides(&coverage, s) => {
+            match coverage.expected_unlisted(light, width_nm) {
+                Some(number) => {
+                    expected += number;
+                    if number > likeliest.0 {
+                        likeliest = (number, s);
+                    }
+                }
+                None if self.decides(s) => {
                     out.verdict = VerdictRange::UNRATED;
                     blind.push(self.scene.spectra[s].species);
-                    continue;
                 }
-                None => self.stand_in(&coverage, s, width_nm),
-            };
-            expected.push((number, self.scene.spectra[s].species));
+                None => {}
+            }
         }
         if let Some(first) = blind.first() {
             let more = blind.len() - 1;
@@ -371,48 +416,23 @@ impl<'a, 's> Judge<'a, 's> {
             out.remarks
                 .push("nothing is held of a species that was asked for".into());
         }
-        expected.sort_by(|a, b| b.0.total_cmp(&a.0));
-        unlisted(&expected, out);
+        let species = self.scene.spectra[likeliest.1].species;
+        self.chance(1.0 - (-expected).exp(), species, out);
     }
-}
 
-/// Says the chance that an unlisted line interferes, from the expected numbers of each species, the
-/// largest first.
-fn unlisted(expected: &[(f64, Species)], out: &mut WindowFeature) {
-    let all: f64 = expected.iter().map(|(number, _)| number).sum();
-    let chance = 1.0 - (-all).exp();
-    out.unlisted_chance = chance;
-    let likeliest = expected.first().map_or(0.0, |e| e.0);
-    let names: Vec<String> = (expected.iter())
-        .filter(|e| e.0 >= LIKELY * likeliest)
-        .take(NAMED)
-        .map(|e| e.1.to_string())
-        .collect();
-    let said = format!(
-        "{:.0} % chance that an unlisted line interferes, most likely of {}",
-        100.0 * chance,
-        either(&names)
-    );
-    if chance > CHANCE_UNRATED {
-        out.verdict = VerdictRange::UNRATED;
-        out.remarks.push(said);
-    } else if chance >= CHANCE_SAID {
-        out.remarks.push(said);
+    fn chance(&self, chance: f64, likeliest: Species, out: &mut WindowFeature) {
+        out.unlisted_chance = chance;
+        let said = format!(
+            "{:.0} % chance that an unlisted line interferes, most likely of {likeliest}",
+            100.0 * chance
+        );
+        if chance > CHANCE_UNRATED {
+            out.verdict = VerdictRange::UNRATED;
+            out.remarks.push(said);
+        } else if chance >= CHANCE_SAID {
+            out.remarks.push(said);
+        }
     }
-}
-
-/// `A`, `A or B`, `A, B or C`.
-fn either(names: &[String]) -> String {
-    match names {
-        [before @ .., last] if !before.is_empty() => format!("{} or {last}", before.join(", ")),
-        _ => names.concat(),
-    }
-}
-
-fn coverage(scene: &Scene<'_>, nm: f64) -> Rc<[Coverage]> {
-    (scene.spectra.iter().zip(&scene.emitters))
-        .map(|(spectrum, emitter)| Coverage::at(spectrum, emitter, nm))
-        .collect()
 }
 
 /// What one line adds to the signal of a feature.
@@ -438,20 +458,41 @@ pub(super) struct Sum {
     variance: f64,
     /// Fraction of other features of the same species.
     pub own: f64,
+    /// Fraction of each spectrum.
+    by_spectrum: std::collections::BTreeMap<usize, f64>,
 }
 
 impl Sum {
-    pub(super) fn add(&mut self, part: f64, relative_uncertainty: f64) {
+    /// Adds a line of a spectrum (an index into the scene's) with the relative 1 σ of its own.
+    pub(super) fn add(&mut self, spectrum: usize, part: f64, relative_uncertainty: f64) {
         self.other += part;
         self.variance += (part * relative_uncertainty).powi(2);
+        *self.by_spectrum.entry(spectrum).or_default() += part;
     }
 
-    pub(super) fn interference(&self, target_sigma: f64) -> Interference {
-        let own = if self.other > 0.0 {
-            self.variance.sqrt() / self.other
-        } else {
-            0.0
-        };
-        Interference::new(self.other, own.hypot(target_sigma))
+    /// The interference over a target of a spectrum whose signal has a relative 1 σ of its own:
+    /// lines count as independent, what a whole species shares (amount, ionisation) does not.
+    pub(super) fn interference(
+        &self,
+        scene: &Scene<'_>,
+        target: usize,
+        target_sigma: f64,
+    ) -> Interference {
+        if self.other <= 0.0 {
+            return Interference::new(0.0, 0.0);
+        }
+        let parts: Vec<(&Emitter, f64)> = self
+            .by_spectrum
+            .iter()
+            .map(|(&s, part)| (&scene.emitters[s], part / self.other))
+            .collect();
+        let shared = shared_sigma(&parts, &scene.emitters[target]);
+        let own = self.variance.sqrt() / self.other;
+        // Variances of logarithms add.
+        let all = [own, target_sigma, shared]
+            .map(|s| s * s)
+            .iter()
+            .fold(1.0, |a, v| a * (1.0 + v));
+        Interference::new(self.other, (all - 1.0).sqrt())
     }
 }

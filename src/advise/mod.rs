@@ -16,8 +16,10 @@ pub mod marks;
 mod median;
 pub mod pairs;
 pub mod passband;
+mod physics;
 mod position;
 pub mod predict;
+mod pressure;
 mod resolving;
 pub mod scan;
 mod scene;
@@ -29,9 +31,14 @@ mod verdict;
 pub mod vet;
 pub mod window;
 
-pub use emission::{Conditions, EmissionModel};
+pub use emission::{
+    Conditions, Details, EmissionModel, Entry, Gas, GivenIntensity, InstrumentForm, LevelName,
+    Metastable,
+};
 pub use error::AdviseError;
+pub use physics::{Physics, WidthUse};
 pub use position::{Placed, placed};
+pub use pressure::{Pressure, pressure_reach_nm};
 pub use scene::REACH_WIDTHS;
 pub use spectrum::Spectrum;
 pub use target::Wanted;

@@ -8,11 +8,13 @@ use super::background::{Background, background};
 use super::emission::{Conditions, emitters};
 use super::error::AdviseError;
 use super::judge::{Judge, Sum};
+use super::physics::Physics;
 use super::position::{Placed, placed};
-use super::scan::{self, TemperaturePoint, TiltPoint};
+use super::scan::{self, DensityPoint, TemperaturePoint, TiltPoint};
 use super::scene::Scene;
 use super::spectrum::Spectrum;
 use super::target::{Wanted, find, strongest};
+use super::unrated::Unrated;
 use super::verdict::{Interference, Verdict, VerdictRange};
 use super::window::Unjudged;
 use crate::calc::filter::{Detector, Filter, Illumination, Rays, SeenFilter};
@@ -45,6 +47,8 @@ pub struct Question {
     pub background: Background,
     /// k T of the electrons to scan, cm⁻¹.
     pub scan_kt_per_cm: Vec<f64>,
+    /// Electron densities to scan, m⁻³.
+    pub scan_density_per_m3: Vec<f64>,
     /// Tilts to scan, degrees.
     pub scan_tilt_deg: Vec<f64>,
     /// Asked-for species of which nothing at all is held, as typed.
@@ -86,6 +90,11 @@ pub struct Target {
     pub verdict: VerdictRange,
     /// What else must be said.
     pub remarks: Vec<String>,
+    /// Chance that lines whose light is not known but bounded change the verdict; `None` where
+    /// there are none.
+    pub prior_chance: Option<f64>,
+    /// Chance that an unlisted line interferes.
+    pub unlisted_chance: f64,
     /// How far the passband may drift to the blue and to the red before the verdict changes, nm;
     /// `None` where it does not within three widths.
     pub drift_nm: (Option<f64>, Option<f64>),
@@ -104,12 +113,16 @@ pub struct Answer {
     pub background_fraction: Option<f64>,
     /// Purity against electron temperature.
     pub scan: Vec<TemperaturePoint>,
+    /// Purity against electron density.
+    pub density_scan: Vec<DensityPoint>,
     /// Purity and transmission against tilt.
     pub tilts: Vec<TiltPoint>,
     /// Species that cannot be judged.
     pub unrated: Vec<Unjudged>,
     /// Species whose partition function is a lower bound.
     pub lower_bounds: Vec<Species>,
+    /// What the answer rests on.
+    pub physics: Physics,
 }
 
 /// Answers the question from what is held of each species: lines wherever the filter may transmit.
@@ -136,6 +149,10 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
             Some(t) => scan::temperatures(&view, &passed, t, question)?,
             None => Vec::new(),
         },
+        density_scan: match target {
+            Some(t) => scan::densities(&view, &passed, t, question)?,
+            None => Vec::new(),
+        },
         tilts: match target {
             Some(t) => scan::tilts(&view, t, question)?,
             None => Vec::new(),
@@ -143,6 +160,11 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         unrated: Judge::new(&scene, seen.centre_nm(), !question.not_held.is_empty())
             .unjudged(&question.not_held),
         lower_bounds: lower_bounds(&view, &passed, all),
+        physics: Physics::of(
+            &scene,
+            question.conditions.model,
+            plays_a_part(&passed, all, question.filter.peak()),
+        ),
         target: target
             .map(|t| judged(&view, &passed, t, all, question, &seen))
             .transpose()?,
@@ -311,7 +333,7 @@ fn lines(
     let scene = view.scene;
     let mut out = Vec::new();
     for (emission, passed) in scene.emissions.iter().zip(passed) {
-        let present = scene.spectra[emission.spectrum].amount > 0.0;
+        let present = !scene.emitters[emission.spectrum].is_absent;
         let transmits = passed.transmission.is_some_and(|t| t > 0.0);
         if !present || !transmits || passed.light == Some(0.0) {
             continue;
@@ -337,6 +359,14 @@ fn lines(
     Ok(out)
 }
 
+/// Lines of which at least 1e-5 of all light comes, or that come through unrated.
+fn plays_a_part(passed: &[Passed], all: f64, peak: f64) -> impl Iterator<Item = usize> {
+    (0..passed.len()).filter(move |&i| match passed[i].light {
+        Some(light) => light > 1e-5 * all,
+        None => passed[i].transmission.is_some_and(|t| t >= OUTSIDE * peak),
+    })
+}
+
 fn lower_bounds(view: &View<'_, '_>, passed: &[Passed], all: f64) -> Vec<Species> {
     let scene = view.scene;
     let mut light = vec![0.0; scene.spectra.len()];
@@ -360,11 +390,11 @@ fn judged(
     let scene = view.scene;
     let air = Air::standard();
     let judge = Judge::new(scene, seen.centre_nm(), !question.not_held.is_empty());
-    // Scope, missing rates and species that cannot be judged, as for an instrument of this width.
-    let known = judge.feature(target, 0.0, question.medium, air)?;
     let shares = view.shares(passed, target);
     let interference = (shares.target > 0.0).then(|| interference(view, passed, target, shares));
     let main = strongest(scene, target);
+    let unrated = unrated(view, passed, target, shares, question.filter.peak());
+    let known = judge.filtered(target, question.medium, air, interference, &unrated)?;
     let line = scene.emissions[main].line;
     let (at, sigma) = (line.wavenumber_per_cm, line.wavenumber_uncertainty_per_cm);
     let mut remarks = known.remarks;
@@ -380,13 +410,41 @@ fn judged(
         purity: (all > 0.0 && shares.target > 0.0).then(|| shares.target / all),
         interference,
         own_species_fraction: interference.map(|_| shares.own / shares.target),
-        verdict: match interference {
-            Some(i) if known.verdict != VerdictRange::UNRATED => i.verdict(),
-            _ => VerdictRange::UNRATED,
-        },
+        verdict: known.verdict,
+        prior_chance: known.prior_chance,
+        unlisted_chance: known.unlisted_chance,
         remarks,
         drift_nm: interference.map_or((None, None), |_| scan::drift(view, target, seen, question)),
     })
+}
+
+/// What lines whose light is not known may do behind the filter. One that nothing bounds counts
+/// where at least [`OUTSIDE`] of the peak comes through.
+fn unrated(
+    view: &View<'_, '_>,
+    passed: &[Passed],
+    target: usize,
+    shares: Shares,
+    peak: f64,
+) -> Unrated {
+    let own = view.scene.features[target].spectrum;
+    if shares.target <= 0.0 {
+        return Unrated::default();
+    }
+    // Where the response of the detector is not known it may be as good as anywhere.
+    let best = view
+        .responses
+        .iter()
+        .flatten()
+        .fold(0.0_f64, |a, &r| a.max(r));
+    let seen = |index: usize| {
+        let through = passed[index].transmission.unwrap_or(0.0);
+        let response = view.responses[index].unwrap_or(best);
+        let counts = through >= OUTSIDE * peak && response > 0.0;
+        (through * response / shares.target, counts)
+    };
+    let all = 0..passed.len();
+    Unrated::among(view.scene, own, all, shares.others / shares.target, seen)
 }
 
 /// Light of other species over that of the target, with what the uncertainty of the rates makes of
@@ -404,10 +462,10 @@ fn interference(
         if emission.feature == target {
             variance += (part * emission.light_sigma).powi(2);
         } else if emission.spectrum != own {
-            sum.add(part, emission.light_sigma);
+            sum.add(emission.spectrum, part, emission.light_sigma);
         }
     }
-    sum.interference(variance.sqrt())
+    sum.interference(view.scene, own, variance.sqrt())
 }
 
 /// Light of every emission under other conditions.

@@ -1,7 +1,7 @@
 //! From which resolving power on a line is clear.
 
 use super::error::AdviseError;
-use super::scene::{REACH_WIDTHS, Scene, seen};
+use super::scene::{Scene, seen};
 use super::target::strongest;
 use super::verdict::Verdict;
 use crate::calc::shape::Profile;
@@ -69,7 +69,7 @@ fn interference_at(scene: &Scene<'_>, target: usize, width_nm: f64) -> Result<f6
     let feature = &scene.features[target];
     let profile = |i: usize| -> Result<Profile, AdviseError> {
         let emission = &scene.emissions[i];
-        seen(emission.widths, width_nm).map_err(|cause| AdviseError::Shape {
+        seen(emission.widths, &scene.form, width_nm).map_err(|cause| AdviseError::Shape {
             species: emission.line.species,
             cause,
         })
@@ -90,9 +90,9 @@ fn interference_at(scene: &Scene<'_>, target: usize, width_nm: f64) -> Result<f6
         .map(|nm| (nm, signal_at(nm)))
         .max_by(|a, b| a.1.total_cmp(&b.1))
         .unwrap_or((feature.nm, 0.0));
-    let reach = REACH_WIDTHS * width_nm.max(scene.width.at_nm(feature.nm));
+    let reach_nm = width_nm.max(scene.width.at_nm(feature.nm));
     let mut other = 0.0;
-    for i in scene.around(centre, reach) {
+    for i in scene.reaching(centre, reach_nm) {
         let emission = &scene.emissions[i];
         if let Some(light) = emission
             .light

@@ -18,6 +18,17 @@ pub struct TemperaturePoint {
     pub interference_fraction: Option<f64>,
 }
 
+/// What the filter gives at one electron density.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct DensityPoint {
+    /// Electron density, m⁻³.
+    pub electron_density_per_m3: f64,
+    /// The target's part of the light of all lines; `None` where there is none.
+    pub purity: Option<f64>,
+    /// Light of other species over that of the target.
+    pub interference_fraction: Option<f64>,
+}
+
 /// What the filter gives at one tilt.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct TiltPoint {
@@ -46,18 +57,53 @@ pub(super) fn temperatures(
             kt_per_cm,
             ..question.conditions.clone()
         };
-        let light = lights(view.scene, &conditions)?;
-        let there: Vec<Passed> = (0..passed.len())
-            .map(|i| view.passed(i, passed[i].transmission, light[i]))
-            .collect();
-        let shares = view.shares(&there, target);
+        let (purity, interference_fraction) = under(view, passed, target, &conditions)?;
         Ok(TemperaturePoint {
             kt_per_cm,
-            purity: shares.purity(),
-            interference_fraction: (shares.target > 0.0).then(|| shares.others / shares.target),
+            purity,
+            interference_fraction,
         })
     };
     question.scan_kt_per_cm.iter().map(at).collect()
+}
+
+/// Purity and interference fraction under other conditions, widths as they are.
+fn under(
+    view: &View<'_, '_>,
+    passed: &[Passed],
+    target: usize,
+    conditions: &Conditions,
+) -> Result<(Option<f64>, Option<f64>), AdviseError> {
+    let light = lights(view.scene, conditions)?;
+    let there: Vec<Passed> = (0..passed.len())
+        .map(|i| view.passed(i, passed[i].transmission, light[i]))
+        .collect();
+    let shares = view.shares(&there, target);
+    let fraction = (shares.target > 0.0).then(|| shares.others / shares.target);
+    Ok((shares.purity(), fraction))
+}
+
+/// Purity at each electron density of the question, without background and with line widths as
+/// they are.
+pub(super) fn densities(
+    view: &View<'_, '_>,
+    passed: &[Passed],
+    target: usize,
+    question: &Question,
+) -> Result<Vec<DensityPoint>, AdviseError> {
+    let at = |&electron_density_per_m3: &f64| {
+        let conditions = Conditions {
+            electron_density_per_m3: Some(electron_density_per_m3),
+            ..question.conditions.clone()
+        };
+        let (purity, interference_fraction) = under(view, passed, target, &conditions)?;
+        Ok(DensityPoint {
+            electron_density_per_m3,
+            purity,
+            interference_fraction,
+        })
+    };
+    question.scan_density_per_m3.iter().map(at).collect()
 }
 
 /// Purity and transmission at each tilt of the question that the filter can be tilted to.

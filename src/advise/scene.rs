@@ -6,17 +6,19 @@ use std::ops::Range;
 use vocabulary::light::SpectralWidth;
 use vocabulary::spectrum::Line;
 
-use super::emission::{Conditions, Emitter, emitters};
+use super::emission::{Conditions, Emitter, InstrumentForm, emitters};
 use super::error::AdviseError;
 use super::feature;
+use super::pressure::Pressure;
 use super::spectrum::Spectrum;
 use super::unrated::{PriorLight, prior_light};
-use crate::calc::shape::{Instrument, LineWidths, Profile, ShapeError, natural_fwhm_hz};
+use crate::calc::shape::{LineWidths, Profile, ShapeError, natural_fwhm_hz};
 
-/// How far profiles are followed, in instrument widths.
+/// Pressure widths below this part of the instrument width are no source of uncertainty.
+const NO_PRESSURE: f64 = 1e-3;
+/// How far profiles are followed, in instrument widths, or in pressure widths where those are
+/// larger.
 pub const REACH_WIDTHS: f64 = 20.0;
-/// Relative 1 σ of a rate for which none is stated.
-pub const UNSTATED_RATE_SIGMA: f64 = 0.5;
 
 /// One line of the scene.
 pub struct Emission<'s> {
@@ -30,12 +32,14 @@ pub struct Emission<'s> {
     pub sigma_nm: f64,
     /// Relative light; `None` where it cannot be rated.
     pub light: Option<f64>,
-    /// Relative 1 σ of the light, from the rate.
+    /// Relative 1 σ of the light, from rate and excitation; not what the whole species shares.
     pub light_sigma: f64,
-    /// What the prior for unknown rates says, where it has no rate and one is to be had.
+    /// What a prior says of its light, where that is not known and one is to be had.
     pub prior: Option<PriorLight>,
-    /// Doppler and Lorentzian widths of the line itself.
+    /// Doppler and Lorentzian widths of the line itself, pressure included.
     pub widths: LineWidths,
+    /// What pressure adds to them.
+    pub pressure: Pressure,
     /// Profile as the instrument sees it.
     pub profile: Profile,
     /// Index of its feature.
@@ -70,6 +74,10 @@ pub struct Scene<'s> {
     pub features: Vec<Feature>,
     /// FWHM of the instrument.
     pub width: SpectralWidth,
+    /// Form of its response.
+    pub form: InstrumentForm,
+    /// Largest pressure width (FWHM), nm.
+    widest_nm: f64,
 }
 
 impl<'s> Scene<'s> {
@@ -83,6 +91,7 @@ impl<'s> Scene<'s> {
         width: SpectralWidth,
     ) -> Result<Self, AdviseError> {
         let emitters = emitters(spectra, conditions)?;
+        let form = &conditions.details.instrument;
         let mut emissions = Vec::new();
         for (index, spectrum) in spectra.iter().enumerate() {
             let decays = spectrum.decay_rates();
@@ -92,8 +101,11 @@ impl<'s> Scene<'s> {
                     species: spectrum.species,
                     cause,
                 };
-                let widths = widths(spectrum, line, &decays, conditions).map_err(of_shape)?;
-                let profile = seen(widths, width.at_nm(nm)).map_err(of_shape)?;
+                let pressure = Pressure::of(spectrum, line, conditions).map_err(of_shape)?;
+                let widths = widths(spectrum, line, &decays, conditions)
+                    .map_err(of_shape)?
+                    .with_lorentz(pressure.fwhm_nm());
+                let profile = seen(widths, form, width.at_nm(nm)).map_err(of_shape)?;
                 emissions.push(Emission {
                     spectrum: index,
                     line,
@@ -101,10 +113,9 @@ impl<'s> Scene<'s> {
                     sigma_nm: nm * line.wavenumber_uncertainty_per_cm / line.wavenumber_per_cm,
                     light: emitters[index].light(line),
                     prior: prior_light(line, spectrum.limit_per_cm, &emitters[index]),
-                    light_sigma: line
-                        .rate_relative_uncertainty
-                        .unwrap_or(UNSTATED_RATE_SIGMA),
+                    light_sigma: emitters[index].light_sigma(line),
                     widths,
+                    pressure,
                     profile,
                     feature: 0,
                 });
@@ -112,13 +123,48 @@ impl<'s> Scene<'s> {
         }
         emissions.sort_by(|a, b| a.nm.total_cmp(&b.nm).then(a.spectrum.cmp(&b.spectrum)));
         let features = features(&mut emissions, width);
+        let widths = emissions.iter().map(|e| e.pressure.fwhm_nm());
+        let widest_nm = widths.fold(0.0, f64::max);
         Ok(Self {
             spectra,
             emitters,
             emissions,
             features,
             width,
+            form: form.clone(),
+            widest_nm,
         })
+    }
+
+    /// Emissions that are followed to a position seen at an instrument width, nm: those within
+    /// [`REACH_WIDTHS`] of it, or of their own pressure width.
+    pub fn reaching(&self, nm: f64, width_nm: f64) -> impl Iterator<Item = usize> + '_ {
+        let near = self.around(nm, REACH_WIDTHS * width_nm.max(self.widest_nm));
+        near.filter(move |&i| {
+            let emission = &self.emissions[i];
+            let own_nm = width_nm.max(emission.pressure.fwhm_nm());
+            (emission.nm - nm).abs() <= REACH_WIDTHS * own_nm
+        })
+    }
+
+    /// Relative 1 σ of what a line puts at an offset (nm) from it, as its pressure width is not
+    /// known exactly; 0 where pressure hardly counts.
+    pub fn pressure_sigma(&self, emission: &Emission<'_>, offset_nm: f64) -> f64 {
+        let added_nm = emission.pressure.fwhm_nm();
+        let width_nm = self.width.at_nm(emission.nm);
+        if added_nm < NO_PRESSURE * width_nm {
+            return 0.0;
+        }
+        let wider = emission.pressure.upper_fwhm_nm();
+        let by = |fwhm_nm: f64| {
+            let widths = emission.widths.with_lorentz(fwhm_nm - added_nm);
+            seen(widths, &self.form, width_nm).map(|p| p.density(offset_nm))
+        };
+        let at = emission.profile.density(offset_nm);
+        match (by(wider), by(added_nm * added_nm / wider)) {
+            (Ok(wide), Ok(narrow)) if at > 0.0 => (wide - narrow).abs() / (2.0 * at),
+            _ => 0.0,
+        }
     }
 
     /// Emissions whose wavelength lies within `reach_nm` of a position.
@@ -148,9 +194,13 @@ fn widths(
     LineWidths::new(nm, conditions.gas_temperature_k, spectrum.mass_u, natural)
 }
 
-/// A line through a Gaussian instrument.
-pub(super) fn seen(widths: LineWidths, fwhm_nm: f64) -> Result<Profile, ShapeError> {
-    Profile::new(widths, Some(&Instrument::Gaussian { fwhm_nm }))
+/// A line through an instrument.
+pub(super) fn seen(
+    widths: LineWidths,
+    form: &InstrumentForm,
+    fwhm_nm: f64,
+) -> Result<Profile, ShapeError> {
+    Profile::new(widths, Some(&form.of_width(fwhm_nm)))
 }
 
 fn features(emissions: &mut [Emission<'_>], width: SpectralWidth) -> Vec<Feature> {
@@ -178,9 +228,14 @@ fn seen_as_one(emissions: &[Emission<'_>], components: Vec<usize>) -> Feature {
     } else {
         of().map(|e| e.nm).sum::<f64>() / components.len() as f64
     };
-    let parts = || rated().map(|(light, e)| (light * e.profile.density(e.nm - nm), e.light_sigma));
-    let signal: f64 = parts().map(|(part, _)| part).sum();
-    let variance: f64 = parts().map(|(part, sigma)| (part * sigma).powi(2)).sum();
+    let parts: Vec<(f64, f64)> = rated()
+        .map(|(light, e)| (light * e.profile.density(e.nm - nm), e.light_sigma))
+        .collect();
+    let signal: f64 = parts.iter().map(|(part, _)| part).sum();
+    let variance: f64 = parts
+        .iter()
+        .map(|(part, sigma)| (part * sigma).powi(2))
+        .sum();
     Feature {
         spectrum: emissions[components[0]].spectrum,
         nm,

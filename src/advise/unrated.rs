@@ -12,28 +12,42 @@ pub const CHANCE_CHANGED: f64 = 0.05;
 /// Below this chance of the whole, a single line's part need not be counted.
 const NEGLIGIBLE_SIGMAS: f64 = 5.0;
 
-/// Light of a line by the prior for its rate.
+/// Light of a line that is not known but bounded: log-normal.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct PriorLight {
-    /// The prior of the rate.
-    pub prior: Prior,
+    /// The prior of its rate, where that is not known.
+    pub rate: Option<Prior>,
     /// Median of its relative light.
     pub light: f64,
+    /// 1 σ of it, decades.
+    pub sigma_dex: f64,
 }
 
-/// Light that a line without a rate may have; `None` where it has a rate, where no prior bounds
-/// it, or where its species has no scale because none of its lines is rated.
+/// Light that a line may have whose rate is not known, or whose upper level nothing in the model
+/// excites; `None` where its light is known, where no prior bounds it, or where its species has no
+/// scale because none of its lines is rated.
 pub fn prior_light(
     line: &Line,
     limit_per_cm: Option<f64>,
     emitter: &Emitter,
 ) -> Option<PriorLight> {
-    if line.rate_per_s.is_some() {
+    if emitter.light(line).is_some() {
         return None;
     }
-    let prior = prior::prior(line, limit_per_cm?)?;
-    let light = emitter.light_at_rate(line, prior.median_rate_per_s())?;
-    (light > 0.0).then_some(PriorLight { prior, light })
+    let rate = match line.rate_per_s {
+        Some(_) => None,
+        None => Some(prior::prior(line, limit_per_cm?)?),
+    };
+    let rate_per_s = line.rate_per_s.or(rate.map(|p| p.median_rate_per_s()))?;
+    let (light, unfed_sigma) = match emitter.light_at_rate(line, rate_per_s) {
+        Some(light) => (light, 0.0),
+        None => emitter.unfed_light(line, rate_per_s)?,
+    };
+    Some(PriorLight {
+        rate,
+        light,
+        sigma_dex: unfed_sigma.hypot(rate.map_or(0.0, |p| p.sigma_dex)),
+    })
 }
 
 /// What lines without a rate may do to one feature.
@@ -51,32 +65,51 @@ pub struct Unrated {
 impl Unrated {
     /// Lines of other species around a feature of this signal, whose rated interference fraction
     /// is known.
-    pub fn around(scene: &Scene<'_>, feature: usize, reach_nm: f64, fraction: f64) -> Self {
+    pub fn around(scene: &Scene<'_>, feature: usize, fraction: f64) -> Self {
         let target = &scene.features[feature];
         let Some(signal) = target.signal.filter(|s| *s > 0.0) else {
             return Self::default();
         };
         let width_nm = scene.width.at_nm(target.nm);
+        let seen = |index: usize| {
+            let emission = &scene.emissions[index];
+            let offset_nm = emission.nm - target.nm;
+            let part = emission.profile.density(offset_nm) / signal;
+            (part, offset_nm.abs() <= width_nm)
+        };
+        let near = scene.reaching(target.nm, width_nm);
+        Self::among(scene, target.spectrum, near, fraction, seen)
+    }
+
+    /// Lines of other species than that of the target, of which `seen` tells how much a unit of
+    /// their light adds to the interference fraction, and whether a line that nothing bounds
+    /// counts there.
+    pub fn among(
+        scene: &Scene<'_>,
+        target_spectrum: usize,
+        lines: impl Iterator<Item = usize>,
+        fraction: f64,
+        seen: impl Fn(usize) -> (f64, bool),
+    ) -> Self {
         let room = room(fraction);
         let mut out = Self::default();
-        for index in scene.around(target.nm, reach_nm) {
+        for index in lines {
             let emission = &scene.emissions[index];
-            let present = scene.spectra[emission.spectrum].amount > 0.0;
-            if emission.light.is_some() || emission.spectrum == target.spectrum || !present {
+            let present = !scene.emitters[emission.spectrum].is_absent;
+            if emission.light.is_some() || emission.spectrum == target_spectrum || !present {
                 continue;
             }
-            let offset_nm = emission.nm - target.nm;
+            let (part, counts) = seen(index);
             match emission.prior {
                 Some(p) => {
-                    let median = p.light * emission.profile.density(offset_nm) / signal;
-                    let sigma = p.prior.sigma_dex;
+                    let median = p.light * part;
                     // Where no border is left to cross, lines are still listed as bounded.
-                    let least = room.unwrap_or(1.0) * 10_f64.powf(-NEGLIGIBLE_SIGMAS * sigma);
+                    let least = room.unwrap_or(1.0) * 10_f64.powf(-NEGLIGIBLE_SIGMAS * p.sigma_dex);
                     if median > least {
-                        out.bounded.push((index, median, sigma));
+                        out.bounded.push((index, median, p.sigma_dex));
                     }
                 }
-                None if offset_nm.abs() <= width_nm => out.unbounded.push(index),
+                None if counts => out.unbounded.push(index),
                 None => {}
             }
         }

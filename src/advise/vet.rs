@@ -7,7 +7,9 @@ use vocabulary::spectrum::Line;
 use super::emission::Conditions;
 use super::error::AdviseError;
 use super::judge::{Judge, Sum};
+use super::physics::Physics;
 use super::position::{Placed, placed};
+use super::pressure::Pressure;
 use super::resolving::clear_at_resolving_power;
 use super::scene::{REACH_WIDTHS, Scene, seen};
 use super::spectrum::Spectrum;
@@ -18,6 +20,8 @@ use crate::calc::plasma::{absorption_f, line_centre_optical_depth, self_absorpti
 
 /// How far alternatives are looked for, nm to either side.
 pub const ALTERNATIVES_NM: f64 = 100.0;
+/// Lines this many instrument widths away still count as near.
+const NEAR_WIDTHS: f64 = 5.0;
 /// How many alternatives are named.
 const ALTERNATIVES: usize = 5;
 /// How many of the brightest lines of the species are judged as alternatives.
@@ -121,6 +125,10 @@ pub struct Answer {
     pub unrated: Vec<Unjudged>,
     /// Species whose partition function is a lower bound.
     pub lower_bounds: Vec<Species>,
+    /// What the answer rests on.
+    pub physics: Physics,
+    /// What pressure does to the line.
+    pub pressure: Pressure,
 }
 
 /// Answers the question from what is held of each species: lines from at least
@@ -150,7 +158,7 @@ pub fn answer(
     let interference = scene.features[index]
         .signal
         .filter(|s| *s > 0.0)
-        .map(|_| total(&interferers, scene.features[index].signal_sigma));
+        .map(|_| total(&scene, index, &interferers, judge.own_pressure_sigma(index)));
     let verdict = match interference {
         Some(i) if feature.verdict != VerdictRange::UNRATED => i.verdict(),
         _ => VerdictRange::UNRATED,
@@ -165,6 +173,8 @@ pub fn answer(
         self_absorption: self_absorption(&scene, index, question.column_per_m2)?,
         unrated: judge.unjudged(&question.not_held),
         lower_bounds: lower_bounds(&scene, index, &interferers),
+        physics: physics(&scene, index, question),
+        pressure: emission.pressure,
         feature,
         interference,
         verdict,
@@ -179,12 +189,35 @@ fn place(line: &Line, medium: Medium, air: &Air) -> Result<Placed, AdviseError> 
     Ok(placed(position, sigma, medium, air)?)
 }
 
-fn total(interferers: &[Interferer], target_sigma: f64) -> Interference {
+fn total(
+    scene: &Scene<'_>,
+    index: usize,
+    interferers: &[Interferer],
+    pressure_sigma: f64,
+) -> Interference {
+    let target = &scene.features[index];
     let mut sum = Sum::default();
     for one in interferers {
-        sum.add(one.fraction, one.relative_sigma);
+        let same = |s: &Spectrum| s.species == one.line.species;
+        // The species of higher orders are those of the question.
+        let spectrum = scene.spectra.iter().position(same);
+        sum.add(
+            spectrum.unwrap_or(target.spectrum),
+            one.fraction,
+            one.relative_sigma,
+        );
     }
-    sum.interference(target_sigma)
+    let target_sigma = target.signal_sigma.hypot(pressure_sigma);
+    sum.interference(scene, target.spectrum, target_sigma)
+}
+
+/// Of the target and of lines near enough to matter.
+fn physics(scene: &Scene<'_>, index: usize, question: &Question) -> Physics {
+    let target = &scene.features[index];
+    let near_nm = scene.width.at_nm(target.nm) * NEAR_WIDTHS;
+    let around = scene.around(target.nm, near_nm);
+    let own = target.components.iter().copied();
+    Physics::of(scene, question.conditions.model, own.chain(around))
 }
 
 fn lower_bounds(scene: &Scene<'_>, index: usize, interferers: &[Interferer]) -> Vec<Species> {
@@ -261,7 +294,7 @@ fn higher_order(
         let mut widths = emission.widths;
         widths.sigma_nm *= times;
         widths.hwhm_nm *= times;
-        let profile = seen(widths, width_nm).map_err(|cause| AdviseError::Shape {
+        let profile = seen(widths, &scene.form, width_nm).map_err(|cause| AdviseError::Shape {
             species: emission.line.species,
             cause,
         })?;

@@ -2,11 +2,12 @@
 
 use vocabulary::atom::Species;
 use vocabulary::light::{Air, Medium, SpectralRange, SpectralWidth};
-use vocabulary::spectrum::{Line, LineKind};
+use vocabulary::spectrum::Line;
 
 use super::emission::Conditions;
 use super::error::AdviseError;
 use super::judge::Judge;
+use super::physics::Physics;
 use super::position::{Placed, placed};
 pub use super::scene::REACH_WIDTHS;
 use super::scene::Scene;
@@ -90,9 +91,6 @@ pub struct Unjudged {
     pub reason: String,
     /// Verdicts of others are `unrated` because of it.
     pub decides: bool,
-    /// It does not decide, but its unlisted lines are counted as if they lay as dense as those of
-    /// the stage of its element that is covered.
-    pub counted: bool,
 }
 
 /// The answer.
@@ -112,30 +110,8 @@ pub struct Answer {
     pub unstated_rates: bool,
     /// A position in air needed an extrapolated index.
     pub air_extrapolated: bool,
-}
-
-/// Light below which a line that no table lists is not shown unless asked for, as a part of that of the
-/// brightest feature, by the prior for unknown rates.
-pub const FAINT: f64 = 1e-3;
-
-impl Answer {
-    /// Whether a feature is made of lines alone that no table lists: they follow from levels.
-    pub fn is_unlisted(&self, feature: &WindowFeature) -> bool {
-        (feature.components.iter()).all(|&l| self.lines[l].line.kind == LineKind::Ritz)
-    }
-
-    /// Whether a feature is unlisted and, by the prior for unknown rates, below [`FAINT`] of the
-    /// brightest.
-    pub fn is_faint(&self, feature: &WindowFeature) -> bool {
-        let prior = |f: &WindowFeature| -> Option<f64> {
-            let parts = f.components.iter().map(|&l| &self.lines[l]);
-            parts.map(|l| l.prior_light_fraction).sum()
-        };
-        let brightest = (self.features.iter())
-            .filter_map(|f| f.light_fraction)
-            .fold(0.0, f64::max);
-        self.is_unlisted(feature) && prior(feature).is_some_and(|light| light < FAINT * brightest)
-    }
+    /// What the answer rests on.
+    pub physics: Physics,
 }
 
 /// Answers the question from what is held of each species: lines from at least [`REACH_WIDTHS`]
@@ -151,7 +127,9 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         !question.not_held.is_empty(),
     );
     let inside = |nm: f64| question.range.contains_per_cm(1e7 / nm);
+    let is_there = |&f: &usize| !scene.emitters[scene.features[f].spectrum].is_absent;
     let chosen: Vec<usize> = (0..scene.features.len())
+        .filter(is_there)
         .filter(|&f| {
             scene.features[f]
                 .components
@@ -178,6 +156,8 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     }
     in_order(&mut features, &mut lines);
     let unrated = judge.unjudged(&question.not_held);
+    let components = chosen.iter().flat_map(|&f| &scene.features[f].components);
+    let physics = Physics::of(&scene, question.conditions.model, components.copied());
     let emits = |s: usize| chosen.iter().any(|&f| scene.features[f].spectrum == s);
     Ok(Answer {
         unrated,
@@ -189,6 +169,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         unstated_rates: lines.iter().any(|l: &WindowLine| {
             l.line.rate_per_s.is_some() && l.line.rate_relative_uncertainty.is_none()
         }),
+        physics,
         air_extrapolated: lines.iter().any(|l| l.placed.extrapolated),
         lines,
         features,
@@ -246,7 +227,7 @@ fn components(
             )?,
             feature: position,
             light_fraction: emission.light.filter(|_| total > 0.0).map(|l| l / total),
-            prior: emission.prior.map(|p| p.prior),
+            prior: emission.prior.and_then(|p| p.rate),
             prior_light_fraction: emission
                 .prior
                 .filter(|_| total > 0.0)

@@ -98,7 +98,7 @@ pub(super) fn conclude(
         .iter()
         .map(|r| r.levels.iter().map(|l| l.own_row).collect())
         .collect();
-    Ok((reconcile::derive_with_ritz(species, reports), own_rows))
+    Ok((reconcile::derive(species, reports), own_rows))
 }
 
 /// A record is kept where it is the first, by rank of the sources, of its line or level.
@@ -246,7 +246,6 @@ pub(super) const fn line_kind(number: u8) -> LineKind {
         1 => LineKind::Mean,
         2 => LineKind::Blend,
         3 => LineKind::Isotope,
-        4 => LineKind::Ritz,
         _ => LineKind::Line,
     }
 }

@@ -109,6 +109,17 @@ pub enum CatalogueError {
         /// The file.
         path: PathBuf,
     },
+    /// A file that this program wrote, but not like this one does.
+    #[error("{}: {message}", path.display())]
+    HandedOver {
+        /// The file.
+        path: PathBuf,
+        /// What is wrong with it.
+        message: String,
+    },
+    /// Rows that could not be handed on.
+    #[error("the export could not be written: {0}")]
+    Receiver(#[source] std::io::Error),
     /// No licence is known.
     #[error("`{key}`: source.toml names no licence; state one with --licence, in words if need be")]
     NoLicence {

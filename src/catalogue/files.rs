@@ -201,6 +201,8 @@ const fn self_describing_word(format: Format) -> Option<&'static str> {
         Format::Ecsv => Some("ecsv"),
         Format::Xsams => Some("xsams"),
         Format::Fits => Some("fits"),
+        Format::Jsonl => Some("jsonl"),
+        Format::Parquet => Some("parquet"),
     }
 }
 

@@ -6,13 +6,13 @@ use std::path::PathBuf;
 use importers::record::{LevelEnd, LevelRecord, LineRecord, Place, Record};
 use importers::source::SourceDescription;
 use importers::{ImportError, ReadReport, Sink, SinkError};
-use rusqlite::{Connection, TransactionBehavior, params};
+use rusqlite::{Connection, Statement, TransactionBehavior, params};
 use vocabulary::atom::{HalfInteger, Species, SpeciesRequest};
 use vocabulary::spectrum::{LineKind, RateOrigin};
 
 use super::derive::{self, Labels};
 use super::error::{CatalogueError, Result};
-use super::store::{Catalogue, failed};
+use super::store::{Catalogue, LOCKED, failed};
 
 /// What an import did; `read = kept + merged + skipped + refused`.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
@@ -61,10 +61,7 @@ impl Catalogue {
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)
-            .map_err(failed(
-                &path,
-                "locked for writing (is another import running?)",
-            ))?;
+            .map_err(failed(&path, LOCKED))?;
         if let Some(summary) = already_held(&transaction, &path, incoming)? {
             return Ok(summary);
         }
@@ -134,7 +131,8 @@ pub(super) fn store_reports(
     read: impl FnOnce(&mut dyn Sink) -> std::result::Result<ReadReport, ImportError>,
 ) -> Result<Stored> {
     let source = insert_source(connection, incoming).map_err(failed(path, "written"))?;
-    let mut writer = ReportWriter::new(connection, path.to_owned(), source, labels);
+    let mut writer = ReportWriter::new(connection, path.to_owned(), source, labels)
+        .map_err(failed(path, "written"))?;
     let report = read(&mut writer).map_err(|error| unwrap_sink(error, path))?;
     let (records, species) = (writer.records, writer.species());
     connection
@@ -162,7 +160,7 @@ pub(super) fn store_reports(
 }
 
 /// A failed write inside the sink comes back as itself, not as a fault of the table.
-fn unwrap_sink(error: ImportError, path: &std::path::Path) -> CatalogueError {
+pub(super) fn unwrap_sink(error: ImportError, path: &std::path::Path) -> CatalogueError {
     match error {
         ImportError::Sink(inner) => match inner.downcast::<rusqlite::Error>() {
             Ok(cause) => failed(path, "written")(*cause),
@@ -172,7 +170,10 @@ fn unwrap_sink(error: ImportError, path: &std::path::Path) -> CatalogueError {
     }
 }
 
-fn insert_source(connection: &Connection, incoming: &Incoming<'_>) -> rusqlite::Result<i64> {
+pub(super) fn insert_source(
+    connection: &Connection,
+    incoming: &Incoming<'_>,
+) -> rusqlite::Result<i64> {
     let d = incoming.description;
     connection.execute(
         "INSERT INTO source (key, title, citation, licence, kind, notes, checksum, bundled,
@@ -210,7 +211,13 @@ fn insert_scopes(
         for &species in reported {
             if covers(scope, species) {
                 let [from, to] = scope.band_nm;
-                insert.execute(params![species, source, from, to, completeness_word(scope)])?;
+                insert.execute(params![
+                    species,
+                    source,
+                    from,
+                    to,
+                    completeness_word(scope.completeness)
+                ])?;
             }
         }
     }
@@ -230,9 +237,11 @@ fn covers(scope: &importers::source::Scope, code: i64) -> bool {
         .any(|entry| entry == "*" || named(entry))
 }
 
-const fn completeness_word(scope: &importers::source::Scope) -> &'static str {
+pub(super) const fn completeness_word(
+    completeness: importers::source::Completeness,
+) -> &'static str {
     use importers::source::Completeness;
-    match scope.completeness {
+    match completeness {
         Completeness::Full => "full",
         Completeness::Strong => "strong",
         Completeness::Computed => "computed",
@@ -250,12 +259,117 @@ const fn kind_word(kind: importers::source::SourceKind) -> &'static str {
     }
 }
 
+/// A level report about to be stored.
+#[derive(Clone, Copy)]
+pub(super) struct NewLevel {
+    pub species: i64,
+    pub source: i64,
+    pub number: u32,
+    pub place: u64,
+    pub energy_per_cm: f64,
+    pub energy_uncertainty_per_cm: f64,
+    pub configuration: Option<i64>,
+    pub term: Option<i64>,
+    pub twice_j: Option<u16>,
+    pub g: Option<f64>,
+    pub computed: bool,
+    pub own_row: bool,
+}
+
+/// A line report about to be stored.
+#[derive(Clone, Copy)]
+pub(super) struct NewLine {
+    pub species: i64,
+    pub source: i64,
+    pub number: u32,
+    pub place: u64,
+    pub wavenumber_per_cm: Option<f64>,
+    pub wavenumber_uncertainty_per_cm: Option<f64>,
+    pub from_levels: bool,
+    pub lower: Option<u32>,
+    pub upper: Option<u32>,
+    pub lower_twice_j: Option<u16>,
+    pub upper_twice_j: Option<u16>,
+    pub rate_per_s: Option<f64>,
+    pub rate_relative_uncertainty: Option<f64>,
+    pub rate_origin: Option<u8>,
+    pub intensity: Option<f64>,
+    pub kind: u8,
+    pub computed: bool,
+}
+
+/// The statements that store reports, prepared once.
+pub(super) struct Inserts<'c> {
+    level: Statement<'c>,
+    line: Statement<'c>,
+}
+
+impl<'c> Inserts<'c> {
+    pub fn prepare(connection: &'c Connection) -> rusqlite::Result<Self> {
+        let level = connection.prepare(
+            "INSERT INTO level_report (species, source, number, place, energy_per_cm,
+                 energy_uncertainty_per_cm, configuration, term, twice_j, g, computed, own_row)
+             VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12)",
+        )?;
+        let line = connection.prepare(
+            "INSERT INTO line_report (species, source, number, place, wavenumber_per_cm,
+                 wavenumber_uncertainty_per_cm, from_levels, lower, upper, lower_twice_j,
+                 upper_twice_j, rate_per_s, rate_relative_uncertainty, rate_origin, intensity,
+                 kind, computed)
+             VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13, ?14, ?15, ?16, ?17)",
+        )?;
+        Ok(Self { level, line })
+    }
+
+    pub fn level(&mut self, l: &NewLevel) -> rusqlite::Result<()> {
+        self.level.execute(params![
+            l.species,
+            l.source,
+            l.number,
+            l.place,
+            l.energy_per_cm,
+            l.energy_uncertainty_per_cm,
+            l.configuration,
+            l.term,
+            l.twice_j,
+            l.g,
+            l.computed,
+            l.own_row,
+        ])?;
+        Ok(())
+    }
+
+    pub fn line(&mut self, l: &NewLine) -> rusqlite::Result<()> {
+        self.line.execute(params![
+            l.species,
+            l.source,
+            l.number,
+            l.place,
+            l.wavenumber_per_cm,
+            l.wavenumber_uncertainty_per_cm,
+            l.from_levels,
+            l.lower,
+            l.upper,
+            l.lower_twice_j,
+            l.upper_twice_j,
+            l.rate_per_s,
+            l.rate_relative_uncertainty,
+            l.rate_origin,
+            l.intensity,
+            l.kind,
+            l.computed,
+        ])?;
+        Ok(())
+    }
+}
+
 /// A level inside one source: energy and J as printed.
 type LevelKey = (i64, u64, Option<u16>);
 
 /// Writes records as reports of one source.
 pub struct ReportWriter<'c> {
     connection: &'c Connection,
+    inserts: Inserts<'c>,
     path: PathBuf,
     source: i64,
     labels: &'c mut Labels,
@@ -278,17 +392,22 @@ struct KnownLevel {
 }
 
 impl<'c> ReportWriter<'c> {
-    fn new(connection: &'c Connection, path: PathBuf, source: i64, labels: &'c mut Labels) -> Self {
-        let (numbers, levels) = (HashMap::new(), HashMap::new());
-        Self {
+    fn new(
+        connection: &'c Connection,
+        path: PathBuf,
+        source: i64,
+        labels: &'c mut Labels,
+    ) -> rusqlite::Result<Self> {
+        Ok(Self {
             connection,
+            inserts: Inserts::prepare(connection)?,
             path,
             source,
             labels,
-            numbers,
-            levels,
+            numbers: HashMap::new(),
+            levels: HashMap::new(),
             records: 0,
-        }
+        })
     }
 
     fn species(&self) -> BTreeSet<i64> {
@@ -303,26 +422,20 @@ impl<'c> ReportWriter<'c> {
         let numbers = self.numbers.entry(species).or_default();
         let number = numbers.levels;
         numbers.levels += 1;
-        self.connection
-            .prepare_cached(
-                "INSERT INTO level_report (species, source, number, place, energy_per_cm,
-                     energy_uncertainty_per_cm, configuration, term, twice_j, g, computed, own_row)
-                 VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12)",
-            )?
-            .execute(params![
-                species,
-                self.source,
-                number,
-                record.place.line,
-                record.energy_per_cm,
-                record.energy_uncertainty_per_cm,
-                configuration,
-                term,
-                twice_j,
-                record.g,
-                record.computed,
-                own_row,
-            ])?;
+        self.inserts.level(&NewLevel {
+            species,
+            source: self.source,
+            number,
+            place: record.place.line,
+            energy_per_cm: record.energy_per_cm,
+            energy_uncertainty_per_cm: record.energy_uncertainty_per_cm,
+            configuration,
+            term,
+            twice_j,
+            g: record.g,
+            computed: record.computed,
+            own_row,
+        })?;
         let key = (species, record.energy_per_cm.to_bits(), twice_j);
         self.levels.entry(key).or_default().push(KnownLevel {
             number,
@@ -344,35 +457,30 @@ impl<'c> ReportWriter<'c> {
         let numbers = self.numbers.entry(species).or_default();
         let number = numbers.lines;
         numbers.lines += 1;
-        let loose_j = |end: Option<&LevelEnd>| end.and_then(|e| e.j).map(HalfInteger::twice);
-        self.connection
-            .prepare_cached(
-                "INSERT INTO line_report (species, source, number, place, wavenumber_per_cm,
-                     wavenumber_uncertainty_per_cm, from_levels, lower, upper, lower_twice_j,
-                     upper_twice_j, rate_per_s, rate_relative_uncertainty, rate_origin, intensity,
-                     kind, computed)
-                 VALUES (?1, ?2, ?3, ?4, ?5, ?6, ?7, ?8, ?9, ?10, ?11, ?12, ?13, ?14, ?15, ?16, ?17)",
-            )?
-            .execute(params![
-                species,
-                self.source,
-                number,
-                record.place.line,
-                record.wavenumber_per_cm,
-                record.wavenumber_uncertainty_per_cm,
-                record.from_levels,
-                lower,
-                upper,
-                if lower.is_none() { loose_j(record.lower.as_ref()) } else { None },
-                if upper.is_none() { loose_j(record.upper.as_ref()) } else { None },
-                record.rate_per_s,
-                record.rate_relative_uncertainty,
-                record.rate_origin.map(rate_origin_number),
-                record.intensity,
-                kind_number(record.kind),
-                record.computed,
-            ])?;
-        Ok(())
+        // J of an end of which no level is linked.
+        let unless = |linked: Option<u32>, end: Option<&LevelEnd>| match linked {
+            Some(_) => None,
+            None => end.and_then(|e| e.j).map(HalfInteger::twice),
+        };
+        self.inserts.line(&NewLine {
+            species,
+            source: self.source,
+            number,
+            place: record.place.line,
+            wavenumber_per_cm: record.wavenumber_per_cm,
+            wavenumber_uncertainty_per_cm: record.wavenumber_uncertainty_per_cm,
+            from_levels: record.from_levels,
+            lower,
+            upper,
+            lower_twice_j: unless(lower, record.lower.as_ref()),
+            upper_twice_j: unless(upper, record.upper.as_ref()),
+            rate_per_s: record.rate_per_s,
+            rate_relative_uncertainty: record.rate_relative_uncertainty,
+            rate_origin: record.rate_origin.map(rate_origin_number),
+            intensity: record.intensity,
+            kind: kind_number(record.kind),
+            computed: record.computed,
+        })
     }
 
     /// The level report that an end of a line means; made where no table gave it.
@@ -454,6 +562,5 @@ pub(super) const fn kind_number(kind: LineKind) -> u8 {
         LineKind::Mean => 1,
         LineKind::Blend => 2,
         LineKind::Isotope => 3,
-        LineKind::Ritz => 4,
     }
 }

@@ -5,6 +5,7 @@ mod derive;
 mod error;
 mod files;
 mod gap_fill;
+mod handover;
 mod ingest;
 mod query;
 pub mod reconcile;
@@ -15,6 +16,7 @@ mod store;
 
 pub use error::{CatalogueError, Result};
 pub use files::{SourceFiles, Stated, explain};
+pub use handover::{HandedOver, Receiver, Selection};
 pub use ingest::{ImportSummary, Incoming, ReportWriter};
 pub use query::Levels;
 pub use resonance::{BranchingRow, HyperfineRow, LifetimeRow, NamedLevel, ResonanceTables};

@@ -5,7 +5,7 @@ use rusqlite::{OptionalExtension, TransactionBehavior};
 use super::derive::{self, Labels};
 use super::error::{CatalogueError, Result};
 use super::gap_fill;
-use super::store::{Catalogue, failed};
+use super::store::{Catalogue, LOCKED, failed};
 
 /// A source as listed.
 #[derive(Clone, Debug, PartialEq)]
@@ -85,10 +85,7 @@ impl Catalogue {
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)
-            .map_err(failed(
-                &path,
-                "locked for writing (is another import running?)",
-            ))?;
+            .map_err(failed(&path, LOCKED))?;
         let source: i64 = transaction
             .query_row("SELECT id FROM source WHERE key = ?1", [key], |row| {
                 row.get(0)

@@ -21,6 +21,9 @@ const APPLICATION_ID: i32 = 0x6c6e_636c;
 /// How long a writer waits for another one.
 const PATIENCE: Duration = Duration::from_secs(10);
 
+/// What cannot be done while another process writes, as a participle.
+pub(super) const LOCKED: &str = "locked for writing (is another import running?)";
+
 /// An open catalogue.
 pub struct Catalogue {
     pub(super) connection: Connection,

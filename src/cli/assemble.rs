@@ -5,7 +5,7 @@ use vocabulary::light::SpectralRange;
 
 use super::CliError;
 use super::options::amount_of;
-use crate::advise::Spectrum;
+use crate::advise::{Conditions, EmissionModel, Spectrum};
 use crate::catalogue::Catalogue;
 
 /// Spectra of all held species that are asked for, and the requests of which nothing is held.
@@ -47,6 +47,34 @@ pub fn spectra(
         }
     }
     Ok(Assembled { spectra, not_held })
+}
+
+/// Adds what is held of the other stages of each element, with amount zero and without lines, where
+/// the model asks how an element spreads over its stages.
+pub fn complete(
+    catalogue: &Catalogue,
+    spectra: &mut Vec<Spectrum>,
+    conditions: &Conditions,
+) -> Result<(), CliError> {
+    let balanced = match conditions.model {
+        EmissionModel::Coronal => true,
+        EmissionModel::Lte => conditions.electron_density_per_m3.is_some(),
+        EmissionModel::Visible | EmissionModel::Given => false,
+    };
+    if !balanced {
+        return Ok(());
+    }
+    for species in catalogue.species()? {
+        let same = |s: &Spectrum| {
+            (s.species.atomic_number, s.species.isotope) == (species.atomic_number, species.isotope)
+        };
+        let there = spectra.iter().any(|s| s.species == species);
+        if !there && spectra.iter().any(same) {
+            // An empty range of wavenumbers.
+            spectra.push(spectrum(catalogue, species, 0.0, false, 0.0..=0.0)?);
+        }
+    }
+    Ok(())
 }
 
 /// A bare element means all its stages that are held, but for the one-electron ions from Li III on:

@@ -79,6 +79,12 @@ const REACH: f64 = 6.0;
 
 pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
     let mut source = arguments.source.check()?;
+    if !source.te_scan.is_empty() || !source.ne_scan.is_empty() {
+        return Err(CliError::Options(
+            "`passband choose` takes one temperature and one density, such as --te 3eV; `passband` \
+             scans a range",
+        ));
+    }
     let shape = arguments.optics.form(&mut source.assumed)?;
     let mut at_rest = arguments.optics.beam(0.0, 0.0, &mut source.assumed);
     at_rest.tilt_deg = 0.0;
@@ -114,7 +120,8 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
         let reach_nm = reach(&candidates, line_nm);
         let requests = with_target(species(&arguments.among)?, &wanted);
         let range = vacuum_range(reach_nm)?;
-        let held = assemble::spectra(&catalogue, &requests, &source.amounts, &range, 0.0)?;
+        let mut held = assemble::spectra(&catalogue, &requests, &source.amounts, &range, 0.0)?;
+        assemble::complete(&catalogue, &mut held.spectra, &source.conditions)?;
         let passband = PassbandQuestion {
             filter: arguments.some_filter(&candidates)?,
             light: at_rest,
@@ -127,6 +134,7 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
                 ..Background::default()
             },
             scan_kt_per_cm: Vec::new(),
+            scan_density_per_m3: Vec::new(),
             scan_tilt_deg: Vec::new(),
             not_held: held.not_held,
         };

@@ -31,6 +31,10 @@ pub fn context<'l>(
         assumed: checked.assumed.clone(),
         ..Context::default()
     };
+    context.conditions.insert(
+        "instrument".into(),
+        json!(checked.conditions.details.instrument.word()),
+    );
     cite(&mut context, catalogue, lines)?;
     Ok(context)
 }
@@ -80,5 +84,67 @@ pub fn conditions(
         .map(|(species, a)| (species.to_string(), json!(a)))
         .collect();
     put("mix", Value::Object(amounts));
+    for (key, value) in details(source) {
+        put(key, value);
+    }
+    out
+}
+
+/// What only some questions say, under its stable keys.
+fn details(source: &Conditions) -> Vec<(&'static str, Value)> {
+    let details = &source.details;
+    let entries = |list: &[crate::advise::Entry]| -> Value {
+        list.iter()
+            .map(|e| {
+                json!({
+                    "species": e.request.to_string(),
+                    "value": e.value,
+                    "relative_uncertainty": e.relative_sigma,
+                })
+            })
+            .collect()
+    };
+    let mut out = Vec::new();
+    if details.amounts.iter().any(|e| e.relative_sigma > 0.0) {
+        out.push(("amounts", entries(&details.amounts)));
+    }
+    if !details.ion_fractions.is_empty() {
+        out.push(("ion_fractions", entries(&details.ion_fractions)));
+    }
+    if !details.metastables.is_empty() {
+        let levels = details.metastables.iter().map(|m| {
+            let level = match &m.level {
+                crate::advise::LevelName::Label(label) => label.clone(),
+                crate::advise::LevelName::Energy(energy) => format!("{energy} cm-1"),
+            };
+            json!({
+                "species": m.species.to_string(),
+                "level": level,
+                "value": m.fraction,
+                "relative_uncertainty": m.relative_sigma,
+            })
+        });
+        out.push(("metastable", levels.collect()));
+    }
+    if !details.intensities.is_empty() {
+        let lines = details.intensities.iter().map(|g| {
+            json!({
+                "species": g.species.to_string(),
+                "vacuum_wavelength_nm": g.vacuum_nm,
+                "intensity": g.intensity,
+                "relative_uncertainty": g.relative_sigma,
+            })
+        });
+        out.push(("intensities", lines.collect()));
+    }
+    if !details.gas.is_empty() {
+        let gases = details.gas.iter().map(|g| {
+            json!({
+                "atomic_number": g.atomic_number,
+                "density_per_m3": g.density_per_m3,
+            })
+        });
+        out.push(("gas", gases.collect()));
+    }
     out
 }

@@ -45,6 +45,29 @@ pub enum CliError {
         #[source]
         cause: std::io::Error,
     },
+    /// A file that cannot be written.
+    #[error("{}: cannot be written: {cause}", path.display())]
+    Unwritable {
+        /// The file.
+        path: PathBuf,
+        /// The system's own words.
+        #[source]
+        cause: std::io::Error,
+    },
+    /// The selection is empty.
+    #[error("nothing is held of this selection ({words}); `lineclear sources` lists what is")]
+    NothingToExport {
+        /// The selection.
+        words: String,
+    },
+    /// Something stands where the answer should go.
+    #[error("{}: {problem}", path.display())]
+    PathTaken {
+        /// The path.
+        path: PathBuf,
+        /// What is there and what to do.
+        problem: &'static str,
+    },
     /// A file of lasers that cannot be used.
     #[error("{}:{line}: {problem}", path.display())]
     LaserFile {
@@ -61,6 +84,15 @@ pub enum CliError {
     /// A filter or a beam that no transmission can be computed from.
     #[error(transparent)]
     Filter(#[from] crate::calc::filter::FilterError),
+    /// A measured response of an instrument that cannot be used.
+    #[error("{}: {cause}", path.display())]
+    Response {
+        /// The file.
+        path: PathBuf,
+        /// What is wrong with it.
+        #[source]
+        cause: crate::calc::shape::ShapeError,
+    },
     /// A measured curve that cannot be used.
     #[error("{}: {cause}", path.display())]
     Curve {
@@ -135,6 +167,11 @@ impl CliError {
             | Self::Options(_) => Exit::Usage,
             Self::Laser(cause) if cause.is_usage() => Exit::Usage,
             Self::Predict(cause) if cause.is_usage() => Exit::Usage,
+            Self::Catalogue(CatalogueError::Receiver(cause))
+                if cause.kind() == std::io::ErrorKind::BrokenPipe =>
+            {
+                Exit::Answered
+            }
             Self::Output(cause) if cause.kind() == std::io::ErrorKind::BrokenPipe => Exit::Answered,
             _ => Exit::Failed,
         }

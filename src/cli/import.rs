@@ -8,7 +8,7 @@ use importers::source::Format;
 use super::options::{CatalogueOptions, OutputOptions};
 use super::progress::Bar;
 use super::{CliError, Exit, Outcome};
-use crate::catalogue::{self, SourceFiles, Stated};
+use crate::catalogue::{self, HandedOver, SourceFiles, Stated};
 use crate::show;
 
 /// Load a table of levels or lines, whole or not at all
@@ -16,16 +16,18 @@ use crate::show;
 /// A table is described by a source.toml beside it: citation, licence, scope and what each column
 /// means (data/README.md of the project explains it; the bundled sources are examples). Files that
 /// describe themselves (machine-readable tables with a byte-by-byte description, VOTable, ECSV,
-/// XSAMS, FITS tables; gzip of any) need only a citation and a licence. --explain says what a file
-/// is and writes a source.toml to edit.
+/// XSAMS, FITS tables, JSON lines, Parquet; gzip of any) need only a citation and a licence. Files
+/// that `lineclear export --content reports` wrote need nothing. --explain says what a file is and
+/// writes a source.toml to edit.
 #[derive(Args, Debug)]
 #[command(
     after_help = "Examples:\n  lineclear import data/morton2003 --dry-run\n  \
     lineclear import lines.vot --citation \"A. Author 2020, Journal 1, 2\" --licence CC-BY-4.0\n  \
-    lineclear import --explain lines.csv"
+    lineclear import --explain lines.csv\n  lineclear import morton2003.vot"
 )]
 pub struct Arguments {
-    /// source.toml, the folder that holds it and its tables, or a file that describes itself
+    /// source.toml, the folder that holds it and its tables, a file that describes itself, or an
+    /// export
     #[arg(value_name = "SOURCE")]
     source: PathBuf,
     /// Say what the file is and offer a source.toml for it; nothing is loaded
@@ -69,9 +71,27 @@ enum TableFormat {
     Ecsv,
     Xsams,
     Fits,
+    Jsonl,
+    Parquet,
 }
 
 impl Arguments {
+    /// A file that the program wrote says itself what it is.
+    fn refuse_statements(&self) -> Result<(), CliError> {
+        let stated = self.licence.is_some()
+            || self.citation.is_some()
+            || self.key.is_some()
+            || self.medium.is_some()
+            || self.table_format.is_some();
+        if stated || self.skip_bad > 0 {
+            return Err(CliError::Options(
+                "the file was written by `lineclear export` and names its sources itself; only \
+                 --dry-run goes with it",
+            ));
+        }
+        Ok(())
+    }
+
     fn files(&self) -> Result<SourceFiles, CliError> {
         let described = self.source.is_dir()
             || self
@@ -93,6 +113,8 @@ impl Arguments {
                 TableFormat::Ecsv => Format::Ecsv,
                 TableFormat::Xsams => Format::Xsams,
                 TableFormat::Fits => Format::Fits,
+                TableFormat::Jsonl => Format::Jsonl,
+                TableFormat::Parquet => Format::Parquet,
             }),
         };
         let files = SourceFiles::self_describing(&self.source, &stated)?;
@@ -107,6 +129,19 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
         let sheet = show::explained(&name, &catalogue::explain(&arguments.source)?);
         return Ok(Outcome {
             sheet,
+            format,
+            exit: Exit::Answered,
+        });
+    }
+    if let Some(files) = HandedOver::find(&arguments.source)? {
+        arguments.refuse_statements()?;
+        let mut catalogue = context.open()?;
+        let bar = Bar::new(context.quiet(), "importing");
+        bar.pulse();
+        let summary = catalogue.take_in(&files, arguments.dry_run);
+        bar.finish();
+        return Ok(Outcome {
+            sheet: show::imported(&summary?, arguments.dry_run),
             format,
             exit: Exit::Answered,
         });

@@ -96,7 +96,8 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
         .transpose()?;
     let catalogue = context.open()?;
     let margin_nm = REACH_WIDTHS * checked.width.at_nm(range.vacuum_high_nm);
-    let held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    let mut held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    assemble::complete(&catalogue, &mut held.spectra, &checked.conditions)?;
     let question = Question {
         position_bound_nm: position_bound(arguments, &range, width_nm, &mut checked)?,
         range,

@@ -11,16 +11,22 @@ mod convert;
 mod describe;
 mod error;
 mod exit;
+mod export;
 mod forget;
+mod given;
 mod import;
+mod instrument;
 mod line;
 mod marks;
+mod mix;
 mod optics;
 mod options;
 mod pairs;
 mod passband;
 mod predict;
 mod progress;
+mod scan;
+mod source;
 mod sources;
 mod table_file;
 mod tune;
@@ -60,6 +66,7 @@ enum Command {
     Attribute(attribute::Arguments),
     Convert(convert::Arguments),
     Import(import::Arguments),
+    Export(export::Arguments),
     Sources(sources::Arguments),
     Forget(forget::Arguments),
 }
@@ -95,6 +102,7 @@ pub fn run() -> Result<Exit, CliError> {
         Command::Passband(arguments) => passband::run(*arguments, context)?,
         Command::Convert(arguments) => convert::run(&arguments)?,
         Command::Import(arguments) => import::run(&arguments, context)?,
+        Command::Export(arguments) => return export::run(&arguments, context),
         Command::Sources(arguments) => sources::run(&arguments, context)?,
         Command::Forget(arguments) => forget::run(&arguments, context)?,
     };

@@ -12,6 +12,7 @@ use vocabulary::spectrum::Line;
 use super::options::{CatalogueOptions, ConditionOptions, OutputOptions, medium};
 use super::table_file::{ColumnIndex, PositionColumn, TableFile};
 use super::{CliError, Exit, Outcome, assemble, marks, window};
+use crate::advise::EmissionModel;
 use crate::advise::pairs::{self, Plot, Point, Question};
 use crate::advise::window::REACH_WIDTHS;
 use crate::catalogue::Catalogue;
@@ -125,6 +126,14 @@ fn find(
     let mut checked = arguments.conditions.check(&range)?;
     if range.unit_assumed {
         checked.assumed.push("nm, as the span has no unit".into());
+    }
+    if matches!(
+        checked.conditions.model,
+        EmissionModel::Coronal | EmissionModel::Given
+    ) {
+        return Err(CliError::Options(
+            "a temperature from line pairs rests on LTE; use --model visible or lte",
+        ));
     }
     let within: Option<SpectralWidth> = arguments.within.as_deref().map(str::parse).transpose()?;
     let mut requests = vec![request];

@@ -158,7 +158,8 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
     }
     let catalogue = context.open()?;
     let range = vacuum_range(reach_nm)?;
-    let held = assemble::spectra(&catalogue, &requests, &source.amounts, &range, 0.0)?;
+    let mut held = assemble::spectra(&catalogue, &requests, &source.amounts, &range, 0.0)?;
+    assemble::complete(&catalogue, &mut held.spectra, &source.conditions)?;
     let question = Question {
         background: arguments.background(&source, reach_nm)?,
         detector: arguments.optics.detector()?,
@@ -166,6 +167,7 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
         conditions: source.conditions.clone(),
         target,
         scan_kt_per_cm: scanned(&source).map(kt_per_cm).collect(),
+        scan_density_per_m3: source.ne_scan.clone(),
         scan_tilt_deg: tilts(light.tilt_deg),
         not_held: held.not_held,
         filter,

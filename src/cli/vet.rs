@@ -12,7 +12,7 @@ use super::options::{
 use super::window::species;
 use super::{CliError, Exit, Outcome, assemble, describe};
 use crate::advise::vet::{self, ALTERNATIVES_NM, Answer, Order, Question};
-use crate::advise::{REACH_WIDTHS, Wanted};
+use crate::advise::{REACH_WIDTHS, Wanted, pressure_reach_nm};
 use crate::catalogue::Catalogue;
 use crate::show;
 
@@ -70,8 +70,10 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
     let checked = arguments.conditions.check(&centre)?;
     let catalogue = context.open()?;
     let width_nm = checked.width.at_nm(wanted.vacuum_nm);
-    let margin_nm = ALTERNATIVES_NM.max(REACH_WIDTHS * width_nm) + REACH_WIDTHS * width_nm;
-    let held = assemble::spectra(&catalogue, &requests, &checked.amounts, &centre, margin_nm)?;
+    let reach_nm = (REACH_WIDTHS * width_nm).max(pressure_reach_nm(&checked.conditions));
+    let margin_nm = ALTERNATIVES_NM.max(reach_nm) + reach_nm;
+    let mut held = assemble::spectra(&catalogue, &requests, &checked.amounts, &centre, margin_nm)?;
+    assemble::complete(&catalogue, &mut held.spectra, &checked.conditions)?;
     let orders = orders(&catalogue, &requests, &checked, &wanted, arguments.orders)?;
     let question = Question {
         wanted,
@@ -121,7 +123,9 @@ fn orders(
             let range: SpectralRange = around(centre_nm)?;
             // Room for the dispersion of air between the orders: 1e-4 of the wavelength.
             let margin_nm = REACH_WIDTHS * width_nm / f64::from(order) + 1e-4 * centre_nm;
-            let held = assemble::spectra(catalogue, requests, &checked.amounts, &range, margin_nm)?;
+            let mut held =
+                assemble::spectra(catalogue, requests, &checked.amounts, &range, margin_nm)?;
+            assemble::complete(catalogue, &mut held.spectra, &checked.conditions)?;
             Ok(Order {
                 order,
                 spectra: held.spectra,

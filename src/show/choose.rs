@@ -3,7 +3,8 @@
 use serde_json::{Map, Value, json};
 
 use super::number::{percent, percent_in_table, purity};
-use super::passband::{MODEL, headline, judgement_notes, put_target};
+use super::passband::{FILTER, headline, judgement_notes, put_target};
+use super::physics::filter_notes;
 use super::sheet::{Align, Column, Context, Sheet};
 use super::window::unrated_value;
 use crate::advise::Wanted;
@@ -45,7 +46,15 @@ pub fn chosen(answers: &[(Wanted, Answer)], context: Context) -> Sheet {
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
-    notes.push(MODEL.into());
+    for (_, answer) in answers {
+        if let Some((_, _, full)) = &answer.best {
+            for note in filter_notes(&full.physics, FILTER) {
+                if !notes.contains(&note) {
+                    notes.push(note);
+                }
+            }
+        }
+    }
     notes.extend(context.source_notes());
     Sheet {
         headline: lines,

@@ -69,6 +69,14 @@ pub fn plus_minus(relative: Option<f64>) -> String {
     )
 }
 
+/// A width or distance with three significant digits.
+pub(super) fn short(nm: f64) -> String {
+    let digits = format!("{nm:.2e}");
+    digits
+        .parse::<f64>()
+        .map_or(digits, |value| value.to_string())
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;

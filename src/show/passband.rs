@@ -1,15 +1,15 @@
 //! The answer of `passband`.
 
 use serde_json::{Map, Value, json};
-use vocabulary::spectrum::LineKind;
 
 use super::line::{line_object, position_cell, transition_cell};
 use super::number::{percent, percent_in_table, purity};
+use super::physics::filter_notes;
 use super::sheet::{Align, Column, Context, Sheet};
 use super::vet::WORTH_A_ROW;
 use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
 use crate::advise::passband::{Answer, PassbandLine, Question, SPOILERS, Target};
-use crate::advise::scan::{TemperaturePoint, TiltPoint};
+use crate::advise::scan::{DensityPoint, TemperaturePoint, TiltPoint};
 use crate::advise::{Placed, Verdict};
 
 /// How many rows the table shows.
@@ -191,22 +191,22 @@ fn notes(answer: &Answer, question: &Question, context: &Context, worthy: usize)
     }
     if answer.target.is_some() {
         notes.extend(temperature_words(&answer.scan));
+        notes.extend(density_words(&answer.density_scan));
         notes.extend(tilt_words(&answer.tilts));
     }
     notes.extend(judgement_notes(answer, question));
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
-    notes.push(MODEL.into());
+    notes.extend(filter_notes(&answer.physics, FILTER));
     notes.extend(lower_bound_note(&answer.lower_bounds));
     notes.extend(context.source_notes());
     notes
 }
 
-/// What the light and the filter are taken to be.
-pub(super) const MODEL: &str = "Optically thin; light is power; populations of LTE inside each \
-    species, Planck–Larkin weighted. Purity is the target's part of all rated light behind filter \
-    and detector. A filter moves to the blue by √(1 − sin²θ/n²) when tilted.";
+/// What purity and tilt mean.
+pub(super) const FILTER: &str = "Purity is the target's part of all rated light behind filter and \
+    detector. A filter moves to the blue by √(1 − sin²θ/n²) when tilted.";
 
 /// What cannot be judged, and what the filter leaves open.
 pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<String> {
@@ -215,16 +215,14 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
         let target_name = name(&target.line, &target.placed);
         notes.push(format!("{target_name}: {}.", target.remarks.join("; ")));
     }
-    let open = |l: &&PassbandLine| {
-        let comes_through = |t| t >= 1e-2 * question.filter.peak();
-        l.light_fraction.is_none() && l.transmission.is_some_and(comes_through)
-    };
-    let unlisted = |l: &&PassbandLine| l.line.kind == LineKind::Ritz;
     let unrated: Vec<String> = answer
         .lines
         .iter()
-        .filter(open)
-        .filter(|l| !unlisted(l))
+        .filter(|l| l.light_fraction.is_none())
+        .filter(|l| {
+            l.transmission
+                .is_some_and(|t| t >= 1e-2 * question.filter.peak())
+        })
         .map(|l| format!("{} {:.3}", l.line.species, l.placed.wavelength_nm))
         .collect();
     if !unrated.is_empty() {
@@ -237,13 +235,6 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
         notes.push(format!(
             "Come through but are not rated (no rate is known, or the detector is not): {}{end}.",
             unrated[..unrated.len().min(ROWS)].join(", ")
-        ));
-    }
-    let ritz = answer.lines.iter().filter(open).filter(unlisted).count();
-    if ritz > 0 {
-        notes.push(format!(
-            "In no table, but following from levels that are (Ritz): {ritz} of the lines that come \
-             through; the prior for unknown rates counts them."
         ));
     }
     notes.extend(unjudged_notes(&answer.unrated));
@@ -277,6 +268,23 @@ fn temperature_words(scan: &[TemperaturePoint]) -> Option<String> {
 fn temperature(ev: f64) -> String {
     let digits = format!("{ev:.2e}");
     format!("{} eV", digits.parse::<f64>().unwrap_or(ev))
+}
+
+fn density_words(scan: &[DensityPoint]) -> Option<String> {
+    let known = || {
+        scan.iter()
+            .filter_map(|p| Some((p.electron_density_per_m3, p.purity?)))
+    };
+    let words: Vec<String> = thinned(known().collect())
+        .iter()
+        .map(|(density, pure)| format!("{} at {density:.1e} m⁻³", purity(*pure)))
+        .collect();
+    (!words.is_empty()).then(|| {
+        format!(
+            "Purity (lines alone) by electron density: {}.",
+            words.join(", ")
+        )
+    })
 }
 
 fn tilt_words(tilts: &[TiltPoint]) -> Option<String> {
@@ -315,6 +323,10 @@ fn object(answer: &Answer, mut context: Context, notes: &[String]) -> Map<String
     put("spoilers", spoiler_values(answer));
     put("lines", answer.lines.iter().filter_map(line).collect());
     put("scan", answer.scan.iter().map(temperature_value).collect());
+    put(
+        "density_scan",
+        answer.density_scan.iter().map(density_value).collect(),
+    );
     put("tilt_scan", answer.tilts.iter().map(tilt_value).collect());
     put("unrated", unrated_value(&answer.unrated));
     object
@@ -354,6 +366,8 @@ pub(super) fn put_target(put: &mut dyn FnMut(&str, Value) -> Option<Value>, answ
         "remarks",
         json!(target.map(|t| t.remarks.clone()).unwrap_or_default()),
     );
+    put("prior_chance", json!(target.and_then(|t| t.prior_chance)));
+    put("unlisted_chance", json!(target.map(|t| t.unlisted_chance)));
     put("drift_to_blue_nm", json!(target.and_then(|t| t.drift_nm.0)));
     put("drift_to_red_nm", json!(target.and_then(|t| t.drift_nm.1)));
 }
@@ -385,6 +399,15 @@ fn line(line: &PassbandLine) -> Option<Value> {
 fn temperature_value(point: &TemperaturePoint) -> Value {
     json!({
         "electron_temperature_ev": point.kt_per_cm / vocabulary::light::constants::PER_CM_PER_EV,
+        "purity": point.purity,
+        "interference_fraction": point.interference_fraction,
+        "verdict": word(point.interference_fraction),
+    })
+}
+
+fn density_value(point: &DensityPoint) -> Value {
+    json!({
+        "electron_density_per_m3": point.electron_density_per_m3,
         "purity": point.purity,
         "interference_fraction": point.interference_fraction,
         "verdict": word(point.interference_fraction),

@@ -3,7 +3,8 @@
 use serde_json::{Map, Value, json};
 
 use super::line::{line_object, position_cell, rate_cell, transition_cell};
-use super::number::{percent, percent_in_table};
+use super::number::{percent, percent_in_table, short};
+use super::physics::physics_notes;
 use super::prior::prior_note;
 use super::sheet::{Align, Column, Context, Sheet};
 use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
@@ -64,6 +65,9 @@ fn headline(answer: &Answer, question: &Question) -> Vec<String> {
         answer.verdict
     )];
     out.push(match answer.interference {
+        Some(i) if i.fraction == 0.0 => {
+            format!("No rated light of other species there{}.", own(answer))
+        }
         Some(i) => format!(
             "{} of other species there: {} of its own (68 % interval {} to {}){}.",
             if answer.verdict.central == Verdict::Unrated {
@@ -81,14 +85,6 @@ fn headline(answer: &Answer, question: &Question) -> Vec<String> {
     out.extend(resolving_words(answer, width_nm));
     out.push(alternative_words(answer));
     out
-}
-
-/// A width or distance with three significant digits.
-fn short(nm: f64) -> String {
-    let digits = format!("{nm:.2e}");
-    digits
-        .parse::<f64>()
-        .map_or(digits, |value| value.to_string())
 }
 
 fn own(answer: &Answer) -> String {
@@ -194,7 +190,10 @@ fn notes(answer: &Answer, context: &Context, worthy: usize) -> Vec<String> {
             "Shown: the {ROWS} strongest of {worthy} interferers above 0.001 %."
         ));
     }
-    notes.extend(prior_note(std::slice::from_ref(&answer.feature)));
+    notes.extend(prior_note(
+        std::slice::from_ref(&answer.feature),
+        answer.physics.model,
+    ));
     notes.extend(unjudged_notes(&answer.unrated));
     notes.extend(self_absorption_note(answer));
     if answer.interferers.iter().any(|i| i.order > 1) {
@@ -207,11 +206,7 @@ fn notes(answer: &Answer, context: &Context, worthy: usize) -> Vec<String> {
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
-    notes.push(
-        "Optically thin; light is power; populations of LTE inside each species, Planck–Larkin \
-         weighted; Doppler, natural and Gaussian instrument widths (Voigt)."
-            .into(),
-    );
+    notes.extend(physics_notes(&answer.physics));
     notes.extend(lower_bound_note(&answer.lower_bounds));
     let unstated = |line: &vocabulary::spectrum::Line| {
         line.rate_per_s.is_some() && line.rate_relative_uncertainty.is_none()
@@ -293,6 +288,12 @@ fn object(answer: &Answer, context: Context, notes: &[String]) -> Map<String, Va
             "optical_depth": absorbed.depth_and_left.map(|d| d.0),
             "light_fraction_left": absorbed.depth_and_left.map(|d| d.1),
         }),
+    );
+    let pressure = answer.pressure;
+    put("stark_fwhm_nm", json!(pressure.stark.map(|w| w.fwhm_nm)));
+    put(
+        "van_der_waals_fwhm_nm",
+        json!(pressure.van_der_waals.map(|w| w.fwhm_nm)),
     );
     put("unrated", unrated_value(&answer.unrated));
     object

@@ -10,10 +10,11 @@ use super::line::{
     line_object, multiplet_cell, position_cell, put_verdict, rate_cell, transition_cell,
 };
 use super::number::{percent, percent_in_table};
+use super::physics::physics_notes;
 use super::prior::{prior_note, put_prior};
 use super::sheet::{Align, Column, Context, Sheet};
 use crate::advise::Verdict;
-use crate::advise::window::{Answer, FAINT, Unjudged, WindowFeature, WindowLine};
+use crate::advise::window::{Answer, Unjudged, WindowFeature, WindowLine};
 
 /// Columns; the heading of the first names the medium where it is one for all rows.
 const COLUMNS: [Column; 9] = [
@@ -36,24 +37,26 @@ pub struct Wish {
     pub components: bool,
     /// Show only so many features, the brightest.
     pub strongest: Option<usize>,
-    /// Show also what no table lists and the prior for unknown rates takes to be faint.
-    pub faint: bool,
 }
 
 /// Builds the sheet of a window.
 pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
-    let bright = (0..answer.features.len())
-        .filter(|&f| wish.faint || !answer.is_faint(&answer.features[f]))
-        .collect::<Vec<_>>();
-    let all = bright.len();
-    let shown = chosen(answer, bright.clone(), wish.strongest);
-    let mut notes = notes(answer, &context);
-    if let Some(note) = unlisted_note(answer, answer.features.len() - all) {
-        notes.insert(0, note);
+    let shown = chosen(answer, wish.strongest);
+    let mut notes = notes(answer, &context, &shown);
+    let counts = answer.features.iter().filter(|f| counts(f)).count();
+    let dark = answer.features.len() - counts;
+    if dark > 0 {
+        notes.insert(
+            0,
+            format!("Left out: features with less than 1e-9 of the light ({dark})."),
+        );
     }
-    if shown.len() < all {
+    if shown.len() < counts {
         let some = shown.len();
-        notes.insert(0, format!("Shown: the {some} brightest of {all} features."));
+        notes.insert(
+            0,
+            format!("Shown: the {some} brightest of {counts} features."),
+        );
     }
     let medium = one_medium(answer, &shown);
     let rows = if wish.components {
@@ -72,7 +75,7 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     };
     let object = object(answer, &shown, context, &notes);
     Sheet {
-        headline: headline(answer, wish, &bright),
+        headline: headline(answer, wish, counts),
         columns,
         rows,
         notes,
@@ -81,8 +84,19 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     }
 }
 
+/// Below this part of the light in the window a feature is as good as absent.
+const DARK: f64 = 1e-9;
+
+/// Whether a feature is worth a word.
+fn counts(feature: &WindowFeature) -> bool {
+    feature.light_fraction.is_none_or(|f| f >= DARK)
+}
+
 /// Features to show, by wavelength.
-fn chosen(answer: &Answer, mut all: Vec<usize>, strongest: Option<usize>) -> Vec<usize> {
+fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<usize> {
+    let mut all: Vec<usize> = (0..answer.features.len())
+        .filter(|&f| counts(&answer.features[f]))
+        .collect();
     if let Some(count) = strongest {
         let light = |f: usize| answer.features[f].light_fraction.unwrap_or(-1.0);
         all.sort_by(|&a, &b| light(b).total_cmp(&light(a)).then(a.cmp(&b)));
@@ -92,26 +106,6 @@ fn chosen(answer: &Answer, mut all: Vec<usize>, strongest: Option<usize>) -> Vec
     all
 }
 
-/// What stands among the features although no table lists it.
-fn unlisted_note(answer: &Answer, hidden: usize) -> Option<String> {
-    let unlisted = (answer.features.iter())
-        .filter(|f| answer.is_unlisted(f))
-        .count();
-    let shown = unlisted - hidden;
-    let faint = if hidden > 0 {
-        format!(
-            "{hidden} more, below {} of the brightest by the prior for unknown rates, not shown \
-             (--faint shows them)",
-            percent(FAINT)
-        )
-    } else {
-        "none left out".to_owned()
-    };
-    (unlisted > 0).then(|| {
-        format!("In no table, but following from levels that are (Ritz): {shown} of these features; {faint}.")
-    })
-}
-
 /// The medium of all positions shown, where it is one.
 fn one_medium(answer: &Answer, shown: &[usize]) -> Option<PositionMedium> {
     let mut media = shown.iter().map(|&f| answer.features[f].placed.medium);
@@ -119,8 +113,8 @@ fn one_medium(answer: &Answer, shown: &[usize]) -> Option<PositionMedium> {
     media.all(|m| m == first).then_some(first)
 }
 
-fn headline(answer: &Answer, wish: &Wish, counted: &[usize]) -> Vec<String> {
-    if counted.is_empty() {
+fn headline(answer: &Answer, wish: &Wish, count: usize) -> Vec<String> {
+    if answer.features.is_empty() {
         let end = if answer.unrated.iter().any(|u| u.decides) {
             "the window cannot be judged (see below)".to_owned()
         } else {
@@ -131,9 +125,12 @@ fn headline(answer: &Answer, wish: &Wish, counted: &[usize]) -> Vec<String> {
             wish.typed
         )];
     }
-    let features = || counted.iter().map(|&f| &answer.features[f]);
-    let species: BTreeSet<String> = features().map(|f| f.species.to_string()).collect();
-    let count = counted.len();
+    let species: BTreeSet<String> = answer
+        .features
+        .iter()
+        .filter(|f| counts(f))
+        .map(|f| f.species.to_string())
+        .collect();
     let plural = if count == 1 { "feature" } else { "features" };
     let first = format!(
         "{}: {count} {plural} of {} species.",
@@ -148,7 +145,7 @@ fn headline(answer: &Answer, wish: &Wish, counted: &[usize]) -> Vec<String> {
         Verdict::Swamped,
         Verdict::Unrated,
     ] {
-        out.extend(verdict_words(features(), verdict));
+        out.extend(verdict_words(answer, verdict));
     }
     out
 }
@@ -173,11 +170,12 @@ fn beyond_scope(answer: &Answer) -> String {
 /// How many features a verdict's line of words names.
 const NAMED: usize = 5;
 
-fn verdict_words<'f>(
-    features: impl Iterator<Item = &'f WindowFeature>,
-    verdict: Verdict,
-) -> Option<String> {
-    let mut of: Vec<&WindowFeature> = features.filter(|f| f.verdict.central == verdict).collect();
+fn verdict_words(answer: &Answer, verdict: Verdict) -> Option<String> {
+    let mut of: Vec<&WindowFeature> = answer
+        .features
+        .iter()
+        .filter(|f| f.verdict.central == verdict && counts(f))
+        .collect();
     if of.is_empty() {
         return None;
     }
@@ -312,25 +310,21 @@ fn broken(key: &str) -> String {
     }
 }
 
-fn notes(answer: &Answer, context: &Context) -> Vec<String> {
+fn notes(answer: &Answer, context: &Context, shown: &[usize]) -> Vec<String> {
     let mut notes = Vec::new();
-    for feature in answer.features.iter().filter(|f| !answer.is_unlisted(f)) {
+    for feature in shown.iter().map(|&f| &answer.features[f]) {
         if !feature.remarks.is_empty() {
             let name = format!("{} {:.3}", feature.species, feature.placed.wavelength_nm);
             notes.push(format!("{name}: {}.", feature.remarks.join("; ")));
         }
     }
     join_like(&mut notes);
-    notes.extend(prior_note(&answer.features));
+    notes.extend(prior_note(&answer.features, answer.physics.model));
     notes.extend(unjudged_notes(&answer.unrated));
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }
-    notes.push(
-        "Optically thin; light is power; populations of LTE inside each species, Planck–Larkin \
-         weighted; Doppler, natural and Gaussian instrument widths (Voigt)."
-            .into(),
-    );
+    notes.extend(physics_notes(&answer.physics));
     notes.extend(lower_bound_note(&answer.lower_bounds));
     if answer.unstated_rates {
         notes.push("±? marks rates whose source states no uncertainty; 50 % is taken.".into());
@@ -357,10 +351,10 @@ pub(super) fn lower_bound_note(species: &[vocabulary::atom::Species]) -> Option<
 /// What cannot be judged, and why.
 pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
     let mut notes = Vec::new();
-    let listed = |decides: bool, counted: bool, reason: &str| {
+    let listed = |decides: bool, reason: &str| {
         let of: Vec<&str> = unrated
             .iter()
-            .filter(|u| u.decides == decides && u.counted == counted && u.reason == reason)
+            .filter(|u| u.decides == decides && u.reason == reason)
             .map(|u| u.species.as_str())
             .collect();
         stages(&of)
@@ -369,7 +363,7 @@ pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
     reasons.sort_unstable();
     reasons.dedup();
     for reason in &reasons {
-        let names = listed(true, false, reason);
+        let names = listed(true, reason);
         if !names.is_empty() {
             notes.push(format!(
                 "{names}: {reason}, so no line there can be called clear."
@@ -377,14 +371,7 @@ pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
         }
     }
     for reason in &reasons {
-        let names = listed(false, true, reason);
-        if !names.is_empty() {
-            notes.push(format!(
-                "{names}: {reason}; unlisted ones are counted as if as dense as those of the other \
-                 stage; name the stage to have it decide."
-            ));
-        }
-        let names = listed(false, false, reason);
+        let names = listed(false, reason);
         if !names.is_empty() {
             notes.push(format!(
                 "Not judged, as {reason}: {names}; name the stage to have it count."
@@ -488,7 +475,7 @@ fn object(
 pub(super) fn unrated_value(unrated: &[Unjudged]) -> Value {
     unrated
         .iter()
-        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides, "counted": u.counted}))
+        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides}))
         .collect()
 }
 

@@ -41,8 +41,6 @@ pub enum LineKind {
     Blend,
     /// A line of one isotope.
     Isotope,
-    /// One transition that no table lists: it follows from two levels alone.
-    Ritz,
 }
 
 /// Parity of a level.
@@ -166,7 +164,7 @@ pub struct Strength {
     pub wavenumber_per_cm: f64,
     /// Rate, s⁻¹, where known.
     pub rate_per_s: Option<f64>,
-    /// No table lists it: it was computed, or follows from levels alone.
+    /// Its position is computed: no table lists it.
     pub computed: bool,
     /// Number of the lower level.
     pub lower: Option<u32>,

@@ -4,7 +4,7 @@
 
 use divan::{Bencher, black_box};
 use lineclear::advise::window::{Question, answer};
-use lineclear::advise::{Conditions, EmissionModel, Spectrum};
+use lineclear::advise::{Conditions, Details, EmissionModel, Spectrum};
 use lineclear::catalogue::Catalogue;
 use lineclear::vocabulary::atom::{SpeciesRequest, limit, mass_u};
 use lineclear::vocabulary::light::{Air, Medium, SpectralWidth, TypedRange};
@@ -50,6 +50,7 @@ fn question(range: &str) -> Question {
             kt_per_cm: 8065.5,
             electron_density_per_m3: None,
             gas_temperature_k: 1000.0,
+            details: Details::default(),
         },
         not_held: Vec::new(),
     }

@@ -10,11 +10,11 @@ pub use columns::{
     Piece, Split,
 };
 
-use serde::Deserialize;
+use serde::{Deserialize, Serialize};
 use thiserror::Error;
 
 /// What kind of source it is; decides its rank when sources disagree.
-#[derive(Clone, Copy, Debug, Deserialize, PartialEq, Eq, Hash, PartialOrd, Ord)]
+#[derive(Clone, Copy, Debug, Deserialize, PartialEq, Eq, Hash, PartialOrd, Ord, Serialize)]
 #[serde(rename_all = "lowercase")]
 pub enum SourceKind {
     /// A table published in a paper.
@@ -28,7 +28,7 @@ pub enum SourceKind {
 }
 
 /// Down to which strength a source claims to be complete.
-#[derive(Clone, Copy, Debug, Deserialize, PartialEq, Eq, Hash)]
+#[derive(Clone, Copy, Debug, Deserialize, PartialEq, Eq, Hash, Serialize)]
 #[serde(rename_all = "kebab-case")]
 pub enum Completeness {
     /// Lines down to 1e-3 of the strongest.
@@ -82,6 +82,10 @@ pub enum Format {
     Xsams,
     /// A FITS binary table.
     Fits,
+    /// One JSON object per line.
+    Jsonl,
+    /// Parquet, without nested columns.
+    Parquet,
 }
 
 /// A rule that leaves rows out, and the reason that the report gives.
@@ -250,6 +254,8 @@ impl Format {
             Self::Ecsv => "ecsv",
             Self::Xsams => "xsams",
             Self::Fits => "fits",
+            Self::Jsonl => "jsonl",
+            Self::Parquet => "parquet",
         }
     }
 }
@@ -309,6 +315,11 @@ impl SourceDescription {
             message,
         })?;
         Ok(description)
+    }
+
+    /// The place and the reason where a value makes no sense.
+    pub(crate) fn checked(&self) -> Result<(), (String, String)> {
+        check::check(self)
     }
 }
 

@@ -19,6 +19,7 @@ pub struct VotableReader<R: Read> {
     fields: Vec<Field>,
     columns: Vec<ColumnInfo>,
     body: Body,
+    about: Option<String>,
     warnings: Vec<String>,
 }
 
@@ -42,6 +43,7 @@ impl<R: Read> VotableReader<R> {
             fields: Vec::new(),
             columns: Vec::new(),
             body: Body::Ended,
+            about: None,
             warnings: Vec::new(),
         };
         reader.find_root()?;
@@ -93,8 +95,12 @@ impl<R: Read> VotableReader<R> {
     /// A service says in an INFO whether its answer is whole.
     fn check_status(&mut self, info: &Element) -> Result<(), RowError> {
         let status = info.attribute("name") == Some("QUERY_STATUS");
+        let own = info.attribute("name") == Some(crate::handover::NAME);
         let value = info.attribute("value").unwrap_or_default().to_owned();
         let text = self.xml.content()?;
+        if own && self.about.is_none() {
+            self.about = Some(text.clone());
+        }
         match value.as_str() {
             "ERROR" if status => {
                 let text = crate::sink::shown(text.trim());
@@ -266,6 +272,10 @@ impl<R: Read> RowReader for VotableReader<R> {
             self.finish()?;
         }
         Ok(more)
+    }
+
+    fn about(&self) -> Option<&str> {
+        self.about.as_deref()
     }
 
     fn warnings(&self) -> Vec<String> {

@@ -8,9 +8,9 @@ use vocabulary::light::{Medium, SpectralRange, SpectralWidth};
 use vocabulary::spectrum::Line;
 
 use super::emission::Conditions;
+pub use super::emission::UNSTATED_RATE_SIGMA;
 use super::error::AdviseError;
 use super::marks::{Surveyed, survey};
-pub use super::scene::UNSTATED_RATE_SIGMA;
 use super::spectrum::Spectrum;
 use super::verdict::Verdict;
 

@@ -31,6 +31,12 @@ pub struct CoronalLine {
 pub struct CoronalEmission {
     /// Photons per second, per atom of the species and per electron per m³ (so m³/s), line by line.
     pub photons_m3_per_s: Vec<f64>,
+    /// Excitation of each level straight from populated ones, in the same unit.
+    pub direct_m3_per_s: Vec<f64>,
+    /// All that reaches each level, cascades included, in the same unit.
+    pub feed_m3_per_s: Vec<f64>,
+    /// Sum of the held rates out of each level, s⁻¹.
+    pub decay_per_s: Vec<f64>,
     /// Levels that emit lines but that nothing in the model feeds: their lines come out as zero
     /// *because the data lack a way to excite them*, and an answer names them as unrated.
     pub unfed: Vec<usize>,
@@ -96,6 +102,7 @@ fn cascade(
     populated: &[(usize, f64)],
     mut feed: Vec<f64>,
 ) -> CoronalEmission {
+    let direct = feed.clone();
     let mut total = vec![0.0; levels.len()];
     let mut below: Vec<Vec<usize>> = vec![Vec::new(); levels.len()];
     for (index, line) in lines.iter().enumerate() {
@@ -125,6 +132,9 @@ fn cascade(
     unfed.sort_unstable();
     CoronalEmission {
         photons_m3_per_s: photons,
+        direct_m3_per_s: direct,
+        feed_m3_per_s: feed,
+        decay_per_s: total,
         unfed,
     }
 }

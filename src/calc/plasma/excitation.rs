@@ -26,7 +26,11 @@ impl Target {
     /// are not known well enough to tell. (Exchange excites intercombination lines, and their f
     /// does not show it.)
     pub fn of_line(line: &Line) -> Option<Self> {
-        let (lower, upper) = (line.lower.as_ref()?, line.upper.as_ref()?);
+        Self::of_levels(line.lower.as_ref()?, line.upper.as_ref()?)
+    }
+
+    /// As [`Target::of_line`], from the two levels.
+    pub fn of_levels(lower: &Level, upper: &Level) -> Option<Self> {
         let terms = (term_of(lower)?, term_of(upper)?);
         match dipole_class((&terms.0, lower.j), (&terms.1, upper.j)) {
             // `None`: not LS terms; parity was checked below for those as well.
@@ -36,7 +40,7 @@ impl Target {
         if terms.0.parity()? == terms.1.parity()? {
             return None;
         }
-        if line.species.charge() == 0 {
+        if lower.species.charge() == 0 {
             return Some(Self::Neutral);
         }
         let shell = |level: &Level| {
@@ -50,6 +54,34 @@ impl Target {
             Self::Ion
         })
     }
+}
+
+/// Collision strength that stands for a transition which no electric dipole allows, where none is
+/// known: published ones of low levels lie between 0.01 and 10, those of neutral atoms at the
+/// lower end (D. E. Osterbrock & G. J. Ferland 2006, *Astrophysics of Gaseous Nebulae*, 2nd ed.,
+/// chapter 3; from memory). An order of magnitude: σ is [`UNKNOWN_STRENGTH_SIGMA_DEX`].
+pub const fn unknown_collision_strength(charge: u8) -> f64 {
+    if charge == 0 { 0.1 } else { 0.5 }
+}
+
+/// 1 σ of [`unknown_collision_strength`], decades.
+pub const UNKNOWN_STRENGTH_SIGMA_DEX: f64 = 1.0;
+
+/// Rate coefficient (m³/s) of excitation of a collision strength from a level or term of this
+/// weight: 8.629e-12 Ω e^(−ΔE/kT)/(g √T), T in K (Osterbrock & Ferland 2006, equation 3.20).
+///
+/// # Errors
+/// Weight or k T (cm⁻¹) not positive.
+pub fn excitation_by_strength(
+    energy_per_cm: f64,
+    collision_strength: f64,
+    lower_weight: f64,
+    kt_per_cm: f64,
+) -> Result<f64, PlasmaError> {
+    let kt = positive("k T in per cm", kt_per_cm)?;
+    let weight = positive("the weight of the lower level", lower_weight)?;
+    let kelvin = kt / vocabulary::light::constants::PER_CM_PER_KELVIN;
+    Ok(8.629e-12 * collision_strength * (-energy_per_cm / kt).exp() / (weight * kelvin.sqrt()))
 }
 
 fn term_of(level: &Level) -> Option<Term> {

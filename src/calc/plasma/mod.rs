@@ -23,7 +23,8 @@ pub use coronal::{CoronalEmission, CoronalLevel, CoronalLine, coronal_emission};
 pub use error::PlasmaError;
 pub use escape::{escape_probability, line_centre_optical_depth, self_absorption_factor};
 pub use excitation::{
-    Target, absorption_f, excitation_rate, excitation_uncertainty_factor, mean_gaunt,
+    Target, UNKNOWN_STRENGTH_SIGMA_DEX, absorption_f, excitation_by_strength, excitation_rate,
+    excitation_uncertainty_factor, mean_gaunt, unknown_collision_strength,
 };
 pub use ionisation::{
     CoreTransition, DEFAULT_LOTZ, HYDROGEN_LOTZ, Subshell, coronal_balance,

@@ -121,6 +121,14 @@ impl ResponseCurve {
         Ok(Self { points })
     }
 
+    /// The same form, offsets multiplied by a factor above zero; the area stays 1.
+    pub fn stretched(&self, factor: f64) -> Self {
+        let points = self.points.iter();
+        Self {
+            points: points.map(|&(x, y)| (x * factor, y / factor)).collect(),
+        }
+    }
+
     /// Response per nm at an offset, nm.
     pub fn density(&self, offset_nm: f64) -> f64 {
         let above = self.points.partition_point(|&(x, _)| x <= offset_nm);

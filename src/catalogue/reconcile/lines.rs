@@ -11,7 +11,7 @@ use super::{Apart, ApartReason, DerivedLevel, DerivedLine, LineReport, SourceRep
 type Pair = (usize, usize);
 
 /// Reports of one line: source and index.
-pub(super) type Reports = Vec<(usize, usize)>;
+type Reports = Vec<(usize, usize)>;
 
 /// Joins line reports by level pair, then those without levels by position.
 pub(super) fn join(
@@ -50,7 +50,7 @@ pub(super) fn join(
     lines
 }
 
-pub(super) fn sort(lines: &mut [DerivedLine]) {
+fn sort(lines: &mut [DerivedLine]) {
     lines.sort_by(|a, b| {
         (a.wavenumber_per_cm.total_cmp(&b.wavenumber_per_cm))
             .then(a.lower.cmp(&b.lower))
@@ -78,7 +78,7 @@ fn pair_of(line: &LineReport, level_of: &[Option<usize>]) -> Linked {
 }
 
 /// For each concluded level the measured level reports that joined it.
-pub(super) fn measured(
+fn measured(
     reports: &[SourceReports],
     level_of: &[Vec<Option<usize>>],
     levels: usize,
@@ -97,7 +97,7 @@ pub(super) fn measured(
 
 /// Ritz positions of a pair from each source that holds both levels, whether or not it lists the
 /// line.
-pub(super) fn ritz_of_pair<'a>(
+fn ritz_of_pair<'a>(
     reports: &'a [SourceReports],
     held: &'a [Reports],
     pair: Pair,
@@ -162,11 +162,11 @@ fn kind_of(reports: &[SourceReports], members: &Reports) -> LineKind {
 
 /// A position with its origin, before the best is chosen.
 #[derive(Clone, Copy)]
-pub(super) struct Position {
-    pub wavenumber_per_cm: f64,
-    pub uncertainty_per_cm: f64,
-    pub origin: PositionOrigin,
-    pub source: usize,
+struct Position {
+    wavenumber_per_cm: f64,
+    uncertainty_per_cm: f64,
+    origin: PositionOrigin,
+    source: usize,
 }
 
 /// The best of all observed positions and of the Ritz positions of each source's own levels.
@@ -190,7 +190,7 @@ fn best_position(
     best_of(reports, &positions).or_else(|| best_of(reports, &blended))
 }
 
-pub(super) fn best_of(reports: &[SourceReports], positions: &[Position]) -> Option<Position> {
+fn best_of(reports: &[SourceReports], positions: &[Position]) -> Option<Position> {
     let best = best_by_uncertainty(positions.iter().enumerate().map(|(i, p)| Candidate {
         computed: p.origin == PositionOrigin::Computed,
         kind: reports[p.source].source.kind,

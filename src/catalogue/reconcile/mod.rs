@@ -5,13 +5,12 @@
 //! a kind by the declared uncertainty of their level scale, then by key). Each level report joins
 //! a level that is there already or becomes one (`levels`); lines join by their pair of levels,
 //! or by position where a source has no levels (`lines`). Each quantity then comes from the best
-//! report for it (`choose`). Lines that follow from levels alone are added last (`ritz`).
+//! report for it (`choose`).
 
 mod choose;
 mod label;
 mod levels;
 mod lines;
-mod ritz;
 
 use std::sync::Arc;
 
@@ -207,18 +206,6 @@ pub fn rank(reports: &mut [SourceReports]) {
             .then(a.source.scale_at(1e5).total_cmp(&b.source.scale_at(1e5)))
             .then(a.source.key.cmp(&b.source.key))
     });
-}
-
-/// Changes whenever this rule changes, so that catalogues built before are brought up to date.
-pub const REVISION: &str = "rule 3";
-
-/// Concludes levels and lines of one species from all reports of it, with the lines that follow
-/// from levels alone.
-pub fn derive_with_ritz(species: Species, mut reports: Vec<SourceReports>) -> Derived {
-    rank(&mut reports);
-    let mut derived = derive(species, reports.clone());
-    ritz::add(species, &reports, &mut derived);
-    derived
 }
 
 /// Concludes levels and lines of one species from all reports of it.
