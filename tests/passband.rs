@@ -142,6 +142,96 @@ fn a_scan_states_each_temperature_and_agrees_with_a_question_of_its_own() {
 }
 
 #[test]
+fn a_scan_over_density_agrees_with_questions_of_their_own() {
+    let hydrogen = |ne: &str| {
+        json(&format!(
+            "lineclear passband --centre 656.2nm --fwhm 1nm --target \"H I 656.28nm\" \
+             --among H,C,He --model lte --te 1.2eV --ne {ne}"
+        ))
+    };
+    let scan = hydrogen("1e19..1e21m-3:3");
+    let points = scan["density_scan"].as_array().unwrap();
+    assert_eq!(points.len(), 3);
+    for (point, ne) in points.iter().zip(["1e19m-3", "1e20m-3", "1e21m-3"]) {
+        let (a, b) = (number(&point["purity"]), number(&hydrogen(ne)["purity"]));
+        // Stark widths are those of the middle density in a scan: 0.05 nm behind 1 nm.
+        assert!((a - b).abs() < 5e-3, "{ne}: {a} {b}");
+    }
+    // Where the mix is ionised more the purity of a neutral line is less.
+    assert!(number(&points[0]["purity"]) < number(&points[2]["purity"]));
+}
+
+#[test]
+fn a_file_of_the_mix_says_what_options_say() {
+    let file = json(&format!(
+        "{} --among He,C,O --mix tests/reference/emission/harrow_bay_mix.toml",
+        HELIUM.replace(" --te 2eV", "")
+    ));
+    let typed = json(&format!(
+        "{} --among He,C,O --model coronal --ne 1e18m-3 --gas-temperature 800K \
+         --mix He=1,C=0.01+-30%,O=0.005±0.002 --ion-fractions \"C I=0.1,C II=0.7±10%,C III=0.2\" \
+         --metastable \"He I 2s 3S=1e-5±50%\"",
+        HELIUM.replace("2eV", "5eV")
+    ));
+    for key in [
+        "purity",
+        "interference_fraction",
+        "interference_high",
+        "verdict_range",
+        "lines",
+    ] {
+        assert_eq!(file[key], typed[key], "{key}");
+    }
+    // What is typed wins over the file.
+    let hotter = json(&format!(
+        "{} --among He,C,O --mix tests/reference/emission/harrow_bay_mix.toml",
+        HELIUM.replace("2eV", "10eV")
+    ));
+    assert_eq!(hotter["conditions"]["electron_temperature_ev"], 10.0);
+    assert_ne!(file["purity"], hotter["purity"]);
+}
+
+#[test]
+fn properties_hold_in_every_model() {
+    let given = "--given tests/reference/emission/harrow_bay_fractions.csv";
+    for model in [
+        "visible".to_owned(),
+        "lte --ne 1e20m-3".to_owned(),
+        "coronal".to_owned(),
+        format!("given {given}"),
+    ] {
+        let ask = |among: &str, mix: &str| {
+            json(&format!(
+                "{HELIUM} --model {model} --among {among} --mix {mix}"
+            ))
+        };
+        let one = ask("He,C", "C=0.3,He=1");
+        let other = ask("C,He", "He=1,C=0.3");
+        for key in ["purity", "interference_fraction", "interference_high"] {
+            // Sums in another order differ by rounding.
+            let (a, b) = (number(&one[key]), number(&other[key]));
+            assert!((a - b).abs() <= 1e-12 * a.abs(), "{model} {key}: {a} {b}");
+        }
+        assert_eq!(one["verdict_range"], other["verdict_range"], "{model}");
+        assert!((fractions(&one) - 1.0).abs() < 1e-6, "{model}");
+        let (none, absent) = (ask("He,C", "C=0,He=1"), ask("He", "He=1"));
+        for key in [
+            "purity",
+            "interference_fraction",
+            "verdict_range",
+            "unrated",
+        ] {
+            assert_eq!(none[key], absent[key], "{model} {key}");
+        }
+        let purity = |amount: f64| number(&ask("He,C", &format!("C={amount},He=1"))["purity"]);
+        assert!(
+            purity(0.1) >= purity(1.0) && purity(1.0) >= purity(30.0),
+            "{model}"
+        );
+    }
+}
+
+#[test]
 fn the_best_filter_is_on_the_list_and_none_listed_beats_it() {
     let answer = json(
         "lineclear passband choose --target \"He I 667.8nm\" --among C,O,Fe --te 3eV \

@@ -74,6 +74,11 @@ fn every_json_key_is_documented() {
         "lineclear window 588..589.7nm --of Na,He",
         "lineclear vet \"Al I 308.215nm\" --among V --fwhm 0.02nm",
         "lineclear passband --centre 667.9nm --fwhm 2nm --among He,Fe",
+        "lineclear passband --centre 667.9nm --fwhm 1nm --target \"He I 667.8nm\" --among He,C,O \
+         --mix tests/reference/emission/harrow_bay_mix.toml",
+        "lineclear passband --centre 656.2nm --fwhm 1nm --among H --model lte --ne 1e19..1e21m-3:2",
+        "lineclear vet \"He I 667.8nm\" --among C,Fe --te 1..2eV:2 --gas Ar=1bar --model given \
+         --given tests/reference/emission/harrow_bay_intensities.csv",
         "lineclear passband choose --target \"He I 667.8nm\" --among Fe",
         "lineclear predict \"Rb I\" --series nS1/2 --n 5..8 --to \"5p 3/2\"",
         "lineclear predict \"H I\" --series Balmer --n 3..5",

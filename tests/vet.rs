@@ -101,6 +101,72 @@ fn published_overlaps_are_found_with_the_right_interferer() {
 }
 
 #[test]
+fn where_a_published_interferer_is_not_held_nobody_claims_the_list_to_be_complete() {
+    let mut told = 0;
+    for [target, target_nm, interferer, interferer_nm] in pairs() {
+        let command =
+            format!("lineclear vet {target}@{target_nm}nm --among {interferer} --fwhm 0.03nm");
+        let run = run(&format!("{command} --as json"));
+        if run.exit != 0 {
+            // The target is not held: the nearest lines are offered.
+            assert!(run.stderr.contains("the nearest are"), "{}", run.stderr);
+            continue;
+        }
+        let answer: serde_json::Value = serde_json::from_str(&run.stdout).unwrap();
+        let wanted: f64 = interferer_nm.parse().unwrap();
+        let there =
+            |i: &serde_json::Value| (i["wavelength_nm"].as_f64().unwrap() - wanted).abs() < 0.015;
+        if answer["interferers"].as_array().unwrap().iter().any(there) {
+            continue;
+        }
+        told += 1;
+        let chance = answer["unlisted_chance"].as_f64().unwrap();
+        assert!(
+            answer["verdict"] == "unrated" || chance > 0.0,
+            "{command}: {} as if all were known",
+            answer["verdict"]
+        );
+    }
+    assert!(told >= 3, "only {told} pairs without the interferer");
+}
+
+#[test]
+fn a_scan_agrees_with_questions_of_their_own() {
+    let vet = |conditions: &str| {
+        json(&format!(
+            "lineclear vet \"He I 667.8nm\" --among C,O,Fe --fwhm 0.2nm --model lte {conditions}"
+        ))
+    };
+    let by_te = vet("--te 1..4eV:3 --ne 1e21m-3");
+    let by_ne = vet("--te 2eV --ne 1e20..1e22m-3:3");
+    let alone = [
+        (&by_te["scan"][0], "--te 1eV --ne 1e21m-3"),
+        (&by_te["scan"][1], "--te 2eV --ne 1e21m-3"),
+        (&by_te["scan"][2], "--te 4eV --ne 1e21m-3"),
+        (&by_ne["density_scan"][0], "--te 2eV --ne 1e20m-3"),
+        (&by_ne["density_scan"][2], "--te 2eV --ne 1e22m-3"),
+    ];
+    for (point, conditions) in alone {
+        let one = vet(conditions)["interference_fraction"].as_f64().unwrap();
+        let scanned = point["interference_fraction"].as_f64().unwrap();
+        // Lines farther than the scan follows them (30 instrument widths) reach 1e-6.
+        assert!(
+            (scanned - one).abs() <= 1e-6 + 1e-6 * one,
+            "{conditions}: {scanned} {one}"
+        );
+    }
+}
+
+#[test]
+fn a_line_in_air_is_vetted_although_others_lie_in_the_far_ultraviolet() {
+    // Lines of the same species below 185 nm, where the index of air ends, lie within 100 nm.
+    let air = json("lineclear vet Cd@228.802nm --among As --fwhm 0.03nm --medium air");
+    let auto = json("lineclear vet Cd@228.802nm --among As --fwhm 0.03nm");
+    assert_eq!(air["interference_fraction"], auto["interference_fraction"]);
+    assert_eq!(air["target"]["medium"], "air");
+}
+
+#[test]
 fn require_clear_ends_with_status_3_where_it_does_not_hold() {
     let blended = "lineclear vet As@228.812nm --among Cd --fwhm 0.03nm --require";
     assert_eq!(run(&format!("{blended} clear")).exit, 3);
@@ -200,6 +266,8 @@ fn ask(spectra: &[Spectrum], nm: f64) -> Answer {
         },
         not_held: Vec::new(),
         column_per_m2: None,
+        scan_kt_per_cm: Vec::new(),
+        scan_density_per_m3: Vec::new(),
     };
     answer(&question, spectra, &[]).unwrap()
 }

@@ -6,7 +6,7 @@ use vocabulary::light::{Air, Medium};
 use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
 use super::emission::{Emitter, shared_sigma};
 use super::error::AdviseError;
-use super::position::placed;
+use super::position::placed_or_vacuum;
 use super::scene::Scene;
 use super::spectrum::Spectrum;
 use super::unrated::Unrated;
@@ -115,7 +115,7 @@ impl<'a, 's> Judge<'a, 's> {
         out.worst_placed = out
             .worst
             .as_ref()
-            .map(|w| placed(1e7 / w.vacuum_nm, 0.0, medium, air))
+            .map(|w| placed_or_vacuum(1e7 / w.vacuum_nm, 0.0, medium, air))
             .transpose()?;
         Ok(out)
     }
@@ -160,7 +160,7 @@ impl<'a, 's> Judge<'a, 's> {
         let (rate_per_s, rate_relative_uncertainty) = self.mean_rate(index);
         Ok(WindowFeature {
             species: self.scene.spectra[feature.spectrum].species,
-            placed: placed(1e7 / feature.nm, sigma, medium, air)?,
+            placed: placed_or_vacuum(1e7 / feature.nm, sigma, medium, air)?,
             components: Vec::new(),
             rate_per_s,
             rate_relative_uncertainty,

@@ -9,7 +9,7 @@ use super::emission::{Conditions, emitters};
 use super::error::AdviseError;
 use super::judge::{Judge, Sum};
 use super::physics::Physics;
-use super::position::{Placed, placed};
+use super::position::{Placed, placed, placed_or_vacuum};
 use super::scan::{self, DensityPoint, TemperaturePoint, TiltPoint};
 use super::scene::Scene;
 use super::spectrum::Spectrum;
@@ -343,7 +343,7 @@ fn lines(
             emission.line.wavenumber_uncertainty_per_cm,
         );
         out.push(PassbandLine {
-            placed: placed(at, sigma, medium, Air::standard())?,
+            placed: placed_or_vacuum(at, sigma, medium, Air::standard())?,
             line: emission.line.clone(),
             transmission: passed.transmission,
             light_fraction: passed.light.filter(|_| all > 0.0).map(|l| l / all),
@@ -404,7 +404,7 @@ fn judged(
         Some(_) => {}
     }
     Ok(Target {
-        placed: placed(at, sigma, question.medium, air)?,
+        placed: placed_or_vacuum(at, sigma, question.medium, air)?,
         line: line.clone(),
         transmission: passed[main].transmission.unwrap_or(0.0),
         purity: (all > 0.0 && shares.target > 0.0).then(|| shares.target / all),

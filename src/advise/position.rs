@@ -45,3 +45,19 @@ pub fn placed(
         extrapolated,
     })
 }
+
+/// As [`placed`], in vacuum where the index of air is not known.
+///
+/// # Errors
+/// None that [`placed`] has for vacuum.
+pub(super) fn placed_or_vacuum(
+    wavenumber_per_cm: f64,
+    uncertainty_per_cm: f64,
+    medium: Medium,
+    air: &Air,
+) -> Result<Placed, QuantityError> {
+    placed(wavenumber_per_cm, uncertainty_per_cm, medium, air).or_else(|_| {
+        let vacuum = Medium::Vacuum;
+        placed(wavenumber_per_cm, uncertainty_per_cm, vacuum, air)
+    })
+}

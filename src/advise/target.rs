@@ -4,7 +4,7 @@ use vocabulary::atom::{Species, SpeciesRequest};
 use vocabulary::light::{Air, Medium};
 
 use super::error::AdviseError;
-use super::position::placed;
+use super::position::placed_or_vacuum;
 use super::scene::Scene;
 
 /// How far from the typed position a line may lie, nm, where the instrument is narrower.
@@ -88,7 +88,7 @@ fn nearest(
     });
     let mut words: Vec<String> = Vec::new();
     for (nm, species) in all {
-        let at = placed(1e7 / nm, 0.0, medium, air)?;
+        let at = placed_or_vacuum(1e7 / nm, 0.0, medium, air)?;
         let word = format!("{species} {:.3} nm ({})", at.wavelength_nm, at.medium);
         if !words.contains(&word) {
             words.push(word);

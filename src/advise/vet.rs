@@ -8,8 +8,8 @@ use super::emission::Conditions;
 use super::error::AdviseError;
 use super::judge::{Judge, Sum};
 use super::physics::Physics;
-use super::position::{Placed, placed};
-use super::pressure::Pressure;
+use super::position::{Placed, placed, placed_or_vacuum};
+use super::pressure::{Pressure, pressure_reach_nm};
 use super::resolving::clear_at_resolving_power;
 use super::scene::{REACH_WIDTHS, Scene, seen};
 use super::spectrum::Spectrum;
@@ -22,6 +22,8 @@ use crate::calc::plasma::{absorption_f, line_centre_optical_depth, self_absorpti
 pub const ALTERNATIVES_NM: f64 = 100.0;
 /// Lines this many instrument widths away still count as near.
 const NEAR_WIDTHS: f64 = 5.0;
+/// Lines of a scan are taken from so many times as far as profiles are followed.
+const SCAN_WIDTHS: f64 = 1.5;
 /// How many alternatives are named.
 const ALTERNATIVES: usize = 5;
 /// How many of the brightest lines of the species are judged as alternatives.
@@ -42,6 +44,21 @@ pub struct Question {
     pub not_held: Vec<String>,
     /// Atoms of the target's species along the line of sight, m⁻².
     pub column_per_m2: Option<f64>,
+    /// k T of the electrons to scan, cm⁻¹.
+    pub scan_kt_per_cm: Vec<f64>,
+    /// Electron densities to scan, m⁻³.
+    pub scan_density_per_m3: Vec<f64>,
+}
+
+/// What the interference of the rated lines in first order is under other conditions.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct ScanPoint {
+    /// k T of the electrons, cm⁻¹.
+    pub kt_per_cm: f64,
+    /// Electron density, m⁻³.
+    pub electron_density_per_m3: Option<f64>,
+    /// Light of other species over that of the target; `None` where the target has none.
+    pub fraction: Option<f64>,
 }
 
 /// What a grating sends to the target's place in a higher order: lines around λ/order.
@@ -129,6 +146,10 @@ pub struct Answer {
     pub physics: Physics,
     /// What pressure does to the line.
     pub pressure: Pressure,
+    /// Interference by electron temperature.
+    pub scan: Vec<ScanPoint>,
+    /// Interference by electron density.
+    pub density_scan: Vec<ScanPoint>,
 }
 
 /// Answers the question from what is held of each species: lines from at least
@@ -175,6 +196,8 @@ pub fn answer(
         lower_bounds: lower_bounds(&scene, index, &interferers),
         physics: physics(&scene, index, question),
         pressure: emission.pressure,
+        scan: scan(question, spectra, temperatures(question))?,
+        density_scan: scan(question, spectra, densities(question))?,
         feature,
         interference,
         verdict,
@@ -184,9 +207,64 @@ pub fn answer(
     })
 }
 
+fn temperatures(question: &Question) -> impl Iterator<Item = Conditions> + '_ {
+    question.scan_kt_per_cm.iter().map(|&kt_per_cm| Conditions {
+        kt_per_cm,
+        ..question.conditions.clone()
+    })
+}
+
+fn densities(question: &Question) -> impl Iterator<Item = Conditions> + '_ {
+    let densities = question.scan_density_per_m3.iter();
+    densities.map(|&density| Conditions {
+        electron_density_per_m3: Some(density),
+        ..question.conditions.clone()
+    })
+}
+
+/// The interference under each of these conditions, widths included.
+fn scan(
+    question: &Question,
+    spectra: &[Spectrum],
+    all: impl Iterator<Item = Conditions>,
+) -> Result<Vec<ScanPoint>, AdviseError> {
+    let wanted = &question.wanted;
+    let width_nm = question.width.at_nm(wanted.vacuum_nm);
+    let air = Air::standard();
+    let mut near: Option<Vec<Spectrum>> = None;
+    let mut out = Vec::new();
+    for conditions in all {
+        let near = near.get_or_insert_with(|| {
+            let reach_nm = SCAN_WIDTHS * REACH_WIDTHS * width_nm + pressure_reach_nm(&conditions);
+            let counts =
+                |l: &&Line| (1e7 / l.wavenumber_per_cm - wanted.vacuum_nm).abs() <= reach_nm;
+            let cut = |s: &Spectrum| Spectrum {
+                lines: s.lines.iter().filter(counts).cloned().collect(),
+                ..s.clone()
+            };
+            spectra.iter().map(cut).collect()
+        });
+        let scene = Scene::new(near, &conditions, question.width)?;
+        let tolerance_nm = width_nm.max(LEAST_TOLERANCE_NM);
+        let index = find(&scene, wanted, tolerance_nm, question.medium, air)?;
+        let signal = scene.features[index].signal.filter(|s| *s > 0.0);
+        let judge = Judge::new(&scene, scene.features[index].nm, false);
+        let others = |signal: f64| -> f64 {
+            let parts = judge.parts(index, signal).into_iter();
+            parts.filter(|p| !p.own).map(|p| p.fraction).sum()
+        };
+        out.push(ScanPoint {
+            kt_per_cm: conditions.kt_per_cm,
+            electron_density_per_m3: conditions.electron_density_per_m3,
+            fraction: signal.map(others),
+        });
+    }
+    Ok(out)
+}
+
 fn place(line: &Line, medium: Medium, air: &Air) -> Result<Placed, AdviseError> {
     let (position, sigma) = (line.wavenumber_per_cm, line.wavenumber_uncertainty_per_cm);
-    Ok(placed(position, sigma, medium, air)?)
+    Ok(placed_or_vacuum(position, sigma, medium, air)?)
 }
 
 fn total(

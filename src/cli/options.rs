@@ -111,22 +111,30 @@ pub struct Checked {
     pub amounts: Vec<(SpeciesRequest, f64)>,
     /// What was assumed, one phrase each.
     pub assumed: Vec<String>,
+    /// Temperatures to scan, where a range was given.
+    pub te_scan: Vec<Temperature>,
+    /// Electron densities to scan, m⁻³, where a range was given.
+    pub ne_scan: Vec<f64>,
 }
 
 impl ConditionOptions {
-    /// Resolves what was typed; `range` is where a resolving power becomes a width.
+    /// Resolves what was typed; `range` is where a resolving power becomes a width. Ranges to be
+    /// scanned are refused.
     pub fn check(&self, range: &SpectralRange) -> Result<Checked, CliError> {
+        let checked = self.check_scans(range)?;
+        let problem = if !checked.te_scan.is_empty() {
+            "--te takes one temperature here, such as 1eV; `vet` and `passband` scan a range"
+        } else if !checked.ne_scan.is_empty() {
+            "--ne takes one density here, such as 1e20m-3; `vet` and `passband` scan a range"
+        } else {
+            return Ok(checked);
+        };
+        Err(CliError::Options(problem))
+    }
+
+    /// As [`ConditionOptions::check`], ranges to be scanned included.
+    pub fn check_scans(&self, range: &SpectralRange) -> Result<Checked, CliError> {
         let mut source = self.source.check()?;
-        if !source.te_scan.is_empty() {
-            return Err(CliError::Options(
-                "--te takes one temperature here, such as 1eV; `passband` scans a range",
-            ));
-        }
-        if !source.ne_scan.is_empty() {
-            return Err(CliError::Options(
-                "--ne takes one density here, such as 1e20m-3; `passband` scans a range",
-            ));
-        }
         let form = instrument::form(self.instrument.as_deref())?;
         source.conditions.details.instrument = form;
         let curve = match &source.conditions.details.instrument {
@@ -143,8 +151,8 @@ impl ConditionOptions {
             (Some(power), ..) => resolving(power, range)?,
             (None, Some(width), _) => width.parse()?,
             (None, None, None) => {
-                let before = usize::from(source.amounts.is_empty());
-                let at = source.assumed.len() - before;
+                let last = source.assumed.last().is_some_and(|a| a == "equal amounts");
+                let at = source.assumed.len() - usize::from(last);
                 let assumed = "instrument width (FWHM) 0.1nm".to_owned();
                 source.assumed.insert(at, assumed);
                 SpectralWidth::from_nm(0.1)
@@ -157,6 +165,8 @@ impl ConditionOptions {
             width,
             amounts: source.amounts,
             assumed: source.assumed,
+            te_scan: source.te_scan,
+            ne_scan: source.ne_scan,
         })
     }
 }

@@ -212,7 +212,7 @@ fn scanned(source: &CheckedSource) -> impl Iterator<Item = Temperature> + '_ {
     source.te_scan.iter().copied().chain(default)
 }
 
-fn kt_per_cm(te: Temperature) -> f64 {
+pub(super) fn kt_per_cm(te: Temperature) -> f64 {
     te.kelvin() * vocabulary::light::constants::PER_CM_PER_KELVIN
 }
 

@@ -9,6 +9,7 @@ use super::line::{around, wanted};
 use super::options::{
     CatalogueOptions, Checked, ConditionOptions, OutputOptions, Required, column_density, medium,
 };
+use super::passband::kt_per_cm;
 use super::window::species;
 use super::{CliError, Exit, Outcome, assemble, describe};
 use crate::advise::vet::{self, ALTERNATIVES_NM, Answer, Order, Question};
@@ -27,7 +28,8 @@ use crate::show;
     after_help = "Examples:\n  lineclear vet \"He I 667.8nm\" --among C,O,Fe,Cu --fwhm 0.05nm\n  \
     lineclear vet \"Cd II@226.502nm\" --among Fe,Ni,Ti --resolving 20000 --require clear\n  \
     lineclear vet \"Na I@589nm\" --among He --column-density 1e16m-2\n  \
-    lineclear vet 656.28nm --among H,He,Fe --orders 2 --as json\n\n\
+    lineclear vet 656.28nm --among H,He,Fe --orders 2 --as json\n  \
+    lineclear vet \"He I 667.8nm\" --among C,Fe --te 0.5..5eV:9 --mix \"Fe=0.01±30%\"\n\n\
     Hollow-cathode lamps and discharges bring high voltage and ultraviolet light: follow the safety\n\
     rules of the site."
 )]
@@ -67,7 +69,7 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
         .map(column_density)
         .transpose()?;
     let centre = around(wanted.vacuum_nm)?;
-    let checked = arguments.conditions.check(&centre)?;
+    let checked = arguments.conditions.check_scans(&centre)?;
     let catalogue = context.open()?;
     let width_nm = checked.width.at_nm(wanted.vacuum_nm);
     let reach_nm = (REACH_WIDTHS * width_nm).max(pressure_reach_nm(&checked.conditions));
@@ -82,6 +84,8 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
         conditions: checked.conditions.clone(),
         not_held: held.not_held,
         column_per_m2,
+        scan_kt_per_cm: checked.te_scan.iter().map(|te| kt_per_cm(*te)).collect(),
+        scan_density_per_m3: checked.ne_scan.clone(),
     };
     let answer = vet::answer(&question, &held.spectra, &orders)?;
     let exit = match arguments.require {

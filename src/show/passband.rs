@@ -265,7 +265,7 @@ fn temperature_words(scan: &[TemperaturePoint]) -> Option<String> {
 }
 
 /// A temperature with three digits.
-fn temperature(ev: f64) -> String {
+pub(super) fn temperature(ev: f64) -> String {
     let digits = format!("{ev:.2e}");
     format!("{} eV", digits.parse::<f64>().unwrap_or(ev))
 }
@@ -302,7 +302,7 @@ fn tilt_words(tilts: &[TiltPoint]) -> Option<String> {
 }
 
 /// At most six entries, first and last among them.
-fn thinned<T: Copy>(all: Vec<T>) -> Vec<T> {
+pub(super) fn thinned<T: Copy>(all: Vec<T>) -> Vec<T> {
     const MOST: usize = 6;
     if all.len() <= MOST {
         return all;
@@ -426,6 +426,6 @@ fn tilt_value(point: &TiltPoint) -> Value {
 }
 
 /// What the rated lines alone say.
-fn word(fraction: Option<f64>) -> &'static str {
+pub(super) fn word(fraction: Option<f64>) -> &'static str {
     fraction.map_or(Verdict::Unrated, Verdict::of).word()
 }

@@ -1,14 +1,16 @@
 //! The answer of `vet`.
 
 use serde_json::{Map, Value, json};
+use vocabulary::light::constants::PER_CM_PER_EV;
 
 use super::line::{line_object, position_cell, rate_cell, transition_cell};
 use super::number::{percent, percent_in_table, short};
+use super::passband::{temperature, thinned, word};
 use super::physics::physics_notes;
 use super::prior::prior_note;
 use super::sheet::{Align, Column, Context, Sheet};
 use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
-use crate::advise::vet::{ALTERNATIVES_NM, Alternative, Answer, Interferer, Question};
+use crate::advise::vet::{ALTERNATIVES_NM, Alternative, Answer, Interferer, Question, ScanPoint};
 use crate::advise::{Placed, Verdict};
 
 /// Below this part of the target's light an interferer is not worth a row; JSON holds down to a
@@ -194,6 +196,7 @@ fn notes(answer: &Answer, context: &Context, worthy: usize) -> Vec<String> {
         std::slice::from_ref(&answer.feature),
         answer.physics.model,
     ));
+    notes.extend(scan_notes(answer));
     notes.extend(unjudged_notes(&answer.unrated));
     notes.extend(self_absorption_note(answer));
     if answer.interferers.iter().any(|i| i.order > 1) {
@@ -219,6 +222,40 @@ fn notes(answer: &Answer, context: &Context, worthy: usize) -> Vec<String> {
     }
     notes.extend(context.source_notes());
     notes
+}
+
+/// The interference by temperature and by density.
+fn scan_notes(answer: &Answer) -> Vec<String> {
+    let written = |points: &[ScanPoint], at: &dyn Fn(&ScanPoint) -> Option<String>| -> String {
+        let known: Vec<&ScanPoint> = points.iter().filter(|p| p.fraction.is_some()).collect();
+        let words: Vec<String> = thinned(known)
+            .iter()
+            .filter_map(|p| Some(format!("{} at {}", percent(p.fraction?), at(p)?)))
+            .collect();
+        words.join(", ")
+    };
+    let ev = |p: &ScanPoint| Some(temperature(p.kt_per_cm / PER_CM_PER_EV));
+    let density = |p: &ScanPoint| Some(format!("{:.1e} m⁻³", p.electron_density_per_m3?));
+    let scans = [
+        ("temperature", written(&answer.scan, &ev)),
+        ("density", written(&answer.density_scan, &density)),
+    ];
+    scans
+        .into_iter()
+        .filter(|(_, words)| !words.is_empty())
+        .map(|(what, words)| {
+            format!("Light of the rated lines of other species by electron {what}: {words}.")
+        })
+        .collect()
+}
+
+fn scan_value(point: &ScanPoint) -> Value {
+    json!({
+        "electron_temperature_ev": point.kt_per_cm / PER_CM_PER_EV,
+        "electron_density_per_m3": point.electron_density_per_m3,
+        "interference_fraction": point.fraction,
+        "verdict": word(point.fraction),
+    })
 }
 
 fn self_absorption_note(answer: &Answer) -> Option<String> {
@@ -288,6 +325,11 @@ fn object(answer: &Answer, context: Context, notes: &[String]) -> Map<String, Va
             "optical_depth": absorbed.depth_and_left.map(|d| d.0),
             "light_fraction_left": absorbed.depth_and_left.map(|d| d.1),
         }),
+    );
+    put("scan", answer.scan.iter().map(scan_value).collect());
+    put(
+        "density_scan",
+        answer.density_scan.iter().map(scan_value).collect(),
     );
     let pressure = answer.pressure;
     put("stark_fwhm_nm", json!(pressure.stark.map(|w| w.fwhm_nm)));

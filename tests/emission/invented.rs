@@ -123,6 +123,8 @@ pub fn vet(
         conditions,
         not_held: Vec::new(),
         column_per_m2: None,
+        scan_kt_per_cm: Vec::new(),
+        scan_density_per_m3: Vec::new(),
     };
     answer(&question, spectra, &[]).unwrap()
 }
