@@ -1,14 +1,14 @@
 //! Judging features: what others put where a feature is, and what nobody can know.
 
 use vocabulary::atom::Species;
-use vocabulary::light::{Air, Medium};
+use vocabulary::light::{Air, Medium, PositionMedium};
 
 use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
-use super::emission::{Emitter, shared_sigma};
 use super::error::AdviseError;
 use super::position::placed_or_vacuum;
 use super::scene::Scene;
 use super::spectrum::Spectrum;
+use super::sum::Sum;
 use super::unrated::Unrated;
 use super::verdict::{Interference, VerdictRange, Worst};
 use super::window::{Unjudged, WindowFeature};
@@ -73,7 +73,8 @@ impl<'a, 's> Judge<'a, 's> {
             .collect()
     }
 
-    pub(super) fn unjudged(&self, not_held: &[String]) -> Vec<Unjudged> {
+    /// Species that cannot be judged; that of the target, where there is one, need not be.
+    pub(super) fn unjudged(&self, not_held: &[String], target: Option<usize>) -> Vec<Unjudged> {
         let mut out: Vec<Unjudged> = not_held
             .iter()
             .map(|typed| Unjudged {
@@ -86,7 +87,7 @@ impl<'a, 's> Judge<'a, 's> {
             let Coverage::Nothing { ground_term } = *coverage else {
                 continue;
             };
-            if self.scene.emitters[index].is_absent {
+            if self.scene.emitters[index].is_absent || Some(index) == target {
                 continue;
             }
             let reason = if ground_term {
@@ -322,11 +323,8 @@ impl<'a, 's> Judge<'a, 's> {
         if unrated.decides() {
             out.verdict = VerdictRange::UNRATED;
         }
-        let name = |index: usize| {
-            let emission = &self.scene.emissions[index];
-            let species = self.scene.spectra[emission.spectrum].species;
-            format!("{species} {:.3} nm", emission.nm)
-        };
+        let medium = out.placed.medium;
+        let name = |index: usize| self.name(index, medium);
         let (unfed, rateless): (Vec<usize>, Vec<usize>) =
             unrated.unbounded.iter().partition(|&&i| {
                 let emission = &self.scene.emissions[i];
@@ -341,24 +339,37 @@ impl<'a, 's> Judge<'a, 's> {
         };
         if !rateless.is_empty() {
             out.remarks
-                .push(format!("no rate is known for {} (vacuum)", names(rateless)));
+                .push(format!("no rate is known for {}", names(rateless)));
         }
         if !unfed.is_empty() {
-            out.remarks.push(format!(
-                "nothing in the model excites {} (vacuum)",
-                names(unfed)
-            ));
+            out.remarks
+                .push(format!("nothing in the model excites {}", names(unfed)));
         }
         if let (Some(chance), Some(&(first, ..))) = (unrated.chance, unrated.bounded.first())
             && chance >= CHANCE_NAMED
         {
             out.remarks.push(format!(
-                "{:.0} % chance ({}) that {} change the verdict, first {} (vacuum)",
+                "{:.0} % chance ({}) that {} change the verdict, first {}",
                 100.0 * chance,
                 self.prior_words(first).0,
                 self.prior_words(first).1,
                 name(first)
             ));
+        }
+    }
+
+    /// A line in words: its wavelength in the medium of the target, or with its own named.
+    fn name(&self, index: usize, medium: PositionMedium) -> String {
+        let emission = &self.scene.emissions[index];
+        let species = self.scene.spectra[emission.spectrum].species;
+        let wavenumber = 1e7 / emission.nm;
+        let own = match medium {
+            PositionMedium::Air => Medium::Air,
+            PositionMedium::Vacuum => Medium::Vacuum,
+        };
+        match placed_or_vacuum(wavenumber, 0.0, own, Air::standard()) {
+            Ok(at) if at.medium == medium => format!("{species} {:.3} nm", at.wavelength_nm),
+            _ => format!("{species} {:.3} nm (vacuum)", emission.nm),
         }
     }
 
@@ -448,51 +459,4 @@ pub(super) struct Part {
     pub relative_sigma: f64,
     /// It is of the species of the feature.
     pub own: bool,
-}
-
-/// Interference in the making.
-#[derive(Default)]
-pub(super) struct Sum {
-    /// Fraction of other species.
-    pub other: f64,
-    variance: f64,
-    /// Fraction of other features of the same species.
-    pub own: f64,
-    /// Fraction of each spectrum.
-    by_spectrum: std::collections::BTreeMap<usize, f64>,
-}
-
-impl Sum {
-    /// Adds a line of a spectrum (an index into the scene's) with the relative 1 σ of its own.
-    pub(super) fn add(&mut self, spectrum: usize, part: f64, relative_uncertainty: f64) {
-        self.other += part;
-        self.variance += (part * relative_uncertainty).powi(2);
-        *self.by_spectrum.entry(spectrum).or_default() += part;
-    }
-
-    /// The interference over a target of a spectrum whose signal has a relative 1 σ of its own:
-    /// lines count as independent, what a whole species shares (amount, ionisation) does not.
-    pub(super) fn interference(
-        &self,
-        scene: &Scene<'_>,
-        target: usize,
-        target_sigma: f64,
-    ) -> Interference {
-        if self.other <= 0.0 {
-            return Interference::new(0.0, 0.0);
-        }
-        let parts: Vec<(&Emitter, f64)> = self
-            .by_spectrum
-            .iter()
-            .map(|(&s, part)| (&scene.emitters[s], part / self.other))
-            .collect();
-        let shared = shared_sigma(&parts, &scene.emitters[target]);
-        let own = self.variance.sqrt() / self.other;
-        // Variances of logarithms add.
-        let all = [own, target_sigma, shared]
-            .map(|s| s * s)
-            .iter()
-            .fold(1.0, |a, v| a * (1.0 + v));
-        Interference::new(self.other, (all - 1.0).sqrt())
-    }
 }

@@ -24,6 +24,7 @@ mod resolving;
 pub mod scan;
 mod scene;
 mod spectrum;
+mod sum;
 mod target;
 pub mod tune;
 mod unrated;

@@ -7,12 +7,13 @@ use vocabulary::spectrum::Line;
 use super::background::{Background, background};
 use super::emission::{Conditions, emitters};
 use super::error::AdviseError;
-use super::judge::{Judge, Sum};
+use super::judge::Judge;
 use super::physics::Physics;
 use super::position::{Placed, placed, placed_or_vacuum};
 use super::scan::{self, DensityPoint, TemperaturePoint, TiltPoint};
 use super::scene::Scene;
 use super::spectrum::Spectrum;
+use super::sum::Sum;
 use super::target::{Wanted, find, strongest};
 use super::unrated::Unrated;
 use super::verdict::{Interference, Verdict, VerdictRange};
@@ -69,6 +70,9 @@ pub struct PassbandLine {
     pub light_fraction: Option<f64>,
     /// It belongs to the target.
     pub is_target: bool,
+    /// Lines of one number are components of one feature: a multiplet whose components lie closer
+    /// together than the filter is wide.
+    pub feature: usize,
 }
 
 /// The line that the filter is for.
@@ -157,8 +161,10 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
             Some(t) => scan::tilts(&view, t, question)?,
             None => Vec::new(),
         },
-        unrated: Judge::new(&scene, seen.centre_nm(), !question.not_held.is_empty())
-            .unjudged(&question.not_held),
+        unrated: Judge::new(&scene, seen.centre_nm(), !question.not_held.is_empty()).unjudged(
+            &question.not_held,
+            target.map(|t| scene.features[t].spectrum),
+        ),
         lower_bounds: lower_bounds(&view, &passed, all),
         physics: Physics::of(
             &scene,
@@ -348,6 +354,7 @@ fn lines(
             transmission: passed.transmission,
             light_fraction: passed.light.filter(|_| all > 0.0).map(|l| l / all),
             is_target: Some(emission.feature) == target,
+            feature: emission.feature,
         });
     }
     out.sort_by(|a, b| {

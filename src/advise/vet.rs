@@ -6,13 +6,14 @@ use vocabulary::spectrum::Line;
 
 use super::emission::Conditions;
 use super::error::AdviseError;
-use super::judge::{Judge, Sum};
+use super::judge::Judge;
 use super::physics::Physics;
 use super::position::{Placed, placed, placed_or_vacuum};
 use super::pressure::{Pressure, pressure_reach_nm};
 use super::resolving::clear_at_resolving_power;
 use super::scene::{REACH_WIDTHS, Scene, seen};
 use super::spectrum::Spectrum;
+use super::sum::Sum;
 use super::target::{LEAST_TOLERANCE_NM, Wanted, find, strongest};
 use super::verdict::{Interference, Verdict, VerdictRange};
 use super::window::{Unjudged, WindowFeature};
@@ -192,7 +193,7 @@ pub fn answer(
         components: scene.features[index].components.len(),
         clear_at_resolving_power: clear_at_resolving_power(&scene, index)?,
         self_absorption: self_absorption(&scene, index, question.column_per_m2)?,
-        unrated: judge.unjudged(&question.not_held),
+        unrated: judge.unjudged(&question.not_held, Some(scene.features[index].spectrum)),
         lower_bounds: lower_bounds(&scene, index, &interferers),
         physics: physics(&scene, index, question),
         pressure: emission.pressure,

@@ -155,7 +155,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         features.push(feature);
     }
     in_order(&mut features, &mut lines);
-    let unrated = judge.unjudged(&question.not_held);
+    let unrated = judge.unjudged(&question.not_held, None);
     let components = chosen.iter().flat_map(|&f| &scene.features[f].components);
     let physics = Physics::of(&scene, question.conditions.model, components.copied());
     let emits = |s: usize| chosen.iter().any(|&f| scene.features[f].spectrum == s);

@@ -1,8 +1,10 @@
 //! The answer of `passband`.
 
+use std::collections::HashMap;
+
 use serde_json::{Map, Value, json};
 
-use super::line::{line_object, position_cell, transition_cell};
+use super::line::{line_object, multiplet_cell, position_cell, transition_cell};
 use super::number::{percent, percent_in_table, purity};
 use super::physics::filter_notes;
 use super::sheet::{Align, Column, Context, Sheet};
@@ -27,20 +29,66 @@ const COLUMNS: [Column; 7] = [
 
 /// Builds the sheet of a passband.
 pub fn passband(answer: &Answer, question: &Question, context: Context) -> Sheet {
-    let worthy: Vec<&PassbandLine> = answer.lines.iter().filter(|l| is_worthy(l)).collect();
+    let groups = groups(answer);
+    let worthy: Vec<&Group<'_>> = groups.iter().filter(|g| g.is_worthy()).collect();
     let notes = notes(answer, question, &context, worthy.len());
     Sheet {
         headline: headline(answer, question),
         columns: COLUMNS.to_vec(),
-        rows: worthy.iter().take(ROWS).map(|l| row(l, answer)).collect(),
+        rows: worthy.iter().take(ROWS).map(|g| row(g, answer)).collect(),
         object: object(answer, context, &notes),
         notes,
         list: "lines",
     }
 }
 
-fn is_worthy(line: &PassbandLine) -> bool {
-    line.is_target || line.light_fraction.is_some_and(|f| f >= WORTH_A_ROW)
+/// The components of one feature.
+struct Group<'a> {
+    /// The brightest.
+    lead: &'a PassbandLine,
+    /// Part of all light of all of them.
+    light: Option<f64>,
+    components: usize,
+}
+
+impl Group<'_> {
+    fn is_worthy(&self) -> bool {
+        self.lead.is_target || self.light.is_some_and(|f| f >= WORTH_A_ROW)
+    }
+}
+
+/// Features by their light, the brightest first; unrated lines last, each by itself.
+fn groups(answer: &Answer) -> Vec<Group<'_>> {
+    let mut out: Vec<Group<'_>> = Vec::new();
+    let mut place: HashMap<usize, usize> = HashMap::new();
+    for line in &answer.lines {
+        match place
+            .get(&line.feature)
+            .filter(|_| line.light_fraction.is_some())
+        {
+            Some(&index) => {
+                let group = &mut out[index];
+                group.components += 1;
+                group.light = group.light.zip(line.light_fraction).map(|(a, b)| a + b);
+            }
+            None => {
+                if line.light_fraction.is_some() {
+                    place.insert(line.feature, out.len());
+                }
+                out.push(Group {
+                    lead: line,
+                    light: line.light_fraction,
+                    components: 1,
+                });
+            }
+        }
+    }
+    // Lines come by their light, so that the lead of each group is its brightest.
+    out.sort_by(|a, b| {
+        let light = |g: &Group<'_>| g.light.unwrap_or(-1.0);
+        light(b).total_cmp(&light(a))
+    });
+    out
 }
 
 pub(super) fn name(line: &vocabulary::spectrum::Line, placed: &Placed) -> String {
@@ -134,14 +182,17 @@ fn verdict_words(target: &Target) -> String {
 
 /// The lines of others that spoil most.
 pub(super) fn spoilers(answer: &Answer) -> Option<String> {
-    let words: Vec<String> = answer
-        .lines
+    let words: Vec<String> = groups(answer)
         .iter()
-        .filter(|l| !l.is_target && l.light_fraction.is_some_and(|f| f >= WORTH_A_ROW))
+        .filter(|g| !g.lead.is_target && g.light.is_some_and(|f| f >= WORTH_A_ROW))
         .take(SPOILERS)
-        .map(|l| {
-            let part = percent(l.light_fraction.unwrap_or(0.0));
-            format!("{} {:.3} ({part})", l.line.species, l.placed.wavelength_nm)
+        .map(|g| {
+            let part = percent(g.light.unwrap_or(0.0));
+            let lead = g.lead;
+            format!(
+                "{} {:.3} ({part})",
+                lead.line.species, lead.placed.wavelength_nm
+            )
         })
         .collect();
     (!words.is_empty()).then(|| format!("What spoils it most: {}.", words.join(", ")))
@@ -163,16 +214,20 @@ fn drift_words(target: &Target) -> String {
     )
 }
 
-fn row(line: &PassbandLine, answer: &Answer) -> Vec<String> {
+fn row(group: &Group<'_>, answer: &Answer) -> Vec<String> {
     let first = answer.target.as_ref().map(|t| t.placed.medium);
+    let line = group.lead;
+    let transition = match group.components {
+        1 => transition_cell(&line.line),
+        n => format!("{}\n({n} components)", multiplet_cell(&line.line)),
+    };
     vec![
         position_cell(&line.placed, first != Some(line.placed.medium)),
         line.line.species.to_string(),
-        transition_cell(&line.line),
+        transition,
         line.transmission
             .map_or_else(|| "?".into(), percent_in_table),
-        line.light_fraction
-            .map_or_else(|| "?".into(), percent_in_table),
+        group.light.map_or_else(|| "?".into(), percent_in_table),
         if line.is_target {
             "target".into()
         } else {
@@ -186,7 +241,7 @@ fn notes(answer: &Answer, question: &Question, context: &Context, worthy: usize)
     let mut notes = Vec::new();
     if worthy > ROWS {
         notes.push(format!(
-            "Shown: the {ROWS} brightest of {worthy} lines above 0.001 %."
+            "Shown: the {ROWS} brightest of {worthy} features above 0.001 %."
         ));
     }
     if answer.target.is_some() {
@@ -232,8 +287,13 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
         } else {
             String::new()
         };
+        let why = if answer.physics.unfed.is_empty() {
+            "no rate is known, or the detector is not"
+        } else {
+            "no rate is known, nothing in the model excites them, or the detector is not known"
+        };
         notes.push(format!(
-            "Come through but are not rated (no rate is known, or the detector is not): {}{end}.",
+            "Come through but are not rated ({why}): {}{end}.",
             unrated[..unrated.len().min(ROWS)].join(", ")
         ));
     }
@@ -373,12 +433,17 @@ pub(super) fn put_target(put: &mut dyn FnMut(&str, Value) -> Option<Value>, answ
 }
 
 fn spoiler_values(answer: &Answer) -> Value {
-    answer
-        .lines
+    let spoiler = |group: &Group<'_>| {
+        let mut value = line(group.lead)?;
+        value["light_fraction"] = json!(group.light);
+        value["components"] = json!(group.components);
+        Some(value)
+    };
+    groups(answer)
         .iter()
-        .filter(|l| !l.is_target && l.light_fraction.is_some())
+        .filter(|g| !g.lead.is_target && g.light.is_some())
         .take(SPOILERS)
-        .filter_map(line)
+        .filter_map(spoiler)
         .collect()
 }
 
@@ -393,6 +458,7 @@ fn line(line: &PassbandLine) -> Option<Value> {
     object.insert("transmission".into(), json!(line.transmission));
     object.insert("light_fraction".into(), json!(line.light_fraction));
     object.insert("is_target".into(), json!(line.is_target));
+    object.insert("feature".into(), json!(line.feature));
     Some(Value::Object(object))
 }
 
