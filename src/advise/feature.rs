@@ -64,3 +64,14 @@ pub fn group(lines: &[(f64, &Line)], fwhm_nm: impl Fn(f64) -> f64) -> Vec<Vec<us
     }
     features
 }
+
+/// Numbers from 0 in the order of first appearance.
+pub fn numbered<T: std::hash::Hash + Eq + Copy>(keys: &[T]) -> Vec<usize> {
+    let mut numbers = std::collections::HashMap::new();
+    keys.iter()
+        .map(|key| {
+            let next = numbers.len();
+            *numbers.entry(*key).or_insert(next)
+        })
+        .collect()
+}

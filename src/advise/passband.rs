@@ -7,6 +7,7 @@ use vocabulary::spectrum::Line;
 use super::background::{Background, background};
 use super::emission::{Conditions, emitters};
 use super::error::AdviseError;
+use super::feature::numbered;
 use super::judge::Judge;
 use super::physics::Physics;
 use super::position::{Placed, placed, placed_or_vacuum};
@@ -70,8 +71,8 @@ pub struct PassbandLine {
     pub light_fraction: Option<f64>,
     /// It belongs to the target.
     pub is_target: bool,
-    /// Lines of one number are components of one feature: a multiplet whose components lie closer
-    /// together than the filter is wide.
+    /// Lines of one number are components of one feature, a multiplet whose components lie closer
+    /// together than the filter is wide; numbered as they come.
     pub feature: usize,
 }
 
@@ -363,6 +364,10 @@ fn lines(
             .total_cmp(&light(a))
             .then(a.placed.vacuum_nm.total_cmp(&b.placed.vacuum_nm))
     });
+    let features: Vec<usize> = out.iter().map(|l: &PassbandLine| l.feature).collect();
+    for (line, number) in out.iter_mut().zip(numbered(&features)) {
+        line.feature = number;
+    }
     Ok(out)
 }
 

@@ -6,6 +6,7 @@ use vocabulary::spectrum::Line;
 
 use super::emission::Conditions;
 use super::error::AdviseError;
+use super::feature::numbered;
 use super::judge::Judge;
 use super::physics::Physics;
 use super::position::{Placed, placed, placed_or_vacuum};
@@ -88,6 +89,8 @@ pub struct Interferer {
     pub wing: bool,
     /// The order in which a grating sends it there; 1 where it lies there itself.
     pub order: u8,
+    /// Lines of one number are components of one feature; numbered as they come.
+    pub feature: usize,
 }
 
 /// Another line of the target's species.
@@ -177,6 +180,10 @@ pub fn answer(
         interferers.extend(higher_order(&scene, index, order, question, air)?);
     }
     interferers.sort_by(|a, b| b.fraction.total_cmp(&a.fraction));
+    let features: Vec<(u8, usize)> = interferers.iter().map(|i| (i.order, i.feature)).collect();
+    for (one, number) in interferers.iter_mut().zip(numbered(&features)) {
+        one.feature = number;
+    }
     let interference = scene.features[index]
         .signal
         .filter(|s| *s > 0.0)
@@ -337,6 +344,7 @@ fn first_order(
                 relative_sigma: part.relative_sigma,
                 wing: part.offset_nm.abs() > 2.0 * width_nm,
                 order: 1,
+                feature: scene.emissions[part.emission].feature,
             })
         })
         .collect()
@@ -385,6 +393,7 @@ fn higher_order(
             relative_sigma: emission.light_sigma,
             wing: offset_nm.abs() > 2.0 * width_nm,
             order: order.order,
+            feature: emission.feature,
         });
     }
     out.retain(|i| i.fraction > 0.0);

@@ -1,9 +1,11 @@
 //! The answer of `vet`.
 
+use std::collections::HashMap;
+
 use serde_json::{Map, Value, json};
 use vocabulary::light::constants::PER_CM_PER_EV;
 
-use super::line::{line_object, position_cell, rate_cell, transition_cell};
+use super::line::{line_object, multiplet_cell, position_cell, rate_cell, transition_cell};
 use super::number::{percent, percent_in_table, short};
 use super::passband::{temperature, thinned, word};
 use super::physics::physics_notes;
@@ -31,16 +33,16 @@ const COLUMNS: [Column; 7] = [
 
 /// Builds the sheet of a vetted line.
 pub fn vet(answer: &Answer, question: &Question, context: Context) -> Sheet {
-    let shown: Vec<&Interferer> = answer
-        .interferers
+    let groups = groups(&answer.interferers);
+    let shown: Vec<&Group<'_>> = groups
         .iter()
-        .filter(|i| i.fraction >= WORTH_A_ROW)
+        .filter(|g| g.fraction >= WORTH_A_ROW)
         .collect();
     let notes = notes(answer, &context, shown.len());
     Sheet {
         headline: headline(answer, question),
         columns: COLUMNS.to_vec(),
-        rows: shown.iter().take(ROWS).map(|i| row(i, answer)).collect(),
+        rows: shown.iter().take(ROWS).map(|g| row(g, answer)).collect(),
         object: object(answer, context, &notes),
         notes,
         list: "interferers",
@@ -162,8 +164,46 @@ fn one_alternative(alternative: &Alternative) -> String {
     )
 }
 
-fn row(interferer: &Interferer, answer: &Answer) -> Vec<String> {
+/// The components of one feature of another species.
+struct Group<'a> {
+    /// The one that does most.
+    lead: &'a Interferer,
+    /// What all of them do.
+    fraction: f64,
+    components: usize,
+}
+
+/// Features by what they do, the worst first.
+fn groups(interferers: &[Interferer]) -> Vec<Group<'_>> {
+    let mut out: Vec<Group<'_>> = Vec::new();
+    let mut place: HashMap<usize, usize> = HashMap::new();
+    for one in interferers {
+        match place.get(&one.feature) {
+            Some(&index) => {
+                out[index].fraction += one.fraction;
+                out[index].components += 1;
+            }
+            None => {
+                place.insert(one.feature, out.len());
+                out.push(Group {
+                    lead: one,
+                    fraction: one.fraction,
+                    components: 1,
+                });
+            }
+        }
+    }
+    out.sort_by(|a, b| b.fraction.total_cmp(&a.fraction));
+    out
+}
+
+fn row(group: &Group<'_>, answer: &Answer) -> Vec<String> {
+    let interferer = group.lead;
     let line = &interferer.line;
+    let transition = match group.components {
+        1 => transition_cell(line),
+        n => format!("{}\n({n} components)", multiplet_cell(line)),
+    };
     let name_medium = interferer.placed.medium != answer.placed.medium;
     let mut position = position_cell(&interferer.placed, name_medium);
     if interferer.order > 1 {
@@ -174,9 +214,9 @@ fn row(interferer: &Interferer, answer: &Answer) -> Vec<String> {
         position,
         format!("{:+.4}", interferer.offset_nm),
         line.species.to_string(),
-        transition_cell(line),
+        transition,
         rate_cell(line.rate_per_s, line.rate_relative_uncertainty),
-        format!("{}{wing}", percent_in_table(interferer.fraction)),
+        format!("{}{wing}", percent_in_table(group.fraction)),
         sources_cell(std::iter::once(line)),
     ]
 }
@@ -355,6 +395,7 @@ fn interferer(interferer: &Interferer) -> Option<Value> {
     );
     put("wing", json!(interferer.wing));
     put("order", json!(interferer.order));
+    put("feature", json!(interferer.feature));
     Some(Value::Object(object))
 }
 
