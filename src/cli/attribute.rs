@@ -7,10 +7,11 @@ use serde_json::json;
 use vocabulary::atom::{SpeciesRequest, Stages};
 use vocabulary::light::constants::PER_CM_PER_EV;
 use vocabulary::light::{Air, Medium, PositionMedium, SpectralRange, SpectralWidth};
+use vocabulary::spectrum::Line;
 
 use super::options::{CatalogueOptions, Checked, ConditionOptions, OutputOptions, medium};
 use super::table_file::{ColumnIndex, TableFile};
-use super::{CliError, Exit, Outcome, assemble, marks, window};
+use super::{CliError, Exit, Outcome, assemble, survey, window};
 use crate::advise::Conditions;
 use crate::advise::attribute::{self, Answer, Peak, Question};
 use crate::catalogue::Catalogue;
@@ -301,7 +302,7 @@ fn describe(
     checked: &Checked,
     range: &SpectralRange,
 ) -> Result<show::Context, CliError> {
-    let mut context = marks::context("attribute", question.medium, range, checked);
+    let mut context = survey::context("attribute", question.medium, range, checked);
     let temperatures: Vec<f64> = question
         .grid
         .iter()
@@ -316,13 +317,12 @@ fn describe(
     context
         .conditions
         .insert("prior".into(), json!(answer.prior));
-    let lines = || {
-        answer
-            .peaks
-            .iter()
-            .filter_map(|p| p.attributed())
-            .map(|c| &c.line)
-    };
-    marks::cite(catalogue, lines, &mut context)?;
+    let lines: Vec<&Line> = answer
+        .peaks
+        .iter()
+        .filter_map(|p| p.attributed())
+        .map(|c| &c.line)
+        .collect();
+    survey::cite(catalogue, &lines, &mut context)?;
     Ok(context)
 }

@@ -4,14 +4,13 @@ use std::path::{Path, PathBuf};
 
 use clap::Args;
 use serde_json::json;
-use vocabulary::light::{Air, Medium, SpectralRange, SpectralWidth, TypedRange};
+use vocabulary::light::{Medium, SpectralRange, SpectralWidth};
 use vocabulary::spectrum::Line;
 
 use super::options::{CatalogueOptions, Checked, ConditionOptions, OutputOptions, medium};
 use super::table_file::TableFile;
-use super::{CliError, Exit, Outcome, assemble, window};
+use super::{CliError, Exit, Outcome, survey, window};
 use crate::advise::marks::{self, Answer, Dispersion, Entry, Pairing, Question};
-use crate::advise::window::REACH_WIDTHS;
 use crate::catalogue::Catalogue;
 use crate::show::{self, Context};
 
@@ -76,17 +75,9 @@ pub struct Arguments {
 
 pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
     let requests = window::species(&arguments.lamp)?;
-    let typed: TypedRange = arguments.span.parse()?;
-    let range = typed.resolve(arguments.medium, Air::standard())?;
-    let mut checked = arguments.conditions.check(&range)?;
-    if range.unit_assumed {
-        checked.assumed.push("nm, as the span has no unit".into());
-    }
-    if !(arguments.weakest >= 0.0 && arguments.weakest < 1.0) {
-        return Err(CliError::Options(
-            "--weakest takes a part of one, such as 0.01",
-        ));
-    }
+    let (range, mut checked) =
+        survey::span(&arguments.span, arguments.medium, &arguments.conditions)?;
+    let weakest = survey::weakest(arguments.weakest)?;
     let pixels = arguments.pixels.as_deref().map(ends).transpose()?;
     let width_nm = checked.width.at_nm(range.centre_vacuum_nm());
     let entries = arguments
@@ -95,16 +86,14 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
         .map(|path| read(path, arguments.medium))
         .transpose()?;
     let catalogue = context.open()?;
-    let margin_nm = REACH_WIDTHS * checked.width.at_nm(range.vacuum_high_nm);
-    let mut held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
-    assemble::complete(&catalogue, &mut held.spectra, &checked.conditions)?;
+    let held = survey::held(&catalogue, &requests, &checked, &range)?;
     let question = Question {
         position_bound_nm: position_bound(arguments, &range, width_nm, &mut checked)?,
         range,
         medium: arguments.medium,
         width: checked.width,
         conditions: checked.conditions.clone(),
-        weakest: arguments.weakest,
+        weakest,
         parts: (arguments.parts > 0).then_some(arguments.parts),
         not_held: held.not_held,
     };
@@ -195,8 +184,8 @@ fn describe(
     question: &Question,
     checked: &Checked,
 ) -> Result<Context, CliError> {
-    let lines = || answer.marks().flat_map(|m| &m.surveyed.lines);
-    let mut context = context("marks", question.medium, &question.range, checked);
+    let lines: Vec<&Line> = answer.marks().flat_map(|m| &m.surveyed.lines).collect();
+    let mut context = survey::context("marks", question.medium, &question.range, checked);
     context.conditions.insert(
         "position_bound_nm".into(),
         json!(question.position_bound_nm),
@@ -207,62 +196,6 @@ fn describe(
     context
         .conditions
         .insert("parts".into(), json!(question.parts));
-    cite(catalogue, lines, &mut context)?;
+    survey::cite(catalogue, &lines, &mut context)?;
     Ok(context)
-}
-
-/// Conditions and assumptions of an answer over a range.
-pub(super) fn context(
-    command: &'static str,
-    medium: Medium,
-    range: &SpectralRange,
-    checked: &Checked,
-) -> Context {
-    let mut context = Context {
-        command,
-        medium: medium.to_string(),
-        assumed: checked.assumed.clone(),
-        ..Context::default()
-    };
-    let model = format!("{:?}", checked.conditions.model).to_lowercase();
-    let mut put = |key: &str, value| context.conditions.insert(key.to_owned(), value);
-    put("model", json!(model));
-    put("electron_temperature_ev", json!(checked.te.ev()));
-    put(
-        "electron_density_per_m3",
-        json!(checked.conditions.electron_density_per_m3),
-    );
-    put("gas_temperature_k", json!(checked.gas.kelvin()));
-    put(
-        "fwhm_nm",
-        json!(checked.width.at_nm(range.centre_vacuum_nm())),
-    );
-    put(
-        "range_vacuum_nm",
-        json!([range.vacuum_low_nm, range.vacuum_high_nm]),
-    );
-    put(
-        "air",
-        json!("Ciddor 1996, 15 °C, 101325 Pa, dry, 450 ppm CO2"),
-    );
-    context
-}
-
-/// Adds the sources of lines.
-pub(super) fn cite<'l, I: Iterator<Item = &'l Line>>(
-    catalogue: &Catalogue,
-    lines: impl Fn() -> I,
-    context: &mut Context,
-) -> Result<(), CliError> {
-    let mut used = std::collections::HashSet::new();
-    for line in lines() {
-        used.insert(line.position_source.clone());
-        used.extend(line.rate_source.clone());
-    }
-    for (key, citation, licence) in catalogue.citations()? {
-        if used.contains(key.as_str()) {
-            context.sources.insert(key, (citation, licence));
-        }
-    }
-    Ok(())
 }

@@ -28,6 +28,7 @@ mod progress;
 mod scan;
 mod source;
 mod sources;
+mod survey;
 mod table_file;
 mod tune;
 mod vet;

@@ -6,15 +6,15 @@ use clap::Args;
 use serde_json::json;
 use vocabulary::atom::{Species, SpeciesRequest};
 use vocabulary::light::constants::PER_CM_PER_EV;
-use vocabulary::light::{Air, Medium, SpectralRange, SpectralWidth, TypedRange};
+use vocabulary::light::{Air, Medium, SpectralRange, SpectralWidth};
 use vocabulary::spectrum::Line;
 
 use super::options::{CatalogueOptions, ConditionOptions, OutputOptions, medium};
 use super::table_file::{ColumnIndex, PositionColumn, TableFile};
-use super::{CliError, Exit, Outcome, assemble, marks, window};
+use super::{CliError, Exit, Outcome, survey, window};
 use crate::advise::EmissionModel;
 use crate::advise::pairs::{self, Plot, Point, Question};
-use crate::advise::window::REACH_WIDTHS;
+use crate::advise::placed;
 use crate::catalogue::Catalogue;
 use crate::show::{self, Context};
 
@@ -97,11 +97,6 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
             "--intensity-error takes a part of one, such as 0.05",
         ));
     }
-    if !(arguments.weakest >= 0.0 && arguments.weakest < 1.0) {
-        return Err(CliError::Options(
-            "--weakest takes a part of one, such as 0.01",
-        ));
-    }
     match (&arguments.measured, &arguments.species, &arguments.span) {
         (Some(path), _, _) => measured(arguments, path, context),
         (None, Some(species), Some(span)) => find(arguments, species, span, context),
@@ -121,12 +116,7 @@ fn find(
     let species = request.single().ok_or(CliError::Options(
         "pairs are made inside one stage: name it, such as \"Fe I\"",
     ))?;
-    let typed: TypedRange = span.parse()?;
-    let range = typed.resolve(arguments.medium, Air::standard())?;
-    let mut checked = arguments.conditions.check(&range)?;
-    if range.unit_assumed {
-        checked.assumed.push("nm, as the span has no unit".into());
-    }
+    let (range, checked) = survey::span(span, arguments.medium, &arguments.conditions)?;
     if matches!(
         checked.conditions.model,
         EmissionModel::Coronal | EmissionModel::Given
@@ -135,12 +125,12 @@ fn find(
             "a temperature from line pairs rests on LTE; use --model visible or lte",
         ));
     }
+    let weakest = survey::weakest(arguments.weakest)?;
     let within: Option<SpectralWidth> = arguments.within.as_deref().map(str::parse).transpose()?;
     let mut requests = vec![request];
     requests.extend(window::species(&arguments.among)?);
     let catalogue = context.open()?;
-    let margin_nm = REACH_WIDTHS * checked.width.at_nm(range.vacuum_high_nm);
-    let held = assemble::spectra(&catalogue, &requests, &checked.amounts, &range, margin_nm)?;
+    let held = survey::held(&catalogue, &requests, &checked, &range)?;
     let question = Question {
         species,
         medium: arguments.medium,
@@ -148,12 +138,12 @@ fn find(
         conditions: checked.conditions.clone(),
         within_nm: within.map(|w| w.at_nm(range.centre_vacuum_nm())),
         intensity_error: arguments.intensity_error,
-        weakest: arguments.weakest,
+        weakest,
         not_held: held.not_held,
         range,
     };
     let answer = pairs::answer(&question, &held.spectra)?;
-    let mut described = marks::context("pairs", arguments.medium, &question.range, &checked);
+    let mut described = survey::context("pairs", arguments.medium, &question.range, &checked);
     described
         .conditions
         .insert("intensity_error".into(), json!(question.intensity_error));
@@ -163,8 +153,12 @@ fn find(
     described
         .conditions
         .insert("weakest".into(), json!(question.weakest));
-    let lines = || answer.usable.iter().flat_map(|u| &u.surveyed.lines);
-    marks::cite(&catalogue, lines, &mut described)?;
+    let lines: Vec<&Line> = answer
+        .usable
+        .iter()
+        .flat_map(|u| &u.surveyed.lines)
+        .collect();
+    survey::cite(&catalogue, &lines, &mut described)?;
     let count = arguments.strongest as usize;
     Ok(Outcome {
         sheet: show::pairs(&answer, &question, count, described),
@@ -259,8 +253,8 @@ fn measured(
             .assumed
             .push("intensities are corrected for the response already".into());
     }
-    let lines = || rows.iter().filter_map(|r| r.line.as_ref());
-    marks::cite(&catalogue, lines, &mut described)?;
+    let lines: Vec<&Line> = rows.iter().filter_map(|r| r.line.as_ref()).collect();
+    survey::cite(&catalogue, &lines, &mut described)?;
     Ok(Outcome {
         sheet: show::plot(&plot, &rows, described),
         format: arguments.output.format,
@@ -322,7 +316,10 @@ impl Reader<'_> {
             _ => 0.0,
         };
         let energy_factor = if self.photons { 1.0 } else { vacuum_nm };
+        let at = placed(wavenumber, 0.0, self.medium, Air::standard())?;
         Ok(show::Measured {
+            wavelength_nm: at.wavelength_nm,
+            medium: at.medium,
             point: Point {
                 species,
                 log_population: (intensity * energy_factor / weighted_rate).ln(),

@@ -22,7 +22,7 @@ const COLUMNS: [Column; 5] = [
 /// A false-discovery rate below this is said to be so.
 const LEAST_RATE: f64 = 1e-3;
 
-/// Species without a match, or of which nothing speaks, are left out of the list.
+/// Species that are not present are listed where a feature matches and they are at least so likely.
 const WORTH_LISTING: f64 = 0.05;
 
 /// What was asked for by name.
@@ -42,7 +42,7 @@ pub fn attribute(answer: &Answer, question: &Question, asked: &Asked, context: C
         answer
             .species
             .iter()
-            .filter(|s| s.present || (s.judged && s.probability >= WORTH_LISTING))
+            .filter(|s| s.present || (!s.matched_nm.is_empty() && s.probability >= WORTH_LISTING))
     };
     let mut object = context.object(&notes);
     object.insert(
@@ -243,7 +243,7 @@ fn notes(answer: &Answer, asked: &Asked, context: &Context) -> Vec<String> {
     let doubtful: Vec<String> = answer
         .species
         .iter()
-        .filter(|s| !s.present && s.judged && s.probability >= WORTH_LISTING)
+        .filter(|s| !s.present && !s.matched_nm.is_empty() && s.probability >= WORTH_LISTING)
         .map(|s| format!("{} ({})", s.species, percent(s.probability)))
         .collect();
     if !doubtful.is_empty() {

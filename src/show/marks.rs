@@ -172,12 +172,18 @@ fn refused_object(candidate: &Candidate) -> Option<Value> {
 
 fn reason(refusal: Refusal) -> String {
     match refusal {
+        Refusal::NoRate => {
+            "its rate is not known, so that it cannot be called clear of its neighbours".into()
+        }
         Refusal::NotClear(verdict) => format!("{verdict}, not clear"),
         Refusal::OwnSpecies(f) if f.is_finite() => {
             format!(
                 "other lines of its own species put {} of its light there",
                 percent(f)
             )
+        }
+        Refusal::OwnUnrated(nm) => {
+            format!("a line of its own species without a known rate lies {nm:.3} nm beside it")
         }
         Refusal::OwnSpecies(_) => "not rated against its own species".into(),
         Refusal::Uncertain(nm) => format!("its position is known to {nm:.1e} nm only"),
@@ -192,13 +198,18 @@ type Kind = (&'static str, fn(&Refusal) -> bool);
 
 fn notes(answer: &Answer, question: &Question, context: &Context) -> Vec<String> {
     let mut notes = Vec::new();
-    let kinds: [Kind; 6] = [
-        ("not clear of other species, or not rated", |r| {
+    let kinds: [Kind; 8] = [
+        ("without a known rate", |r| matches!(r, Refusal::NoRate)),
+        ("not clear of other species, or not judged", |r| {
             matches!(r, Refusal::NotClear(_))
         }),
         ("over 1 % light of their own species' other lines", |r| {
             matches!(r, Refusal::OwnSpecies(_))
         }),
+        (
+            "beside a line of their own species without a known rate",
+            |r| matches!(r, Refusal::OwnUnrated(_)),
+        ),
         ("position not known well enough", |r| {
             matches!(r, Refusal::Uncertain(_))
         }),

@@ -1,6 +1,7 @@
 //! The answers of `pairs`.
 
 use serde_json::{Value, json};
+use vocabulary::light::PositionMedium;
 use vocabulary::light::constants::{KELVIN_PER_EV, PER_CM_PER_EV};
 use vocabulary::spectrum::Line;
 
@@ -139,12 +140,15 @@ fn notes(answer: &Answer, question: &Question, shown: usize, context: &Context) 
             answer.pairs.len()
         ));
     }
-    let kinds: [Kind; 4] = [
+    let kinds: [Kind; 5] = [
         ("not clear in the mix, or not judged", |r| {
             matches!(r, LeftOut::NotClear(_))
         }),
         ("under other lines of the species", |r| {
             matches!(r, LeftOut::OwnSpecies(_))
+        }),
+        ("beside a line of the species without a known rate", |r| {
+            matches!(r, LeftOut::OwnUnrated(_))
         }),
         ("without a rate", |r| matches!(r, LeftOut::NoRate)),
         ("too weak", |r| matches!(r, LeftOut::Weak(_))),
@@ -184,6 +188,10 @@ pub struct Measured {
     pub point: Point,
     /// Where it was measured, vacuum nm.
     pub vacuum_nm: f64,
+    /// The same as it was given: nm and medium.
+    pub wavelength_nm: f64,
+    /// Medium of that.
+    pub medium: PositionMedium,
     /// Intensity after the response correction.
     pub intensity: f64,
     /// g A, s⁻¹.
@@ -192,8 +200,9 @@ pub struct Measured {
     pub line: Option<Line>,
 }
 
-const PLOT_COLUMNS: [Column; 7] = [
-    Column::whole("vacuum\nnm", Align::Left),
+const PLOT_COLUMNS: [Column; 8] = [
+    Column::whole("line\nnm", Align::Left),
+    Column::whole("medium", Align::Left),
     Column::whole("species", Align::Left),
     Column::whole("upper\neV", Align::Right),
     Column::whole("g A\ns⁻¹", Align::Right),
@@ -245,7 +254,8 @@ pub fn plot(plot: &Plot, rows: &[Measured], context: Context) -> Sheet {
         rows: both()
             .map(|(m, (residual, used))| {
                 vec![
-                    format!("{:.3}", m.vacuum_nm),
+                    format!("{:.3}", m.wavelength_nm),
+                    medium_word(m.medium).into(),
                     m.point.species.to_string(),
                     format!("{:.3}", m.point.upper_energy_ev),
                     super::number::rate(m.weighted_rate_per_s),
@@ -277,7 +287,12 @@ fn plot_headline(plot: &Plot, rows: &[Measured]) -> Vec<String> {
         .iter()
         .zip(&plot.residuals)
         .filter(|(_, r)| !r.1)
-        .map(|(m, r)| format!("{} {:.3} nm ({:+.1} σ)", m.point.species, m.vacuum_nm, r.0))
+        .map(|(m, r)| {
+            format!(
+                "{} {:.3} nm ({:+.1} σ)",
+                m.point.species, m.wavelength_nm, r.0
+            )
+        })
         .collect();
     if !outliers.is_empty() {
         out.push(format!("Outliers, left out: {}.", outliers.join(", ")));
@@ -328,6 +343,8 @@ fn plot_object(plot: &Plot) -> Value {
 fn point_object(measured: &Measured, (residual, used): (f64, bool)) -> Value {
     json!({
         "species": measured.point.species.to_string(),
+        "wavelength_nm": measured.wavelength_nm,
+        "medium": medium_word(measured.medium),
         "vacuum_wavelength_nm": measured.vacuum_nm,
         "intensity": measured.intensity,
         "weighted_rate_per_s": measured.weighted_rate_per_s,

@@ -109,8 +109,8 @@ pub enum DispersionError {
 }
 
 impl Pairing {
-    /// Finds the feature that each entry means: the nearest within `reach_nm`. Where it was only
-    /// outshone in its part of the span it is a mark all the same.
+    /// Finds the feature that each entry means: the strongest within `reach_nm`. Where it was only
+    /// outshone in its part of the span, or weak, it is a mark all the same: it was measured.
     pub fn new(entries: &[Entry], answer: &Answer, reach_nm: f64) -> Self {
         let mut found: Vec<Result<usize, EntryState>> = entries
             .iter()
@@ -171,7 +171,7 @@ fn meant(entry: &Entry, candidates: &[Candidate], reach_nm: f64) -> Result<usize
         return Err(EntryState::Nothing { nearest_nm });
     };
     match candidates[best].refusal {
-        None | Some(Refusal::Outshone) => Ok(best),
+        None | Some(Refusal::Outshone | Refusal::Weak(_)) => Ok(best),
         Some(refusal) => Err(EntryState::NoMark {
             candidate: best,
             refusal,

@@ -45,10 +45,14 @@ pub struct Question {
 /// Why a feature of the lamp is no mark.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Refusal {
+    /// Its own rate is not known, so nothing can be called weak beside it.
+    NoRate,
     /// Its verdict is not `clear`.
     NotClear(Verdict),
     /// Other features of its own species lie under it: their light over its own.
     OwnSpecies(f64),
+    /// A line of its own species without a known rate lies so near, nm.
+    OwnUnrated(f64),
     /// Its position is not known well enough: 1 σ, nm.
     Uncertain(f64),
     /// It is too weak: its light over the strongest of its species.
@@ -133,12 +137,18 @@ fn refusal(question: &Question, surveyed: &Surveyed, light: Option<f64>) -> Opti
     if surveyed.lines.iter().all(is_forbidden) {
         return Some(Refusal::Forbidden);
     }
+    if light.is_none() {
+        return Some(Refusal::NoRate);
+    }
     if feature.verdict.central != Verdict::Clear {
         return Some(Refusal::NotClear(feature.verdict.central));
     }
     let own = feature.own_species_fraction.unwrap_or(f64::INFINITY);
     if own >= OWN_LIGHT_ALLOWED {
         return Some(Refusal::OwnSpecies(own));
+    }
+    if let Some(nm) = surveyed.unrated_neighbour_nm {
+        return Some(Refusal::OwnUnrated(nm));
     }
     let sigma = feature.placed.uncertainty_nm;
     if !(sigma > 0.0 && sigma <= question.position_bound_nm) {

@@ -1,8 +1,10 @@
 //! Features of a wide span, each judged where the sources' claims are the same throughout.
 
+use vocabulary::atom::Species;
 use vocabulary::light::{Medium, SpectralRange, SpectralWidth};
 
-use crate::advise::emission::{Conditions, emitters};
+use super::OWN_LIGHT_ALLOWED;
+use crate::advise::emission::{Conditions, Emitter, emitters};
 use crate::advise::error::AdviseError;
 use crate::advise::scene::REACH_WIDTHS;
 use crate::advise::spectrum::Spectrum;
@@ -18,6 +20,9 @@ pub struct Surveyed {
     pub lines: Vec<Line>,
     /// Relative light, one unit for the whole span; `None` where none of its lines is rated.
     pub light: Option<f64>,
+    /// Distance, in nm, of a line of its own species of which no rate is known, and which by the
+    /// prior's median puts more than [`OWN_LIGHT_ALLOWED`] of the feature's light there.
+    pub unrated_neighbour_nm: Option<f64>,
 }
 
 /// Judges all features of a span. The span is cut where a source's claimed band begins or ends, so
@@ -46,7 +51,8 @@ pub fn survey(
             not_held: not_held.to_vec(),
         };
         let answer = window::answer(&question, &near)?;
-        for feature in answer.features {
+        let unrated = unrated(&answer, spectra, &emitters);
+        for (index, feature) in answer.features.into_iter().enumerate() {
             // A feature across a cut belongs to the piece that holds its centre.
             if !piece.contains_per_cm(1e7 / feature.placed.vacuum_nm) {
                 continue;
@@ -64,8 +70,11 @@ pub fn survey(
                 .iter()
                 .filter_map(|l| emitter.and_then(|e| e.light(l)))
                 .collect();
-            let light = (!rated.is_empty()).then(|| rated.iter().sum());
+            let light: Option<f64> = (!rated.is_empty()).then(|| rated.iter().sum());
+            let width_nm = width.at_nm(feature.placed.vacuum_nm);
             out.push(Surveyed {
+                unrated_neighbour_nm: light
+                    .and_then(|own| neighbour(&unrated, index, &feature, own, width_nm)),
                 feature,
                 lines,
                 light,
@@ -79,6 +88,52 @@ pub fn survey(
             .total_cmp(&b.feature.placed.vacuum_nm)
     });
     Ok(out)
+}
+
+/// A line without a rate: whose, where (vacuum nm), of which feature, its light by the prior's median.
+struct Unrated {
+    species: Species,
+    nm: f64,
+    feature: usize,
+    light: f64,
+}
+
+fn unrated(answer: &window::Answer, spectra: &[Spectrum], emitters: &[Emitter]) -> Vec<Unrated> {
+    let read = |line: &window::WindowLine| {
+        let rate = line.prior.filter(|_| line.line.rate_per_s.is_none())?;
+        let index = spectra
+            .iter()
+            .position(|s| s.species == line.line.species)?;
+        Some(Unrated {
+            species: line.line.species,
+            nm: 1e7 / line.line.wavenumber_per_cm,
+            feature: line.feature,
+            light: emitters[index].light_at_rate(&line.line, rate.median_rate_per_s())?,
+        })
+    };
+    answer.lines.iter().filter_map(read).collect()
+}
+
+/// The nearest unrated line of its species that may spoil a feature, seen with a Gaussian instrument.
+fn neighbour(
+    unrated: &[Unrated],
+    index: usize,
+    feature: &WindowFeature,
+    own: f64,
+    width_nm: f64,
+) -> Option<f64> {
+    let off = |u: &Unrated| (u.nm - feature.placed.vacuum_nm).abs();
+    let spoils = |u: &&Unrated| {
+        let overlap = (-4.0 * std::f64::consts::LN_2 * (off(u) / width_nm).powi(2)).exp();
+        u.species == feature.species
+            && u.feature != index
+            && u.light * overlap >= OWN_LIGHT_ALLOWED * own
+    };
+    unrated
+        .iter()
+        .filter(spoils)
+        .map(off)
+        .min_by(f64::total_cmp)
 }
 
 /// The span, cut at the ends of claimed bands.

@@ -91,6 +91,8 @@ pub enum LeftOut {
     NotClear(Verdict),
     /// Other lines of its own species, over its own light.
     OwnSpecies(f64),
+    /// A line of its own species without a known rate lies so near, nm.
+    OwnUnrated(f64),
     /// Rate or upper level not known.
     NoRate,
     /// Too weak.
@@ -150,6 +152,9 @@ fn judged(question: &Question, surveyed: &Surveyed, strongest: f64) -> Result<Us
     match feature.own_species_fraction {
         Some(own) if own < super::marks::OWN_LIGHT_ALLOWED => {}
         own => return Err(LeftOut::OwnSpecies(own.unwrap_or(f64::INFINITY))),
+    }
+    if let Some(nm) = surveyed.unrated_neighbour_nm {
+        return Err(LeftOut::OwnUnrated(nm));
     }
     let relative_light = light / strongest;
     if relative_light < question.weakest {
