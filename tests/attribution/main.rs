@@ -25,6 +25,15 @@ impl Chance {
         Self(seed)
     }
 
+    /// From several numbers: what one thing draws does not depend on how many others there are.
+    pub fn of(seeds: &[u64]) -> Self {
+        let mut mixed = Self(0);
+        for seed in seeds {
+            mixed.0 = mixed.next() ^ seed;
+        }
+        mixed
+    }
+
     fn next(&mut self) -> u64 {
         self.0 = self.0.wrapping_add(0x9e37_79b9_7f4a_7c15);
         let mut z = self.0;

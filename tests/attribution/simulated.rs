@@ -51,10 +51,7 @@ fn features() -> &'static BTreeMap<&'static str, Vec<(f64, f64)>> {
             rows.iter_mut().for_each(|r| r.1 /= strongest);
             (*species, rows)
         };
-        POOL.iter()
-            .map(read)
-            .filter(|(_, rows)| rows.len() >= 6)
-            .collect()
+        POOL.iter().map(read).collect()
     })
 }
 
@@ -73,21 +70,21 @@ struct Simulated {
 
 /// The first list of a seed in which each of the eight species shows three peaks.
 fn simulated(sigma_nm: f64, seed: u64) -> Simulated {
-    let mut chance = Chance::new(seed);
-    loop {
-        let chosen = chosen(&mut chance);
+    for attempt in 0.. {
+        let chosen = chosen(&mut Chance::of(&[seed, attempt]));
         let withheld: BTreeSet<&'static str> = chosen[SPECIES..].iter().copied().collect();
-        let lines = strongest(&mut chance, &chosen, &withheld);
+        let lines = strongest(&[seed, attempt], &chosen, &withheld);
         let shown = |species: &str| lines.iter().filter(|l| l.2 == species).count();
         if chosen[..SPECIES].iter().all(|s| shown(s) >= FEWEST_PEAKS) {
-            return measured(&mut chance, &lines, withheld, sigma_nm);
+            return measured(&[seed, attempt], &lines, withheld, sigma_nm);
         }
     }
+    unreachable!("attempts do not end")
 }
 
 /// Species of different elements; the last are withheld.
 fn chosen(chance: &mut Chance) -> Vec<&'static str> {
-    let mut pool: Vec<&'static str> = features().keys().copied().collect();
+    let mut pool = POOL.to_vec();
     let mut chosen: Vec<&'static str> = Vec::new();
     while chosen.len() < SPECIES + WITHHELD {
         let species = pool.swap_remove(chance.below(pool.len()));
@@ -98,18 +95,29 @@ fn chosen(chance: &mut Chance) -> Vec<&'static str> {
     chosen
 }
 
+/// What names a species or a line in a seed.
+fn place(species: &str) -> u64 {
+    POOL.iter().position(|p| *p == species).unwrap() as u64
+}
+
+fn hundredths(nm: f64) -> u64 {
+    (100.0 * nm).round() as u64
+}
+
 /// Place, intensity and species of the strongest lines: amounts and strengths are log-normal, σ 0.7.
 fn strongest(
-    chance: &mut Chance,
+    seed: &[u64; 2],
     chosen: &[&'static str],
     withheld: &BTreeSet<&str>,
 ) -> Vec<(f64, f64, &'static str)> {
     let mut lines: Vec<(f64, f64, &'static str)> = Vec::new();
     for &species in chosen {
         let part = if withheld.contains(species) { 0.3 } else { 1.0 };
-        let amount = part * (0.7 * chance.normal()).exp();
+        let [seed, attempt] = *seed;
+        let amount = part * (0.7 * Chance::of(&[seed, attempt, place(species)]).normal()).exp();
         for &(nm, light) in &features()[species] {
-            lines.push((nm, amount * light * (0.7 * chance.normal()).exp(), species));
+            let strength = Chance::of(&[seed, attempt, place(species), hundredths(nm)]).normal();
+            lines.push((nm, amount * light * (0.7 * strength).exp(), species));
         }
     }
     lines.sort_by(|a, b| b.1.total_cmp(&a.1));
@@ -118,11 +126,12 @@ fn strongest(
 }
 
 fn measured(
-    chance: &mut Chance,
+    seed: &[u64; 2],
     lines: &[(f64, f64, &'static str)],
     withheld: BTreeSet<&'static str>,
     sigma_nm: f64,
 ) -> Simulated {
+    let [seed, attempt] = *seed;
     let faintest = lines.iter().map(|l| l.1).fold(f64::INFINITY, f64::min);
     // Fixed before anything is matched: the species may be found, and no other true line lies within the error.
     let alone = |line: &(f64, f64, &str)| {
@@ -132,15 +141,19 @@ fn measured(
             .count()
             == 1
     };
+    let error = |line: &(f64, f64, &str)| {
+        Chance::of(&[seed, attempt, place(line.2), hundredths(line.0), 1]).normal()
+    };
     let mut peaks: Vec<Made> = lines
         .iter()
         .map(|line| Made {
-            position_nm: line.0 + sigma_nm * chance.normal(),
+            position_nm: line.0 + sigma_nm * error(line),
             intensity: line.1,
             truth: Some((line.2, line.0)),
             assignable: alone(line) && !withheld.contains(line.2),
         })
         .collect();
+    let mut chance = Chance::of(&[seed, attempt, 1000]);
     peaks.extend((0..NOISE).map(|_| Made {
         position_nm: SPAN_NM.0 + (SPAN_NM.1 - SPAN_NM.0) * chance.part(),
         intensity: faintest * (1.0 + chance.part()),
