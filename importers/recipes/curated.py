@@ -242,13 +242,14 @@ class Ion:
             yield [self.species, level["text"], f"{level['sigma']:.4g}", level["configuration"], level["term"], level["j"], g]
 
     def band(self):
-        """[from, to] in nm that the entered lines cover without a gap of more than a factor 1.5, or None."""
+        """[from, to] in nm that the lines of the first entry cover without a gap of more than a factor 1.5, or None."""
         if self.settings.get("band") == "none":
             return None
         if "band_nm" in self.settings:
             return self.settings["band_nm"]
         runs, run = [], []
-        for wavelength in sorted(float(row["wavelength_nm"]) for row in self.entered_lines):
+        first = (row for row in self.entered_lines if not row["row"].startswith("second"))
+        for wavelength in sorted(float(row["wavelength_nm"]) for row in first):
             if run and wavelength > run[-1] * BAND_GAP:
                 runs.append(run)
                 run = []
