@@ -92,13 +92,21 @@ pub(super) fn conclude(
     })?;
     let mut reports = read(connection, code, labels).map_err(failed(path, "read"))?;
     let computed = gap_fill::Sources::held(connection).map_err(failed(path, "read"))?;
-    reports.extend(computed.fill(species, &reports));
     reconcile::rank(&mut reports);
+    let (filled, of_tables) = computed.fill(species, &reports);
+    let derived = match (filled, of_tables) {
+        (None, Some(derived)) => derived,
+        (filled, _) => {
+            reports.extend(filled);
+            reconcile::rank(&mut reports);
+            reconcile::derive_ranked(species, &reports)
+        }
+    };
     let own_rows = reports
         .iter()
         .map(|r| r.levels.iter().map(|l| l.own_row).collect())
         .collect();
-    Ok((reconcile::derive(species, reports), own_rows))
+    Ok((derived, own_rows))
 }
 
 /// A record is kept where it is the first, by rank of the sources, of its line or level.

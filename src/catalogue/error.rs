@@ -17,6 +17,56 @@ pub enum CatalogueError {
         #[source]
         cause: rusqlite::Error,
     },
+    /// Another process writes.
+    #[error(
+        "{}: another process is writing to the catalogue (another import?); wait until it is done \
+         and try again; nothing was changed",
+        path.display()
+    )]
+    Busy {
+        /// The catalogue.
+        path: PathBuf,
+    },
+    /// The file or its folder does not let itself be written.
+    #[error(
+        "{}: the catalogue cannot be written: the file, its folder or the disk is read-only; name \
+         another with --catalogue",
+        path.display()
+    )]
+    ReadOnly {
+        /// The catalogue.
+        path: PathBuf,
+    },
+    /// No room.
+    #[error(
+        "{}: the catalogue could not be {action}: the disk is full; free some space and try again; \
+         nothing was changed",
+        path.display()
+    )]
+    DiskFull {
+        /// The catalogue.
+        path: PathBuf,
+        /// What was being done, as a participle.
+        action: &'static str,
+    },
+    /// The system refused to read or write.
+    #[error(
+        "{}: the catalogue could not be {action}: {cause}; check the disk, its free space and \
+         limits on file sizes; nothing was changed",
+        path.display()
+    )]
+    Disk {
+        /// The catalogue.
+        path: PathBuf,
+        /// What was being done, as a participle.
+        action: &'static str,
+        /// SQLite's own words.
+        #[source]
+        cause: rusqlite::Error,
+    },
+    /// A wish to stop (Ctrl-C).
+    #[error("stopped as asked; nothing was changed")]
+    Stopped,
     /// A file that is no catalogue.
     #[error("{}: this is not a lineclear catalogue; name another file with --catalogue", path.display())]
     NotACatalogue {
@@ -134,6 +184,37 @@ pub enum CatalogueError {
         /// What is wrong.
         what: String,
     },
+}
+
+/// A wish to stop, on its way through a reader of tables.
+#[derive(Debug, thiserror::Error)]
+#[error("stopped as asked")]
+pub(super) struct Stop;
+
+impl CatalogueError {
+    /// An error of SQLite, with what to do about it.
+    pub(super) fn of_sqlite(path: PathBuf, action: &'static str, cause: rusqlite::Error) -> Self {
+        use rusqlite::ErrorCode;
+        match cause.sqlite_error_code() {
+            Some(ErrorCode::DatabaseBusy | ErrorCode::DatabaseLocked) => Self::Busy { path },
+            Some(ErrorCode::ReadOnly) => Self::ReadOnly { path },
+            Some(ErrorCode::DiskFull) => Self::DiskFull { path, action },
+            Some(ErrorCode::SystemIoFailure) => Self::Disk {
+                path,
+                action,
+                cause,
+            },
+            Some(ErrorCode::DatabaseCorrupt | ErrorCode::NotADatabase) => Self::Damaged {
+                path,
+                what: cause.to_string(),
+            },
+            _ => Self::Sqlite {
+                path,
+                action,
+                cause,
+            },
+        }
+    }
 }
 
 /// A result of the catalogue.

@@ -2,6 +2,8 @@
 
 use std::collections::{BTreeSet, HashMap};
 use std::path::PathBuf;
+use std::sync::Arc;
+use std::sync::atomic::{AtomicBool, Ordering};
 
 use importers::record::{LevelEnd, LevelRecord, LineRecord, Place, Record};
 use importers::source::SourceDescription;
@@ -11,8 +13,8 @@ use vocabulary::atom::{HalfInteger, Species, SpeciesRequest};
 use vocabulary::spectrum::{LineKind, RateOrigin};
 
 use super::derive::{self, Labels};
-use super::error::{CatalogueError, Result};
-use super::store::{Catalogue, LOCKED, failed};
+use super::error::{CatalogueError, Result, Stop};
+use super::store::{Catalogue, LOCKED, failed, go_on};
 
 /// What an import did; `read = kept + merged + skipped + refused`.
 #[derive(Clone, Debug, Default, PartialEq, Eq)]
@@ -58,6 +60,7 @@ impl Catalogue {
     ) -> Result<ImportSummary> {
         let path = self.path.clone();
         self.keys.take();
+        let stop = Arc::clone(&self.stop);
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)
@@ -66,17 +69,35 @@ impl Catalogue {
             return Ok(summary);
         }
         let mut labels = Labels::load(&transaction).map_err(failed(&path, "read"))?;
+        let read = |sink: &mut dyn Sink| read(&mut Stoppable { sink, stop: &stop });
         let stored = store_reports(&transaction, &path, incoming, &mut labels, read)?;
         let mut summary = stored.summary;
         for &species in &stored.species {
+            go_on(&stop)?;
             let counts = derive::species(&transaction, &path, species, &mut labels)?;
             summary.kept += counts.kept_of(stored.source);
         }
         summary.merged = stored.records - summary.kept;
+        go_on(&stop)?;
         if !dry_run {
             transaction.commit().map_err(failed(&path, "written"))?;
         }
         Ok(summary)
+    }
+}
+
+/// A sink that ends the import where somebody wishes it.
+struct Stoppable<'s> {
+    sink: &'s mut dyn Sink,
+    stop: &'s AtomicBool,
+}
+
+impl Sink for Stoppable<'_> {
+    fn accept(&mut self, record: Record) -> std::result::Result<(), SinkError> {
+        if self.stop.load(Ordering::Relaxed) {
+            return Err(Box::new(Stop));
+        }
+        self.sink.accept(record)
     }
 }
 
@@ -164,6 +185,7 @@ pub(super) fn unwrap_sink(error: ImportError, path: &std::path::Path) -> Catalog
     match error {
         ImportError::Sink(inner) => match inner.downcast::<rusqlite::Error>() {
             Ok(cause) => failed(path, "written")(*cause),
+            Err(other) if other.is::<Stop>() => CatalogueError::Stopped,
             Err(other) => CatalogueError::Import(ImportError::Sink(other)),
         },
         other => CatalogueError::Import(other),

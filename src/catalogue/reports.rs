@@ -36,10 +36,11 @@ impl Catalogue {
 
     fn reports_of(&self, species: Species, labels: &Labels) -> rusqlite::Result<Reports> {
         let mut given = derive::read(&self.connection, species.code(), labels)?;
-        let computed = gap_fill::Sources::held(&self.connection)?.fill(species, &given);
+        reconcile::rank(&mut given);
+        let (computed, _) = gap_fill::Sources::held(&self.connection)?.fill(species, &given);
         given.extend(computed);
         reconcile::rank(&mut given);
-        let derived = reconcile::derive(species, given.clone());
+        let derived = reconcile::derive_ranked(species, &given);
         let level_rows = self.rows(
             "SELECT source, place FROM level_report WHERE species = ?1 ORDER BY source, number",
             species,

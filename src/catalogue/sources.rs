@@ -1,11 +1,13 @@
 //! Which sources are held, and taking one out.
 
+use std::sync::Arc;
+
 use rusqlite::{OptionalExtension, TransactionBehavior};
 
 use super::derive::{self, Labels};
 use super::error::{CatalogueError, Result};
 use super::gap_fill;
-use super::store::{Catalogue, LOCKED, failed};
+use super::store::{Catalogue, LOCKED, failed, go_on};
 
 /// A source as listed.
 #[derive(Clone, Debug, PartialEq)]
@@ -82,6 +84,7 @@ impl Catalogue {
         let path = self.path.clone();
         self.keys.take();
         let written = failed(&path, "written");
+        let stop = Arc::clone(&self.stop);
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)
@@ -98,6 +101,7 @@ impl Catalogue {
         let (species, reports) = retract(&transaction, source).map_err(&written)?;
         let mut labels = Labels::load(&transaction).map_err(&written)?;
         for code in species {
+            go_on(&stop)?;
             derive::species(&transaction, &path, code, &mut labels)?;
         }
         transaction

@@ -4,6 +4,7 @@ use std::cell::OnceCell;
 use std::collections::HashMap;
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
+use std::sync::atomic::{AtomicBool, Ordering};
 use std::time::Duration;
 
 use rusqlite::{Connection, OpenFlags};
@@ -21,8 +22,8 @@ const APPLICATION_ID: i32 = 0x6c6e_636c;
 /// How long a writer waits for another one.
 const PATIENCE: Duration = Duration::from_secs(10);
 
-/// What cannot be done while another process writes, as a participle.
-pub(super) const LOCKED: &str = "locked for writing (is another import running?)";
+/// What a writer asks for first, as a participle.
+pub(super) const LOCKED: &str = "locked for writing";
 
 /// An open catalogue.
 pub struct Catalogue {
@@ -30,6 +31,8 @@ pub struct Catalogue {
     pub(super) path: PathBuf,
     /// Keys of the sources by their number, read once; emptied by every write.
     pub(super) keys: OnceCell<HashMap<i64, Arc<str>>>,
+    /// Becomes true where somebody wishes what is going on to stop.
+    pub(super) stop: Arc<AtomicBool>,
 }
 
 /// How a catalogue came to be open.
@@ -54,6 +57,7 @@ impl Catalogue {
             connection,
             path,
             keys: OnceCell::new(),
+            stop: Arc::default(),
         };
         catalogue.migrate()?;
         Ok(catalogue)
@@ -109,14 +113,36 @@ impl Catalogue {
         let connection = Connection::open_with_flags(path, writable)
             .or_else(|_| Connection::open_with_flags(path, read_only))
             .map_err(failed(path, "opened"))?;
+        let connection = if needs_company(&connection) {
+            open_alone(path)?
+        } else {
+            connection
+        };
         let mut catalogue = Self {
             connection,
             path: path.to_owned(),
             keys: OnceCell::new(),
+            stop: Arc::default(),
         };
         catalogue.check_kind()?;
         catalogue.migrate()?;
         Ok(catalogue)
+    }
+
+    /// Stops an import, a `forget` or an export soon after `wish` becomes true; nothing is changed
+    /// then.
+    pub fn stop_when(&mut self, wish: Arc<AtomicBool>) {
+        self.stop = wish;
+    }
+
+    /// Keeps the file from growing beyond so many pages of 4096 bytes, as a full disk would.
+    ///
+    /// # Errors
+    /// What SQLite says.
+    pub fn limit_pages(&mut self, pages: i64) -> Result<()> {
+        self.connection
+            .pragma_update(None, "max_page_count", pages)
+            .map_err(self.failed("opened"))
     }
 
     /// Where the catalogue lives; `(memory)` for one without a file.
@@ -186,14 +212,57 @@ impl Catalogue {
     }
 }
 
+/// An error where a wish to stop has come.
+pub(super) fn go_on(stop: &AtomicBool) -> Result<()> {
+    if stop.load(Ordering::Relaxed) {
+        return Err(CatalogueError::Stopped);
+    }
+    Ok(())
+}
+
+/// Whether reading fails for want of the files that SQLite keeps beside a catalogue, which it
+/// cannot make in a folder that is read-only.
+fn needs_company(connection: &Connection) -> bool {
+    use rusqlite::ErrorCode;
+    let read = connection.pragma_query_value(None, "schema_version", |_| Ok(()));
+    read.is_err_and(|error| {
+        matches!(
+            error.sqlite_error_code(),
+            Some(ErrorCode::CannotOpen | ErrorCode::ReadOnly)
+        )
+    })
+}
+
+/// Opens a catalogue in a read-only folder, where nobody else can be writing.
+fn open_alone(path: &Path) -> Result<Connection> {
+    let mut beside = path.as_os_str().to_owned();
+    beside.push("-wal");
+    if std::fs::metadata(beside).is_ok_and(|wal| wal.len() > 0) {
+        // A part of the catalogue stands in there.
+        return Err(CatalogueError::ReadOnly {
+            path: path.to_owned(),
+        });
+    }
+    let mut uri = "file:".to_owned();
+    for c in path.to_string_lossy().chars() {
+        match c {
+            '?' => uri.push_str("%3f"),
+            '#' => uri.push_str("%23"),
+            '%' => uri.push_str("%25"),
+            c => uri.push(c),
+        }
+    }
+    uri.push_str("?immutable=1");
+    let flags = OpenFlags::SQLITE_OPEN_READ_ONLY
+        | OpenFlags::SQLITE_OPEN_NO_MUTEX
+        | OpenFlags::SQLITE_OPEN_URI;
+    Connection::open_with_flags(uri, flags).map_err(failed(path, "opened"))
+}
+
 pub(super) fn failed(
     path: &Path,
     action: &'static str,
 ) -> impl Fn(rusqlite::Error) -> CatalogueError + use<> {
     let path = path.to_owned();
-    move |cause| CatalogueError::Sqlite {
-        path: path.clone(),
-        action,
-        cause,
-    }
+    move |cause| CatalogueError::of_sqlite(path.clone(), action, cause)
 }

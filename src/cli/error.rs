@@ -149,6 +149,9 @@ pub enum CliError {
     /// A table to import.
     #[error(transparent)]
     Import(#[from] importers::ImportError),
+    /// The system does not pass signals on.
+    #[error("Ctrl-C cannot be listened for: {0}")]
+    Signal(#[source] std::io::Error),
     /// Standard output is gone or full.
     #[error("standard output cannot be written: {0}")]
     Output(#[source] std::io::Error),

@@ -10,7 +10,7 @@ use vocabulary::atom::Species;
 use vocabulary::light::{Air, Medium, TypedRange};
 
 use super::options::{CatalogueOptions, medium};
-use super::{CliError, Exit, window};
+use super::{CliError, Exit, interrupt, window};
 use crate::catalogue::{Catalogue, CatalogueError, Receiver, Selection};
 use crate::show::{Form, RowWriter, folder_writer, text_writer};
 
@@ -71,7 +71,8 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<E
             "parquet is a folder of files; name it with --to",
         ));
     }
-    let catalogue = context.open()?;
+    let mut catalogue = context.open()?;
+    catalogue.stop_when(interrupt::wish()?);
     let done = match &arguments.to {
         None => to_output(&catalogue, &selection, arguments.form)?,
         Some(path) => to_path(&catalogue, &selection, arguments, path)?,

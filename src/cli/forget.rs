@@ -3,7 +3,7 @@
 use clap::Args;
 
 use super::options::{CatalogueOptions, OutputOptions};
-use super::{CliError, Exit, Outcome};
+use super::{CliError, Exit, Outcome, interrupt};
 use crate::show;
 
 /// Take a source out; the catalogue is then what it would be without it
@@ -19,6 +19,7 @@ pub struct Arguments {
 
 pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<Outcome, CliError> {
     let mut catalogue = context.open()?;
+    catalogue.stop_when(interrupt::wish()?);
     let reports = catalogue.forget(&arguments.key)?;
     let sheet = show::forgotten(&arguments.key, reports);
     Ok(Outcome {

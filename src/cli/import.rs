@@ -7,7 +7,7 @@ use importers::source::Format;
 
 use super::options::{CatalogueOptions, OutputOptions};
 use super::progress::Bar;
-use super::{CliError, Exit, Outcome};
+use super::{CliError, Exit, Outcome, interrupt};
 use crate::catalogue::{self, HandedOver, SourceFiles, Stated};
 use crate::show;
 
@@ -136,6 +136,7 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
     if let Some(files) = HandedOver::find(&arguments.source)? {
         arguments.refuse_statements()?;
         let mut catalogue = context.open()?;
+        catalogue.stop_when(interrupt::wish()?);
         let bar = Bar::new(context.quiet(), "importing");
         bar.pulse();
         let summary = catalogue.take_in(&files, arguments.dry_run);
@@ -148,6 +149,7 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
     }
     let files = arguments.files()?;
     let mut catalogue = context.open()?;
+    catalogue.stop_when(interrupt::wish()?);
     let bar = Bar::new(context.quiet(), "importing");
     bar.pulse();
     let summary = files.import(&mut catalogue, arguments.skip_bad, arguments.dry_run);

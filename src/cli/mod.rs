@@ -16,6 +16,7 @@ mod forget;
 mod given;
 mod import;
 mod instrument;
+mod interrupt;
 mod line;
 mod marks;
 mod mix;

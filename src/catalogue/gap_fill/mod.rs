@@ -15,7 +15,7 @@ mod source;
 use rusqlite::Connection;
 use vocabulary::atom::Species;
 
-use super::reconcile::{self, RankedSource, SourceReports};
+use super::reconcile::{self, Derived, RankedSource, SourceReports};
 
 pub(super) use source::{install, is_ours};
 
@@ -38,17 +38,26 @@ impl Sources {
         })
     }
 
-    /// What the calculator reports of a species of which tables report so much. What it fits, it
-    /// fits to the levels concluded from the tables alone.
-    pub fn fill(&self, species: Species, tables: &[SourceReports]) -> Option<SourceReports> {
+    /// What the calculator reports of a species of which tables, in their rank, report so much, and
+    /// what was concluded from the tables alone where that was needed: it fits to such levels.
+    pub fn fill(
+        &self,
+        species: Species,
+        tables: &[SourceReports],
+    ) -> (Option<SourceReports>, Option<Derived>) {
         if species.is_one_electron() {
-            return one_electron::reports(species, self.one_electron.as_ref()?);
+            let source = self.one_electron.as_ref();
+            return (source.and_then(|s| one_electron::reports(species, s)), None);
         }
-        let source = self.series.as_ref()?;
-        if !series::may_fill(species) || tables.iter().all(|t| t.levels.is_empty()) {
-            return None;
+        let levels = tables.iter().any(|t| !t.levels.is_empty());
+        let Some(source) = self.series.as_ref() else {
+            return (None, None);
+        };
+        if !levels || !series::may_fill(species) {
+            return (None, None);
         }
-        let held = reconcile::derive(species, tables.to_vec());
-        series::reports(species, tables, &held, source)
+        let held = reconcile::derive_ranked(species, tables);
+        let filled = series::reports(species, tables, &held, source);
+        (filled, Some(held))
     }
 }

@@ -289,6 +289,9 @@ fn unambiguous(
             .filter(|line| within(line.0, line.1))
             .map(|line| line.2)
             .collect();
+        if near.is_empty() {
+            continue;
+        }
         let with_levels = held.lines.iter().filter(|line| line.lower.is_some());
         let held_near = with_levels
             .filter(|line| within(line.wavenumber_per_cm, line.uncertainty_per_cm))

@@ -2,6 +2,7 @@
 
 use std::collections::{BTreeSet, HashMap};
 use std::io;
+use std::sync::atomic::AtomicBool;
 
 use importers::handover::{Cell, Content, FORM, Header, ScopeHeader, SourceHeader};
 use importers::source::{Completeness, SourceKind};
@@ -12,7 +13,7 @@ use vocabulary::atom::{Species, SpeciesRequest};
 use crate::catalogue::error::{CatalogueError, Result};
 use crate::catalogue::files::hex;
 use crate::catalogue::gap_fill;
-use crate::catalogue::store::{Catalogue, failed};
+use crate::catalogue::store::{Catalogue, failed, go_on};
 
 /// What is handed on.
 #[derive(Clone, Debug)]
@@ -74,6 +75,7 @@ impl Catalogue {
         let mut receiver = Late {
             receiver,
             header: Some(header),
+            stop: &self.stop,
         };
         let mut rows = 0;
         for species in species {
@@ -91,10 +93,12 @@ impl Catalogue {
 pub(super) struct Late<'r> {
     receiver: &'r mut dyn Receiver,
     header: Option<Header>,
+    stop: &'r AtomicBool,
 }
 
 impl Late<'_> {
     pub fn row(&mut self, species: Species, cells: &[Cell<'_>]) -> Result<()> {
+        go_on(self.stop)?;
         let begun = match self.header.take() {
             Some(header) => self.receiver.begin(&header),
             None => Ok(()),

@@ -4,6 +4,8 @@ use std::collections::{BTreeSet, HashSet};
 use std::fs::File;
 use std::io::Read;
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
+use std::sync::atomic::{AtomicBool, Ordering};
 
 use importers::detect::{Detected, HEAD_BYTES, detect};
 use importers::handover::{self, Header, LevelRow, LineRow, Rejected, ReportRow, SourceHeader};
@@ -13,11 +15,11 @@ use rusqlite::{Connection, OptionalExtension, TransactionBehavior, params};
 use vocabulary::atom::HalfInteger;
 
 use crate::catalogue::derive::{self, Labels};
-use crate::catalogue::error::{CatalogueError, Result};
+use crate::catalogue::error::{CatalogueError, Result, Stop};
 use crate::catalogue::ingest::{
     self, ImportSummary, Incoming, Inserts, NewLevel, NewLine, kind_number, rate_origin_number,
 };
-use crate::catalogue::store::{Catalogue, LOCKED, failed};
+use crate::catalogue::store::{Catalogue, LOCKED, failed, go_on};
 use crate::catalogue::{bundled, gap_fill};
 
 /// A file, or a folder of files by element, that the program wrote.
@@ -141,6 +143,7 @@ impl Catalogue {
         let path = self.path.clone();
         let written = failed(&path, "written");
         self.keys.take();
+        let stop = Arc::clone(&self.stop);
         let transaction = self
             .connection
             .transaction_with_behavior(TransactionBehavior::Immediate)
@@ -151,11 +154,12 @@ impl Catalogue {
             source: words(&files.header),
             ..ImportSummary::default()
         };
-        let stored = store_rows(&transaction, &path, files, sources, &mut labels)?;
+        let stored = store_rows(&transaction, &path, files, sources, (&mut labels, &stop))?;
         summary.read = stored.read;
         let (sources, mut species) = (stored.sources, stored.species);
         species.extend(install_computed(&transaction, &files.header).map_err(&written)?);
         for code in species {
+            go_on(&stop)?;
             let counts = derive::species(&transaction, &path, code, &mut labels)?;
             summary.kept += sources
                 .iter()
@@ -172,6 +176,7 @@ impl Catalogue {
         let left_out: u64 = summary.skipped.iter().map(|(_, rows)| rows).sum();
         summary.merged = summary.read - left_out - summary.kept;
         summary.unchanged = sources.iter().all(Option::is_none);
+        go_on(&stop)?;
         if !dry_run {
             transaction.commit().map_err(&written)?;
         }
@@ -192,12 +197,13 @@ fn store_rows(
     path: &Path,
     files: &HandedOver,
     sources: Vec<Option<i64>>,
-    labels: &mut Labels,
+    (labels, stop): (&mut Labels, &AtomicBool),
 ) -> Result<Stored> {
     let mut taker = Taker {
         inserts: Inserts::prepare(connection).map_err(failed(path, "written"))?,
         connection,
         labels,
+        stop,
         skipped: vec![0; sources.len()],
         sources,
         current: None,
@@ -317,6 +323,7 @@ struct Taker<'c, 'l> {
     connection: &'c Connection,
     inserts: Inserts<'c>,
     labels: &'l mut Labels,
+    stop: &'l AtomicBool,
     /// Number of each source of the header, `None` where it is held already.
     sources: Vec<Option<i64>>,
     current: Option<Run>,
@@ -339,6 +346,9 @@ impl Taker<'_, '_> {
     }
 
     fn accept(&mut self, row: ReportRow) -> std::result::Result<(), Rejected> {
+        if self.stop.load(Ordering::Relaxed) {
+            return Err(Rejected::Sink(Box::new(Stop)));
+        }
         let (source, species) = match &row {
             ReportRow::Level(level) => (level.source, level.species.code()),
             ReportRow::Line(line) => (line.source, line.species.code()),

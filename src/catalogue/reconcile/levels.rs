@@ -1,5 +1,7 @@
 //! Which level reports mean the same level.
 
+use std::collections::HashSet;
+
 use vocabulary::atom::Species;
 
 use super::choose::{Candidate, best_by_uncertainty};
@@ -42,13 +44,14 @@ pub(super) fn join(species: Species, reports: &[SourceReports]) -> Joined {
                 .energy_per_cm
                 .total_cmp(&of.levels[b].energy_per_cm)
         });
-        let mut known: Vec<(usize, usize)> = (0..of.levels.len())
-            .filter_map(|report| Some((report, taken[report]?)))
-            .collect();
+        let joined = order
+            .iter()
+            .filter_map(|&report| Some((report, taken[report]?)));
+        let mut known = Known::new(of, joined.collect());
         for report in order {
             let place = taken[report].unwrap_or_else(|| {
                 same_in_source(species, of, report, &known).unwrap_or_else(|| {
-                    known.push((report, anchors.len()));
+                    known.fresh.push((report, anchors.len()));
                     anchors.push(Anchor::new(&of.levels[report], of));
                     anchors.len() - 1
                 })
@@ -62,6 +65,46 @@ pub(super) fn join(species: Species, reports: &[SourceReports]) -> Joined {
     conclude(reports, anchors, anchor_of, apart)
 }
 
+/// Reports of one source whose anchor is known, with it; both lists by energy.
+struct Known {
+    /// Those that joined an anchor of a source before.
+    joined: Vec<(usize, usize)>,
+    /// Those that became one.
+    fresh: Vec<(usize, usize)>,
+    /// Largest 1 σ of the source, cm⁻¹.
+    widest: f64,
+}
+
+impl Known {
+    fn new(of: &SourceReports, joined: Vec<(usize, usize)>) -> Self {
+        let sigmas = of.levels.iter().map(|level| level.uncertainty_per_cm);
+        Self {
+            joined,
+            fresh: Vec::new(),
+            widest: sigmas.fold(0.0, f64::max),
+        }
+    }
+
+    /// Those within a reach of an energy.
+    fn near<'k>(
+        &'k self,
+        of: &'k SourceReports,
+        energy_per_cm: f64,
+        reach: f64,
+    ) -> impl Iterator<Item = (usize, usize)> + 'k {
+        let energy = move |entry: &(usize, usize)| of.levels[entry.0].energy_per_cm;
+        [&self.joined, &self.fresh]
+            .into_iter()
+            .flat_map(move |list| {
+                let from = list.partition_point(|entry| energy(entry) < energy_per_cm - reach);
+                list[from..]
+                    .iter()
+                    .take_while(move |entry| energy(entry) <= energy_per_cm + reach)
+                    .copied()
+            })
+    }
+}
+
 /// A row that repeats a level of its own source: same label, same J, same energy within 3 σ; where
 /// the label names configuration and term, the uncertainty of the source's scale is added, since
 /// some sources are made of parts on scales of their own. The nearest in energy is taken.
@@ -69,7 +112,7 @@ fn same_in_source(
     species: Species,
     of: &SourceReports,
     report: usize,
-    known: &[(usize, usize)],
+    known: &Known,
 ) -> Option<usize> {
     let level = &of.levels[report];
     let named = level.label.configuration.is_some() && level.label.term.is_some();
@@ -79,7 +122,7 @@ fn same_in_source(
         0.0
     };
     let distance = |other: usize| (level.energy_per_cm - of.levels[other].energy_per_cm).abs();
-    let same = |&&(earlier, _): &&(usize, usize)| {
+    let same = |&(earlier, _): &(usize, usize)| {
         let other = &of.levels[earlier];
         let sigma = level.uncertainty_per_cm.hypot(other.uncertainty_per_cm);
         level.twice_j == other.twice_j
@@ -87,11 +130,12 @@ fn same_in_source(
             && same_name(&level.label, &other.label, species)
             && distance(earlier) <= 3.0 * sigma + scale
     };
+    let reach = 3.0 * level.uncertainty_per_cm.hypot(known.widest) + scale;
     known
-        .iter()
+        .near(of, level.energy_per_cm, reach)
         .filter(same)
         .min_by(|a, b| distance(a.0).total_cmp(&distance(b.0)).then(a.0.cmp(&b.0)))
-        .map(|&(_, anchor)| anchor)
+        .map(|(_, anchor)| anchor)
 }
 
 /// One label, or one with and one without the parents of the same.
@@ -277,10 +321,11 @@ fn conclude(
     apart: Vec<Apart>,
 ) -> Joined {
     let mut levels: Vec<(usize, DerivedLevel)> = Vec::with_capacity(anchors.len());
+    let resolved = multiplets(&anchors);
     for (index, anchor) in anchors.iter().enumerate() {
-        let is_mean = anchor.twice_j.is_none() && anchor.g.is_some();
-        let resolved = |a: &Anchor| a.twice_j.is_some() && a.label.same_multiplet(&anchor.label);
-        if !(is_mean && anchors.iter().any(resolved)) {
+        let is_mean = anchor.twice_j.is_none() && anchor.g.is_some() && is_named(&anchor.label);
+        let components_held = || resolved.iter().any(|l| l.same_multiplet(&anchor.label));
+        if !(is_mean && components_held()) {
             levels.push((index, concluded(reports, anchor)));
         }
     }
@@ -303,6 +348,22 @@ fn conclude(
         level_of,
         apart,
     )
+}
+
+/// Whether a label names a multiplet.
+fn is_named(label: &Label) -> bool {
+    label.configuration.is_some() && label.term.is_some()
+}
+
+/// Names of the multiplets of which a level with J is held, each once.
+fn multiplets(anchors: &[Anchor]) -> Vec<&Label> {
+    let mut seen = HashSet::new();
+    anchors
+        .iter()
+        .filter(|a| a.twice_j.is_some() && is_named(&a.label))
+        .map(|a| &a.label)
+        .filter(|l| seen.insert((&l.configuration, &l.term)))
+        .collect()
 }
 
 fn concluded(reports: &[SourceReports], anchor: &Anchor) -> DerivedLevel {

@@ -211,10 +211,15 @@ pub fn rank(reports: &mut [SourceReports]) {
 /// Concludes levels and lines of one species from all reports of it.
 pub fn derive(species: Species, mut reports: Vec<SourceReports>) -> Derived {
     rank(&mut reports);
-    let (levels, level_of, mut apart) = levels::join(species, &reports);
-    let lines = lines::join(&reports, &levels, &level_of, &mut apart);
+    derive_ranked(species, &reports)
+}
+
+/// As [`derive`], of reports that stand in the order of [`rank`].
+pub fn derive_ranked(species: Species, reports: &[SourceReports]) -> Derived {
+    let (levels, level_of, mut apart) = levels::join(species, reports);
+    let lines = lines::join(reports, &levels, &level_of, &mut apart);
     Derived {
-        sources: reports.into_iter().map(|r| r.source).collect(),
+        sources: reports.iter().map(|r| r.source.clone()).collect(),
         levels,
         level_of,
         lines,
