@@ -107,7 +107,10 @@ fn headline(answer: &Answer) -> Vec<String> {
         .species
         .iter()
         .filter(|s| s.present)
-        .map(|s| format!("{} ({} peaks)", s.species, s.peaks))
+        .map(|s| {
+            let ending = if s.peaks == 1 { "" } else { "s" };
+            format!("{} ({} peak{ending})", s.species, s.peaks)
+        })
         .collect();
     if present.is_empty() {
         out.push("No species is shown.".into());

@@ -7,6 +7,7 @@ use vocabulary::spectrum::Line;
 use super::line::{line_object, medium_word, multiplet_cell, position_cell, transition_cell};
 use super::number::{in_table, percent, percent_in_table};
 use super::sheet::{Align, Column, Context, Sheet};
+use super::window::unjudged_notes;
 use crate::advise::marks::{
     Answer, Candidate, Dispersion, Entry, EntryState, Question, Refusal, Surveyed,
 };
@@ -246,17 +247,21 @@ fn notes(answer: &Answer, question: &Question, context: &Context) -> Vec<String>
             "Widest stretch without a mark: {low:.2} to {high:.2} nm (vacuum)."
         ));
     }
+    notes.extend(unjudged_notes(&answer.unjudged));
     if !question.not_held.is_empty() {
         notes.push(format!(
             "Nothing is held of {}.",
             question.not_held.join(", ")
         ));
     }
-    notes.push(
-        "An element without its stage counts with all stages held; a lamp at low pressure shows \
-         mostly the neutral atom (name it: \"Ar I\")."
-            .into(),
-    );
+    let ions = |c: &Candidate| c.surveyed.feature.species.stage > 1;
+    if answer.candidates.iter().any(ions) {
+        notes.push(
+            "An element without its stage counts with all stages held; a lamp at low pressure \
+             shows mostly the neutral atom (name it: \"Ar I\")."
+                .into(),
+        );
+    }
     if !context.assumed.is_empty() {
         notes.push(format!("Assumed: {}.", context.assumed.join(", ")));
     }

@@ -9,6 +9,7 @@ use super::line::{medium_word, position_cell};
 use super::marks::feature_object;
 use super::number::{percent, percent_in_table, with_uncertainty};
 use super::sheet::{Align, Column, Context, Sheet};
+use super::window::unjudged_notes;
 use crate::advise::pairs::{Answer, LeftOut, Pair, Plot, Point, Question, Usable};
 
 const COLUMNS: [Column; 6] = [
@@ -163,6 +164,7 @@ fn notes(answer: &Answer, question: &Question, shown: usize, context: &Context) 
     if !counts.is_empty() {
         notes.push(format!("Left out: {}.", counts.join(", ")));
     }
+    notes.extend(unjudged_notes(&answer.unjudged));
     if !question.not_held.is_empty() {
         notes.push(format!(
             "Nothing is held of {}.",

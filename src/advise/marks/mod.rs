@@ -11,10 +11,11 @@ use super::emission::Conditions;
 use super::error::AdviseError;
 use super::spectrum::Spectrum;
 use super::verdict::Verdict;
+use super::window::Unjudged;
 
 pub use dispersion::{Dispersion, DispersionError, Entry, EntryState, Pairing, fit};
 pub use polynomial::{Polynomial, PolynomialError, weighted};
-pub use survey::{Surveyed, survey};
+pub use survey::{Survey, Surveyed, survey};
 
 /// Light of the lamp's own other lines, over that of the mark, above which it is no mark: as for
 /// the verdict `clear`.
@@ -81,6 +82,8 @@ pub struct Answer {
     pub candidates: Vec<Candidate>,
     /// Widest stretch of the span without a mark, vacuum nm.
     pub widest_gap_nm: Option<(f64, f64)>,
+    /// Species that cannot be judged in some part of the span.
+    pub unjudged: Vec<Unjudged>,
 }
 
 impl Answer {
@@ -95,7 +98,10 @@ impl Answer {
 /// # Errors
 /// As `window`.
 pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, AdviseError> {
-    let surveyed = survey(
+    let Survey {
+        features: surveyed,
+        unjudged,
+    } = survey(
         spectra,
         &question.conditions,
         question.width,
@@ -129,6 +135,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     Ok(Answer {
         candidates,
         widest_gap_nm,
+        unjudged,
     })
 }
 

@@ -8,7 +8,7 @@ use crate::advise::emission::{Conditions, Emitter, emitters};
 use crate::advise::error::AdviseError;
 use crate::advise::scene::REACH_WIDTHS;
 use crate::advise::spectrum::Spectrum;
-use crate::advise::window::{self, WindowFeature};
+use crate::advise::window::{self, Unjudged, WindowFeature};
 use vocabulary::spectrum::Line;
 
 /// A judged feature with its lines.
@@ -25,6 +25,15 @@ pub struct Surveyed {
     pub unrated_neighbour_nm: Option<f64>,
 }
 
+/// What a span holds.
+#[derive(Clone, Debug, Default)]
+pub struct Survey {
+    /// All features, by wavelength.
+    pub features: Vec<Surveyed>,
+    /// Species that cannot be judged in some part of it.
+    pub unjudged: Vec<Unjudged>,
+}
+
 /// Judges all features of a span. The span is cut where a source's claimed band begins or ends, so
 /// that each piece is judged by the claims that hold there.
 ///
@@ -37,9 +46,10 @@ pub fn survey(
     range: &SpectralRange,
     medium: Medium,
     not_held: &[String],
-) -> Result<Vec<Surveyed>, AdviseError> {
+) -> Result<Survey, AdviseError> {
     let emitters = emitters(spectra, conditions)?;
     let mut out: Vec<Surveyed> = Vec::new();
+    let mut unjudged: Vec<Unjudged> = Vec::new();
     for piece in pieces(spectra, range) {
         let margin_nm = REACH_WIDTHS * width.at_nm(piece.vacuum_high_nm);
         let near = near(spectra, &piece, margin_nm);
@@ -52,6 +62,13 @@ pub fn survey(
         };
         let answer = window::answer(&question, &near)?;
         let unrated = unrated(&answer, spectra, &emitters);
+        for one in &answer.unrated {
+            // Of several reasons along the span the first is said, unless a later one decides more.
+            let said = |u: &Unjudged| u.species == one.species && u.decides >= one.decides;
+            if !unjudged.iter().any(said) {
+                unjudged.push(one.clone());
+            }
+        }
         for (index, feature) in answer.features.into_iter().enumerate() {
             // A feature across a cut belongs to the piece that holds its centre.
             if !piece.contains_per_cm(1e7 / feature.placed.vacuum_nm) {
@@ -87,7 +104,10 @@ pub fn survey(
             .vacuum_nm
             .total_cmp(&b.feature.placed.vacuum_nm)
     });
-    Ok(out)
+    Ok(Survey {
+        features: out,
+        unjudged,
+    })
 }
 
 /// A line without a rate: whose, where (vacuum nm), of which feature, its light by the prior's median.

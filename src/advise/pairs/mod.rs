@@ -10,9 +10,10 @@ use vocabulary::spectrum::Line;
 use super::emission::Conditions;
 pub use super::emission::UNSTATED_RATE_SIGMA;
 use super::error::AdviseError;
-use super::marks::{Surveyed, survey};
+use super::marks::{Survey, Surveyed, survey};
 use super::spectrum::Spectrum;
 use super::verdict::Verdict;
+use super::window::Unjudged;
 
 pub use plot::{Density, Plot, PlotError, Point, StageFit, plot};
 
@@ -82,6 +83,8 @@ pub struct Answer {
     pub set: Vec<(usize, Option<f64>)>,
     /// Features of the species that were left out, with the reason.
     pub left_out: Vec<(Surveyed, LeftOut)>,
+    /// Species of the mix that cannot be judged in some part of the range.
+    pub unjudged: Vec<Unjudged>,
 }
 
 /// Why a feature is not usable.
@@ -110,7 +113,7 @@ const SET: usize = 6;
 /// # Errors
 /// As `window`.
 pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, AdviseError> {
-    let surveyed = survey(
+    let Survey { features, unjudged } = survey(
         spectra,
         &question.conditions,
         question.width,
@@ -118,7 +121,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         question.medium,
         &question.not_held,
     )?;
-    let own: Vec<Surveyed> = surveyed
+    let own: Vec<Surveyed> = features
         .into_iter()
         .filter(|s| s.feature.species == question.species)
         .collect();
@@ -137,6 +140,7 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
         pairs,
         set,
         left_out,
+        unjudged,
     })
 }
 
