@@ -120,6 +120,7 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
         let reach_nm = reach(&candidates, line_nm);
         let requests = with_target(species(&arguments.among)?, &wanted);
         let range = vacuum_range(reach_nm)?;
+        source.conditions.details.far_ultraviolet = wanted.vacuum_nm < 200.0;
         let mut held = assemble::spectra(&catalogue, &requests, &source.amounts, &range, 0.0)?;
         assemble::complete(&catalogue, &mut held.spectra, &source.conditions)?;
         let passband = PassbandQuestion {

@@ -135,6 +135,7 @@ impl ConditionOptions {
     /// As [`ConditionOptions::check`], ranges to be scanned included.
     pub fn check_scans(&self, range: &SpectralRange) -> Result<Checked, CliError> {
         let mut source = self.source.check()?;
+        source.look_at(range.centre_vacuum_nm());
         let form = instrument::form(self.instrument.as_deref())?;
         source.conditions.details.instrument = form;
         let curve = match &source.conditions.details.instrument {

@@ -158,6 +158,7 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
     }
     let catalogue = context.open()?;
     let range = vacuum_range(reach_nm)?;
+    source.look_at(filter.centre_nm());
     let mut held = assemble::spectra(&catalogue, &requests, &source.amounts, &range, 0.0)?;
     assemble::complete(&catalogue, &mut held.spectra, &source.conditions)?;
     let question = Question {

@@ -95,6 +95,26 @@ pub struct CheckedSource {
     pub assumed: Vec<String>,
 }
 
+/// What is assumed of a light source of which nothing is said.
+const VISIBLE: &str = "model visible (each species as bright as its amount)";
+
+impl CheckedSource {
+    /// Says where the light lies that is looked at (vacuum nm): below 200 nm species are compared
+    /// by their strongest lines there.
+    pub fn look_at(&mut self, vacuum_nm: f64) {
+        if vacuum_nm >= 200.0 {
+            return;
+        }
+        self.conditions.details.far_ultraviolet = true;
+        for phrase in self.assumed.iter_mut().filter(|a| *a == VISIBLE) {
+            *phrase =
+                "model visible (each species as bright as its amount, in its strongest line below \
+                 200 nm)"
+                    .to_owned();
+        }
+    }
+}
+
 impl SourceOptions {
     /// Resolves what was typed, and what a file of the mix says beside it; what is typed wins.
     pub fn check(&self) -> Result<CheckedSource, CliError> {
@@ -111,7 +131,7 @@ impl SourceOptions {
         };
         let mut assumed = Vec::new();
         if model == EmissionModel::Visible {
-            assumed.push("model visible (each species as bright as its amount)".to_owned());
+            assumed.push(VISIBLE.to_owned());
         }
         let mut or_assume = |given: &Option<String>, default: &str, what: &str| {
             given.clone().unwrap_or_else(|| {

@@ -8,7 +8,8 @@ use crate::calc::shape::{Instrument, ResponseCurve};
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum EmissionModel {
     /// Each species of the mix is seen: its strongest rated line between 200 and 1000 nm (else
-    /// anywhere) has the strength of its amount.
+    /// anywhere) has the strength of its amount; its strongest below 200 nm, where the light that
+    /// is looked at lies there.
     Visible,
     /// One temperature and real amounts; ionisation by Saha where the electron density is given.
     Lte,
@@ -50,6 +51,10 @@ pub struct Details {
     pub gas: Vec<Gas>,
     /// Form of the instrument's response.
     pub instrument: InstrumentForm,
+    /// The light that is looked at lies below 200 nm. An ion that is seen there need not show
+    /// visible lines: these come from levels so high that they would make its resonance lines
+    /// brighter than all else by many powers of ten.
+    pub far_ultraviolet: bool,
 }
 
 /// A value of a species with its uncertainty.

@@ -218,7 +218,12 @@ pub fn emitters(
             is_absent: spectrum.amount == 0.0 || share.fraction == 0.0,
         };
         match conditions.model {
-            EmissionModel::Visible => emitter.factor = visible_factor(spectrum, &emitter),
+            EmissionModel::Visible => {
+                emitter.factor = {
+                    let far = conditions.details.far_ultraviolet;
+                    visible_factor(spectrum, &emitter, far)
+                }
+            }
             EmissionModel::Given if !conditions.details.intensities.is_empty() => {
                 scale(spectrum, conditions, &mut emitter)?;
             }
@@ -303,8 +308,13 @@ fn scale(
     Ok(())
 }
 
-fn visible_factor(spectrum: &Spectrum, emitter: &Emitter) -> f64 {
-    let seen = match emitter.strongest(spectrum, *VISIBLE_NM.start(), *VISIBLE_NM.end()) {
+fn visible_factor(spectrum: &Spectrum, emitter: &Emitter, far_ultraviolet: bool) -> f64 {
+    let (from_nm, to_nm) = if far_ultraviolet {
+        (0.0, *VISIBLE_NM.start())
+    } else {
+        VISIBLE_NM.into_inner()
+    };
+    let seen = match emitter.strongest(spectrum, from_nm, to_nm) {
         s if s > 0.0 => s,
         _ => emitter.strongest(spectrum, 0.0, f64::INFINITY),
     };
