@@ -252,8 +252,8 @@ impl<'a, 's> Judge<'a, 's> {
         } else if target.light.is_some() {
             "it emits nothing under these conditions"
         } else if lines.any(|l| emitter.is_unfed(l)) {
-            "nothing in the model excites it from the ground term (spin or parity forbid it); give \
-             the population of a metastable level (--metastable)"
+            "no excitation of it is known (none is dipole-allowed from the ground term, and cascades \
+             bring little); the population of a metastable level may help (--metastable)"
         } else {
             "its own rate is not known"
         }
@@ -343,7 +343,7 @@ impl<'a, 's> Judge<'a, 's> {
         }
         if !unfed.is_empty() {
             out.remarks
-                .push(format!("nothing in the model excites {}", names(unfed)));
+                .push(format!("no excitation is known of {}", names(unfed)));
         }
         if let (Some(chance), Some(&(first, ..))) = (unrated.chance, unrated.bounded.first())
             && chance >= CHANCE_NAMED
@@ -379,7 +379,7 @@ impl<'a, 's> Judge<'a, 's> {
         if emission.line.rate_per_s.is_some() {
             (
                 "usual collision strengths",
-                "lines that the model does not excite",
+                "lines without a known excitation",
             )
         } else {
             ("prior for unknown rates", "lines without a rate")

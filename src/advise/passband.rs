@@ -69,6 +69,8 @@ pub struct PassbandLine {
     /// Part of all light behind filter and detector, background included; `None` where the line or
     /// the filter there is not rated.
     pub light_fraction: Option<f64>,
+    /// Median of its part by a prior, where its light is not known but bounded.
+    pub prior_light_fraction: Option<f64>,
     /// It belongs to the target.
     pub is_target: bool,
     /// Lines of one number are components of one feature, a multiplet whose components lie closer
@@ -339,7 +341,7 @@ fn lines(
 ) -> Result<Vec<PassbandLine>, AdviseError> {
     let scene = view.scene;
     let mut out = Vec::new();
-    for (emission, passed) in scene.emissions.iter().zip(passed) {
+    for (index, (emission, passed)) in scene.emissions.iter().zip(passed).enumerate() {
         let present = !scene.emitters[emission.spectrum].is_absent;
         let transmits = passed.transmission.is_some_and(|t| t > 0.0);
         if !present || !transmits || passed.light == Some(0.0) {
@@ -354,6 +356,11 @@ fn lines(
             line: emission.line.clone(),
             transmission: passed.transmission,
             light_fraction: passed.light.filter(|_| all > 0.0).map(|l| l / all),
+            prior_light_fraction: view
+                .passed(index, passed.transmission, emission.prior.map(|p| p.light))
+                .light
+                .filter(|_| all > 0.0)
+                .map(|l| l / all),
             is_target: Some(emission.feature) == target,
             feature: emission.feature,
         });

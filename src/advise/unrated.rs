@@ -109,7 +109,9 @@ impl Unrated {
                         out.bounded.push((index, median, p.sigma_dex));
                     }
                 }
-                None if counts => out.unbounded.push(index),
+                None if counts && !is_too_weak(scene, index, part, room) => {
+                    out.unbounded.push(index);
+                }
                 None => {}
             }
         }
@@ -134,6 +136,15 @@ impl Unrated {
     pub fn decides(&self) -> bool {
         !self.unbounded.is_empty() || self.chance.is_some_and(|c| c > CHANCE_CHANGED)
     }
+}
+
+/// Whether a line could not change the verdict were it as bright as the brightest rated line of its
+/// species; a tenth of what is left is kept in hand.
+fn is_too_weak(scene: &Scene<'_>, index: usize, part: f64, room: Option<f64>) -> bool {
+    let spectrum = scene.emissions[index].spectrum;
+    let brightest =
+        scene.emitters[spectrum].strongest(&scene.spectra[spectrum], 0.0, f64::INFINITY);
+    brightest > 0.0 && brightest * part < 0.1 * room.unwrap_or(1.0)
 }
 
 /// How much a fraction may grow before its verdict changes; `None` for one that cannot get worse.

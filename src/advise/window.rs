@@ -15,6 +15,9 @@ use super::spectrum::Spectrum;
 use super::verdict::{Interference, VerdictRange, Worst};
 use crate::calc::prior::Prior;
 
+/// Lines below this part of the light in the window need no word on their width or excitation.
+const BRIGHT: f64 = 1e-6;
+
 /// A checked question.
 #[derive(Clone, Debug)]
 pub struct Question {
@@ -156,7 +159,9 @@ pub fn answer(question: &Question, spectra: &[Spectrum]) -> Result<Answer, Advis
     }
     in_order(&mut features, &mut lines);
     let unrated = judge.unjudged(&question.not_held, None);
+    let bright = |&&c: &&usize| scene.emissions[c].light.is_none_or(|l| l >= BRIGHT * total);
     let components = chosen.iter().flat_map(|&f| &scene.features[f].components);
+    let components = components.filter(bright);
     let physics = Physics::of(&scene, question.conditions.model, components.copied());
     let emits = |s: usize| chosen.iter().any(|&f| scene.features[f].spectrum == s);
     Ok(Answer {

@@ -19,6 +19,7 @@ mod passband;
 mod physics;
 mod predict;
 mod prior;
+mod scan;
 mod sheet;
 mod table;
 pub mod text;

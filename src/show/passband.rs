@@ -7,11 +7,13 @@ use serde_json::{Map, Value, json};
 use super::line::{line_object, multiplet_cell, position_cell, transition_cell};
 use super::number::{percent, percent_in_table, purity};
 use super::physics::filter_notes;
+use super::scan::{
+    density_value, density_words, temperature_value, temperature_words, tilt_value, tilt_words,
+};
 use super::sheet::{Align, Column, Context, Sheet};
 use super::vet::WORTH_A_ROW;
 use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
 use crate::advise::passband::{Answer, PassbandLine, Question, SPOILERS, Target};
-use crate::advise::scan::{DensityPoint, TemperaturePoint, TiltPoint};
 use crate::advise::{Placed, Verdict};
 
 /// How many rows the table shows.
@@ -274,6 +276,7 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
         .lines
         .iter()
         .filter(|l| l.light_fraction.is_none())
+        .filter(|l| l.prior_light_fraction.is_none_or(|f| f >= WORTH_A_ROW))
         .filter(|l| {
             l.transmission
                 .is_some_and(|t| t >= 1e-2 * question.filter.peak())
@@ -290,7 +293,7 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
         let why = if answer.physics.unfed.is_empty() {
             "no rate is known, or the detector is not"
         } else {
-            "no rate is known, nothing in the model excites them, or the detector is not known"
+            "no rate or excitation is known, or the detector is not"
         };
         notes.push(format!(
             "Come through but are not rated ({why}): {}{end}.",
@@ -305,71 +308,6 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
 fn reach_note(question: &Question) -> String {
     let (low, high) = question.background.reach_nm;
     format!("Light from {low:.1} to {high:.1} nm counts; what leaks from beyond is not known.")
-}
-
-fn temperature_words(scan: &[TemperaturePoint]) -> Option<String> {
-    let known = || scan.iter().filter_map(|p| Some((p.kt_per_cm, p.purity?)));
-    let words: Vec<String> = thinned(known().collect())
-        .iter()
-        .map(|(kt, pure)| {
-            let ev = kt / vocabulary::light::constants::PER_CM_PER_EV;
-            format!("{} at {}", purity(*pure), temperature(ev))
-        })
-        .collect();
-    (!words.is_empty()).then(|| {
-        format!(
-            "Purity (lines alone) by electron temperature: {}.",
-            words.join(", ")
-        )
-    })
-}
-
-/// A temperature with three digits.
-pub(super) fn temperature(ev: f64) -> String {
-    let digits = format!("{ev:.2e}");
-    format!("{} eV", digits.parse::<f64>().unwrap_or(ev))
-}
-
-fn density_words(scan: &[DensityPoint]) -> Option<String> {
-    let known = || {
-        scan.iter()
-            .filter_map(|p| Some((p.electron_density_per_m3, p.purity?)))
-    };
-    let words: Vec<String> = thinned(known().collect())
-        .iter()
-        .map(|(density, pure)| format!("{} at {density:.1e} m⁻³", purity(*pure)))
-        .collect();
-    (!words.is_empty()).then(|| {
-        format!(
-            "Purity (lines alone) by electron density: {}.",
-            words.join(", ")
-        )
-    })
-}
-
-fn tilt_words(tilts: &[TiltPoint]) -> Option<String> {
-    let known = tilts
-        .iter()
-        .filter_map(|p| Some((p.tilt_deg, (p.transmission?, p.purity?))))
-        .collect();
-    let words: Vec<String> = thinned(known)
-        .iter()
-        .map(|(tilt, (through, pure))| {
-            format!("{tilt}° {} at {}", purity(*pure), percent(*through))
-        })
-        .collect();
-    (!words.is_empty()).then(|| format!("Purity and transmission by tilt: {}.", words.join(", ")))
-}
-
-/// At most six entries, first and last among them.
-pub(super) fn thinned<T: Copy>(all: Vec<T>) -> Vec<T> {
-    const MOST: usize = 6;
-    if all.len() <= MOST {
-        return all;
-    }
-    (0..MOST)
-        .map(|k| all[k * (all.len() - 1) / (MOST - 1)])
-        .collect()
 }
 
 fn object(answer: &Answer, mut context: Context, notes: &[String]) -> Map<String, Value> {
@@ -457,41 +395,11 @@ fn line(line: &PassbandLine) -> Option<Value> {
     let mut object = line_object(&line.line, &line.placed);
     object.insert("transmission".into(), json!(line.transmission));
     object.insert("light_fraction".into(), json!(line.light_fraction));
+    object.insert(
+        "prior_light_fraction".into(),
+        json!(line.prior_light_fraction),
+    );
     object.insert("is_target".into(), json!(line.is_target));
     object.insert("feature".into(), json!(line.feature));
     Some(Value::Object(object))
-}
-
-fn temperature_value(point: &TemperaturePoint) -> Value {
-    json!({
-        "electron_temperature_ev": point.kt_per_cm / vocabulary::light::constants::PER_CM_PER_EV,
-        "purity": point.purity,
-        "interference_fraction": point.interference_fraction,
-        "verdict": word(point.interference_fraction),
-    })
-}
-
-fn density_value(point: &DensityPoint) -> Value {
-    json!({
-        "electron_density_per_m3": point.electron_density_per_m3,
-        "purity": point.purity,
-        "interference_fraction": point.interference_fraction,
-        "verdict": word(point.interference_fraction),
-    })
-}
-
-fn tilt_value(point: &TiltPoint) -> Value {
-    json!({
-        "tilt_deg": point.tilt_deg,
-        "seen_centre_nm": point.centre_nm,
-        "transmission": point.transmission,
-        "purity": point.purity,
-        "interference_fraction": point.interference_fraction,
-        "verdict": word(point.interference_fraction),
-    })
-}
-
-/// What the rated lines alone say.
-pub(super) fn word(fraction: Option<f64>) -> &'static str {
-    fraction.map_or(Verdict::Unrated, Verdict::of).word()
 }

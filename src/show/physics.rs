@@ -38,17 +38,16 @@ fn left_out(physics: &Physics) -> Vec<String> {
     }
     if !physics.by_cascades.is_empty() {
         notes.push(format!(
-            "Some lines of {} have upper levels that only cascades reach in this model; their \
-             intervals count in direct excitation by a usual collision strength (within a factor \
-             of 10).",
+            "Some lines of {} have upper levels that only cascades reach; their intervals count in \
+             direct excitation by a usual collision strength.",
             names(&physics.by_cascades)
         ));
     }
     if !physics.unfed.is_empty() {
         notes.push(format!(
-            "Some lines of {} have upper levels that nothing in the model excites (spin or parity \
-             forbid it): they are not rated; --metastable gives the population of a level that \
-             does.",
+            "Some lines of {} have upper levels that no dipole-allowed excitation reaches, and \
+             cascades less than other excitation usually does: they are not rated; --metastable \
+             may give a way there.",
             names(&physics.unfed)
         ));
     }

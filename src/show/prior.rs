@@ -24,8 +24,8 @@ pub(super) fn prior_note(features: &[WindowFeature], model: EmissionModel) -> Op
         n => format!("{n} features"),
     };
     let which = if model == EmissionModel::Coronal {
-        "lines without a rate, or that the model does not excite, are bounded by what is usual \
-         (rated lines of like kind; collision strengths within a factor of 10)"
+        "lines without a rate or a known excitation are bounded by what is usual (rated lines of \
+         like kind; collision strengths within a factor of 10)"
     } else {
         "lines without a rate are bounded by a prior learned from rated lines of like kind"
     };

@@ -7,9 +7,9 @@ use vocabulary::light::constants::PER_CM_PER_EV;
 
 use super::line::{line_object, multiplet_cell, position_cell, rate_cell, transition_cell};
 use super::number::{percent, percent_in_table, short};
-use super::passband::{temperature, thinned, word};
 use super::physics::physics_notes;
 use super::prior::prior_note;
+use super::scan::{temperature, thinned, word};
 use super::sheet::{Align, Column, Context, Sheet};
 use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
 use crate::advise::vet::{ALTERNATIVES_NM, Alternative, Answer, Interferer, Question, ScanPoint};
@@ -149,19 +149,19 @@ fn alternative_words(answer: &Answer) -> String {
 }
 
 fn one_alternative(alternative: &Alternative) -> String {
-    let strength = match alternative.relative_strength {
-        Some(r) => format!(" ({} of its light", percent(r)),
-        None => " (".to_owned(),
-    };
-    let verdict = if alternative.verdict.high == Verdict::Clear {
-        String::new()
+    let mut words: Vec<String> = Vec::new();
+    if let Some(strength) = alternative.relative_strength {
+        words.push(format!("{} of its light", percent(strength)));
+    }
+    if alternative.verdict.high != Verdict::Clear {
+        words.push(alternative.verdict.to_string());
+    }
+    let position = alternative.placed.wavelength_nm;
+    if words.is_empty() {
+        format!("{position:.3}")
     } else {
-        format!(", {}", alternative.verdict)
-    };
-    format!(
-        "{:.3}{strength}{verdict})",
-        alternative.placed.wavelength_nm
-    )
+        format!("{position:.3} ({})", words.join(", "))
+    }
 }
 
 /// The components of one feature of another species.

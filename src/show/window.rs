@@ -43,7 +43,7 @@ pub struct Wish {
 pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     let shown = chosen(answer, wish.strongest);
     let mut notes = notes(answer, &context, &shown);
-    let counts = answer.features.iter().filter(|f| counts(f)).count();
+    let counts = answer.features.iter().filter(|f| counts(answer, f)).count();
     let dark = answer.features.len() - counts;
     if dark > 0 {
         notes.insert(
@@ -87,15 +87,19 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
 /// Below this part of the light in the window a feature is as good as absent.
 const DARK: f64 = 1e-9;
 
-/// Whether a feature is worth a word.
-fn counts(feature: &WindowFeature) -> bool {
-    feature.light_fraction.is_none_or(|f| f >= DARK)
+/// Whether a feature is worth a word: by its light, or by what a prior allows it.
+fn counts(answer: &Answer, feature: &WindowFeature) -> bool {
+    if let Some(light) = feature.light_fraction {
+        return light >= DARK;
+    }
+    let mut lines = feature.components.iter().map(|&l| &answer.lines[l]);
+    lines.any(|l| l.prior_light_fraction.is_none_or(|f| f >= DARK))
 }
 
 /// Features to show, by wavelength.
 fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<usize> {
     let mut all: Vec<usize> = (0..answer.features.len())
-        .filter(|&f| counts(&answer.features[f]))
+        .filter(|&f| counts(answer, &answer.features[f]))
         .collect();
     if let Some(count) = strongest {
         let light = |f: usize| answer.features[f].light_fraction.unwrap_or(-1.0);
@@ -128,7 +132,7 @@ fn headline(answer: &Answer, wish: &Wish, count: usize) -> Vec<String> {
     let species: BTreeSet<String> = answer
         .features
         .iter()
-        .filter(|f| counts(f))
+        .filter(|f| counts(answer, f))
         .map(|f| f.species.to_string())
         .collect();
     let plural = if count == 1 { "feature" } else { "features" };
@@ -174,7 +178,7 @@ fn verdict_words(answer: &Answer, verdict: Verdict) -> Option<String> {
     let mut of: Vec<&WindowFeature> = answer
         .features
         .iter()
-        .filter(|f| f.verdict.central == verdict && counts(f))
+        .filter(|f| f.verdict.central == verdict && counts(answer, f))
         .collect();
     if of.is_empty() {
         return None;

@@ -1,6 +1,8 @@
 //! Populations of the corona model: excited by electrons from levels that hold the atoms, decaying
 //! by radiation alone.
 
+use vocabulary::light::constants::RYDBERG_PER_CM;
+
 use super::conditions::{Conditions, LevelName, Metastable};
 use crate::advise::climb::{levels_at, named_levels, nearest_levels};
 use crate::advise::error::AdviseError;
@@ -15,7 +17,8 @@ use crate::calc::plasma::{
 pub struct Corona {
     /// Levels that hold the atoms, with the fraction in each.
     held: Vec<(usize, f64)>,
-    /// By level, what electrons put there; `None` where nothing in the model does.
+    /// By level, what electrons put there; `None` where nothing in the model does, or where
+    /// excitation that the model does not know usually does more.
     fed: Vec<Option<Fed>>,
     /// By level, the population that an unknown collision strength would give, m³.
     estimates: Vec<f64>,
@@ -60,13 +63,19 @@ impl Corona {
         };
         let model = Model::new(spectrum, ground, groups);
         let base = model.emission(&shares, kt).map_err(of_plasma)?;
+        let density = conditions.electron_density_per_m3;
+        let most = model.most(kt, density);
+        let mut estimates = model.estimates(&shares, kt, &base).map_err(of_plasma)?;
+        for (estimate, most) in estimates.iter_mut().zip(&most) {
+            *estimate = estimate.min(*most);
+        }
         let mut corona = Self {
             held: model.held(&shares),
-            estimates: model.estimates(&shares, kt, &base).map_err(of_plasma)?,
+            estimates,
             fed: Vec::new(),
-            electron_density_per_m3: conditions.electron_density_per_m3,
+            electron_density_per_m3: density,
         };
-        corona.fed = corona.feeds(&base, spectrum);
+        corona.fed = corona.feeds(&base, spectrum, &most);
         for (index, metastable) in metastables.iter().enumerate() {
             if metastable.relative_sigma > 0.0 {
                 let mut more = shares.clone();
@@ -78,7 +87,7 @@ impl Corona {
         Ok(Some(corona))
     }
 
-    fn feeds(&self, base: &CoronalEmission, spectrum: &Spectrum) -> Vec<Option<Fed>> {
+    fn feeds(&self, base: &CoronalEmission, spectrum: &Spectrum, most: &[f64]) -> Vec<Option<Fed>> {
         let target = if spectrum.species.charge() == 0 {
             Target::Neutral
         } else {
@@ -93,17 +102,21 @@ impl Corona {
                 }
                 let direct = base.direct_m3_per_s[level];
                 let cascade = feed - direct;
-                // Without an allowed way what the model leaves out counts as an uncertainty.
+                // Without an allowed way what the model leaves out counts as an uncertainty; where
+                // that is more than the cascades, nothing is known.
                 let left_out = if direct > 0.0 {
                     0.0
                 } else {
                     self.estimates[level] * decay
                 };
+                if left_out > feed {
+                    return None;
+                }
                 let sigma = (direct * factor_sigma)
                     .hypot(cascade * factor_sigma)
                     .hypot(left_out);
                 Some(Fed {
-                    population_m3: feed / decay,
+                    population_m3: (feed / decay).min(most[level]),
                     relative_sigma: sigma / feed,
                     by_cascades: direct == 0.0,
                 })
@@ -153,7 +166,7 @@ impl Corona {
     }
 
     /// The population (m³) that an unknown collision strength would give to a level which nothing
-    /// in the model feeds; `None` for any other.
+    /// in the model feeds, or cascades less than that would; `None` for any other.
     pub fn estimate_m3(&self, level: u32) -> Option<f64> {
         let index = level as usize;
         let free = self.fed.get(index)?.is_none() && !self.held.iter().any(|h| h.0 == index);
@@ -165,6 +178,9 @@ impl Corona {
 pub(super) fn relative_of_factor(factor: f64) -> f64 {
     factor.ln().powi(2).exp_m1().sqrt()
 }
+
+/// Effective quantum number up to which a usual collision strength holds.
+const FIRST_EXCITED: f64 = 2.0;
 
 /// Levels with the part of their group's atoms that each holds.
 type Group = Vec<(usize, f64)>;
@@ -226,6 +242,7 @@ struct Model {
     ground: Group,
     metastables: Vec<Group>,
     charge: u8,
+    limit_per_cm: Option<f64>,
 }
 
 impl Model {
@@ -266,6 +283,7 @@ impl Model {
             ground,
             metastables,
             charge: spectrum.species.charge(),
+            limit_per_cm: spectrum.limit_per_cm,
         }
     }
 
@@ -291,6 +309,31 @@ impl Model {
         coronal_emission(&self.levels, &self.lines, &self.held(shares), kt_per_cm)
     }
 
+    /// By level, the population (m³) beyond which collisions would take atoms out as fast as they
+    /// bring them: that of LTE at the electron density; without one there is no bound.
+    fn most(&self, kt_per_cm: f64, density_per_m3: Option<f64>) -> Vec<f64> {
+        let Some(density) = density_per_m3 else {
+            return vec![f64::INFINITY; self.levels.len()];
+        };
+        let weight = |l: &CoronalLevel| l.weight * (-l.energy_per_cm / kt_per_cm).exp();
+        let ground: f64 = self.ground.iter().map(|h| weight(&self.levels[h.0])).sum();
+        let bound = |l: &CoronalLevel| weight(l) / ground / density;
+        self.levels.iter().map(bound).collect()
+    }
+
+    /// The usual collision strength into a level: along a series it falls as n*⁻³, as all
+    /// strengths do.
+    fn usual_strength(&self, level: usize) -> f64 {
+        let strength = unknown_collision_strength(self.charge);
+        let Some(limit) = self.limit_per_cm else {
+            return strength;
+        };
+        let binding = (limit - self.levels[level].energy_per_cm).max(1.0);
+        let core = f64::from(self.charge) + 1.0;
+        let n = core * (RYDBERG_PER_CM / binding).sqrt();
+        strength * (FIRST_EXCITED / n).powi(3).min(1.0)
+    }
+
     /// By level, the population (m³) that a collision strength of the usual size would give.
     fn estimates(
         &self,
@@ -298,7 +341,6 @@ impl Model {
         kt_per_cm: f64,
         base: &CoronalEmission,
     ) -> Result<Vec<f64>, crate::calc::plasma::PlasmaError> {
-        let strength = unknown_collision_strength(self.charge);
         let rest = (1.0 - shares.iter().sum::<f64>()).max(0.0);
         let groups: Vec<(f64, f64, f64)> = std::iter::once((&self.ground, rest))
             .chain(self.metastables.iter().zip(shares.iter().copied()))
@@ -318,6 +360,7 @@ impl Model {
             for &(from, weight, share) in &groups {
                 let energy = self.levels[level].energy_per_cm - from;
                 if energy > 0.0 && share > 0.0 {
+                    let strength = self.usual_strength(level);
                     let rate = excitation_by_strength(energy, strength, weight, kt_per_cm)?;
                     out[level] += share * rate / decay;
                 }
