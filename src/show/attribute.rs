@@ -6,7 +6,7 @@ use vocabulary::light::{Air, Medium};
 use super::line::{line_object, medium_word};
 use super::number::{percent, percent_in_table, with_uncertainty};
 use super::sheet::{Align, Column, Context, Sheet};
-use super::window::stages;
+use super::unjudged::stages;
 use crate::advise::attribute::{Answer, Candidate, Mark, PeakAnswer, Question, SpeciesAnswer};
 use crate::advise::{Placed, placed};
 use vocabulary::light::constants::PER_CM_PER_EV;

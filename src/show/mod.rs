@@ -24,6 +24,7 @@ mod sheet;
 mod table;
 pub mod text;
 mod tune;
+mod unjudged;
 mod vet;
 mod window;
 

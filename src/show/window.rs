@@ -13,8 +13,9 @@ use super::number::{percent, percent_in_table};
 use super::physics::physics_notes;
 use super::prior::{prior_note, put_prior};
 use super::sheet::{Align, Column, Context, Sheet};
+pub(super) use super::unjudged::{unjudged_notes, unrated_value};
 use crate::advise::Verdict;
-use crate::advise::window::{Answer, Unjudged, WindowFeature, WindowLine};
+use crate::advise::window::{Answer, WindowFeature, WindowLine};
 
 /// Columns; the heading of the first names the medium where it is one for all rows.
 const COLUMNS: [Column; 9] = [
@@ -352,63 +353,6 @@ pub(super) fn lower_bound_note(species: &[vocabulary::atom::Species]) -> Option<
     })
 }
 
-/// What cannot be judged, and why.
-pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
-    let mut notes = Vec::new();
-    let listed = |decides: bool, reason: &str| {
-        let of: Vec<&str> = unrated
-            .iter()
-            .filter(|u| u.decides == decides && u.reason == reason)
-            .map(|u| u.species.as_str())
-            .collect();
-        stages(&of)
-    };
-    let mut reasons: Vec<&str> = unrated.iter().map(|u| u.reason.as_str()).collect();
-    reasons.sort_unstable();
-    reasons.dedup();
-    for reason in &reasons {
-        let names = listed(true, reason);
-        if !names.is_empty() {
-            notes.push(format!(
-                "{names}: {reason}, so no line there can be called clear."
-            ));
-        }
-    }
-    for reason in &reasons {
-        let names = listed(false, reason);
-        if !names.is_empty() {
-            notes.push(format!(
-                "Not judged, as {reason}: {names}; name the stage to have it count."
-            ));
-        }
-    }
-    notes
-}
-
-/// Stages that follow each other are written as a range: `Fe III..XXVI`.
-pub(super) fn stages(species: &[&str]) -> String {
-    let read = |name: &str| name.parse::<vocabulary::atom::Species>().ok();
-    let mut runs: Vec<(&str, &str)> = Vec::new();
-    for &name in species {
-        let follows = |last: &str| {
-            read(last).zip(read(name)).is_some_and(|(a, b)| {
-                (a.atomic_number, a.isotope, a.stage + 1) == (b.atomic_number, b.isotope, b.stage)
-            })
-        };
-        match runs.last_mut() {
-            Some(run) if follows(run.1) => run.1 = name,
-            _ => runs.push((name, name)),
-        }
-    }
-    let written = runs
-        .iter()
-        .map(|&(first, last)| match last.rsplit_once(' ') {
-            Some((_, stage)) if first != last => format!("{first}..{stage}"),
-            _ => first.to_owned(),
-        });
-    written.collect::<Vec<_>>().join(", ")
-}
-
 /// Features that say the same are said in one sentence.
 fn join_like(notes: &mut Vec<String>) {
     let mut joined: Vec<(String, Vec<String>)> = Vec::new();
@@ -473,14 +417,6 @@ fn object(
     object.insert("features".into(), Value::Array(features));
     object.insert("unrated".into(), unrated_value(&answer.unrated));
     object
-}
-
-/// The stable keys of what cannot be judged.
-pub(super) fn unrated_value(unrated: &[Unjudged]) -> Value {
-    unrated
-        .iter()
-        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides}))
-        .collect()
 }
 
 fn feature_object(feature: &WindowFeature, components: &[Option<usize>]) -> Value {
