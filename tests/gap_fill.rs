@@ -17,7 +17,7 @@ use lineclear::calc::series::LabelledLevel;
 use lineclear::catalogue::{Catalogue, SourceFiles};
 use lineclear::vocabulary;
 use vocabulary::atom::HalfInteger;
-use vocabulary::spectrum::{PositionOrigin, RateOrigin};
+use vocabulary::spectrum::{LineKind, PositionOrigin, RateOrigin};
 
 /// All bundled tables imported as a user would: a catalogue without the calculator.
 fn tables_alone() -> MutexGuard<'static, Catalogue> {
@@ -51,6 +51,10 @@ fn computed_never_displaces_measured() {
             // Tables of one-electron species that are theory themselves: the better theory counts.
             if line.position_origin == PositionOrigin::Computed {
                 assert!(species.is_one_electron(), "{species}: {line:?}");
+                continue;
+            }
+            // What no table lists gives way to what is computed with a rate.
+            if line.kind == LineKind::Ritz {
                 continue;
             }
             let same = filled

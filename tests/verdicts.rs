@@ -276,15 +276,17 @@ fn a_target_without_a_rate_is_unrated_and_still_listed() {
 
 #[test]
 fn a_strong_scope_counts_the_chance_of_unlisted_lines() {
-    // 20 listed lines in 200 nm: 0.1 per nm; expected 3 × 0.1 × 0.1 = 0.03, chance 2.96 %: clear.
+    // 10 listed lines within 10 % of 500 nm: 0.1 per nm; expected 3 × 0.1 × 0.1 = 0.03, chance
+    // 2.96 %: clear. Lines farther off do not count.
     let listed = |n: usize| -> Vec<(f64, Option<f64>)> {
         (0..n)
-            .map(|i| (510.0 + 80.0 * i as f64 / n as f64, Some(1e6)))
+            .map(|i| (510.0 + 39.0 * i as f64 / n as f64, Some(1e6)))
+            .chain((0..n).map(|i| (560.0 + 39.0 * i as f64 / n as f64, Some(1e6))))
             .collect()
     };
     let few = ask(&[
         target(),
-        spectrum(IRON, &listed(20), Some(Completeness::Strong)),
+        spectrum(IRON, &listed(10), Some(Completeness::Strong)),
     ]);
     let helium = feature_of(&few, HELIUM);
     assert!((helium.unlisted_chance - (1.0 - (-0.03f64).exp())).abs() < 1e-12);
@@ -294,10 +296,10 @@ fn a_strong_scope_counts_the_chance_of_unlisted_lines() {
         helium.remarks
     );
     assert_eq!(helium.verdict.central, Verdict::Clear);
-    // 100 lines: expected 0.15, chance 13.9 %: clear, and said.
+    // 50 lines: expected 0.15, chance 13.9 %: clear, and said.
     let some = ask(&[
         target(),
-        spectrum(IRON, &listed(100), Some(Completeness::Strong)),
+        spectrum(IRON, &listed(50), Some(Completeness::Strong)),
     ]);
     let helium = feature_of(&some, HELIUM);
     assert_eq!(helium.verdict.central, Verdict::Clear);
@@ -306,12 +308,79 @@ fn a_strong_scope_counts_the_chance_of_unlisted_lines() {
         "{:?}",
         helium.remarks
     );
-    // 400 lines: expected 0.6, chance 45 %: unrated.
+    // 200 lines: expected 0.6, chance 45 %: unrated.
     let many = ask(&[
         target(),
-        spectrum(IRON, &listed(400), Some(Completeness::Strong)),
+        spectrum(IRON, &listed(200), Some(Completeness::Strong)),
     ]);
     assert_eq!(feature_of(&many, HELIUM).verdict.central, Verdict::Unrated);
+    // Sodium has no open d or f shell: as many unlisted lines as listed ones, 0.2, chance 18 %.
+    let simple = ask(&[
+        target(),
+        spectrum(
+            Species::new(11, 1),
+            &listed(200),
+            Some(Completeness::Strong),
+        ),
+    ]);
+    let helium = feature_of(&simple, HELIUM);
+    assert!((helium.unlisted_chance - (1.0 - (-0.2f64).exp())).abs() < 1e-12);
+    assert_eq!(helium.verdict.central, Verdict::Clear);
+}
+
+#[test]
+fn a_first_ion_of_which_nothing_is_claimed_counts_as_dense_as_the_neutral_atom() {
+    let listed: Vec<(f64, Option<f64>)> = (0..50)
+        .map(|i| (510.0 + 0.78 * f64::from(i), Some(1e6)))
+        .collect();
+    let neutral = spectrum(IRON, &listed, Some(Completeness::Strong));
+    let stage = |stage| {
+        spectrum(
+            Species::new(26, stage),
+            &[(540.0, Some(1e6))],
+            Some(Completeness::GroundTerm),
+        )
+    };
+    let chance = |others: &[Spectrum]| {
+        let mut spectra = vec![target()];
+        spectra.extend_from_slice(others);
+        feature_of(&ask(&spectra), HELIUM).unlisted_chance
+    };
+    // 50 lines in 100 nm: expected 3 × 0.5 × 0.1 = 0.15 of the neutral atom, and as many of the ion.
+    let alone = chance(std::slice::from_ref(&neutral));
+    assert!((alone - (1.0 - (-0.15f64).exp())).abs() < 1e-12, "{alone}");
+    let both = chance(&[neutral.clone(), stage(2)]);
+    assert!((both - (1.0 - (-0.30f64).exp())).abs() < 1e-12, "{both}");
+    // A source that shows the neutral atom need not show the third spectrum.
+    let third = chance(&[neutral, stage(3)]);
+    assert!((third - alone).abs() < 1e-12, "{third}");
+}
+
+#[test]
+fn a_feature_far_from_the_middle_is_judged_by_what_is_known_where_it_lies() {
+    let typed: TypedRange = "380..620nm".parse().unwrap();
+    let question = Question {
+        range: typed.resolve(Medium::Vacuum, Air::standard()).unwrap(),
+        medium: Medium::Vacuum,
+        width: SpectralWidth::from_nm(0.1),
+        conditions: Conditions {
+            model: EmissionModel::Visible,
+            kt_per_cm: KT_1EV_PER_CM,
+            electron_density_per_m3: None,
+            gas_temperature_k: 1000.0,
+            details: Details::default(),
+        },
+        not_held: Vec::new(),
+    };
+    // Iron is claimed from 400 to 600 nm only: helium at 390 nm cannot be judged, at 500 nm it can.
+    let helium = spectrum(HELIUM, &[(390.0, Some(1e8)), (500.0, Some(1e8))], None);
+    let iron = spectrum(IRON, &[(550.0, Some(1e6))], Some(Completeness::Full));
+    let answer = answer(&question, &[helium, iron]).unwrap();
+    let words: Vec<Verdict> = (answer.features.iter())
+        .filter(|f| f.species == HELIUM)
+        .map(|f| f.verdict.central)
+        .collect();
+    assert_eq!(words, [Verdict::Unrated, Verdict::Clear]);
 }
 
 #[test]

@@ -38,6 +38,8 @@ BY_FRACTIONS = "multiplet+LS"
 BAND_GAP = 1.5
 BAND_LINES = 8
 BAND_END_NM = 2500.0
+# Spectra of an open d or f shell: a list claims a place only where it holds so many lines within 10 % of it.
+NEIGHBOURHOOD = 0.1
 
 
 def read(path):
@@ -241,12 +243,16 @@ class Ion:
             g = f"{2 * float(level['j']) + 1:g}" if level["j"] != "" else ""
             yield [self.species, level["text"], f"{level['sigma']:.4g}", level["configuration"], level["term"], level["j"], g]
 
-    def band(self):
-        """[from, to] in nm that the lines of the first entry cover without a gap of more than a factor 1.5, or None."""
+    def bands(self):
+        """[from, to] in nm of each band that the lines of the first entry cover; empty where they claim nothing.
+
+        Lines lie without a gap of more than a factor 1.5, eight at least. A spectrum of an open d or f shell has lines everywhere, so
+        that a sparse stretch of its list shows what was not remembered, not what is not there: there the neighbourhood must hold eight.
+        """
         if self.settings.get("band") == "none":
-            return None
+            return []
         if "band_nm" in self.settings:
-            return self.settings["band_nm"]
+            return [self.settings["band_nm"]]
         runs, run = [], []
         first = (row for row in self.entered_lines if not row["row"].startswith("second"))
         for wavelength in sorted(float(row["wavelength_nm"]) for row in first):
@@ -255,7 +261,40 @@ class Ion:
                 run = []
             run.append(wavelength)
         best = max(runs + [run], key=len)
-        return [math.floor(best[0]), min(math.ceil(best[-1]), BAND_END_NM)] if len(best) >= BAND_LINES else None
+        if len(best) < BAND_LINES:
+            return []
+        whole = [math.floor(best[0]), min(math.ceil(best[-1]), BAND_END_NM)]
+        return dense_bands(best, whole) if has_open_d_or_f_shell(self.species) else [whole]
+
+
+def dense_bands(wavelengths, whole):
+    """The stretches of a band, in steps of 1 nm, with eight lines within 10 % of every place."""
+    def is_dense(nm):
+        return sum(abs(wavelength / nm - 1) <= NEIGHBOURHOOD for wavelength in wavelengths) >= BAND_LINES
+
+    bands = []
+    for nm in range(int(whole[0]), int(whole[1])):
+        if not (is_dense(nm) and is_dense(nm + 1)):
+            continue
+        if bands and bands[-1][1] == nm:
+            bands[-1][1] = nm + 1
+        else:
+            bands.append([nm, nm + 1])
+    return [band for band in bands if band[1] > band[0] * (1 + NEIGHBOURHOOD)]
+
+
+def has_open_d_or_f_shell(species):
+    """By the number of electrons and, from the sixth row on, the nuclear charge; as `AtomClass` of the program has it."""
+    element, stage = species.split()
+    charge, electrons = ELEMENTS.index(element) + 1, ELEMENTS.index(element) + 2 - STAGES.index(stage) - 1
+    if electrons <= 18:
+        return False
+    if electrons <= 54:
+        return 3 <= electrons - (18 if electrons <= 36 else 36) <= 10
+    valence = electrons - 54
+    if charge >= 70 and valence >= 15:
+        return 3 <= valence - 14 <= 10
+    return charge >= 57
 
 
 def ion_name(folder):
@@ -279,6 +318,10 @@ def sha256(path):
     with open(path, "rb") as file:
         return hashlib.sha256(file.read()).hexdigest()
 
+
+ELEMENTS = """H He Li Be B C N O F Ne Na Mg Al Si P S Cl Ar K Ca Sc Ti V Cr Mn Fe Co Ni Cu Zn Ga Ge As Se Br Kr Rb Sr Y Zr Nb Mo Tc Ru Rh Pd Ag
+Cd In Sn Sb Te I Xe Cs Ba La Ce Pr Nd Pm Sm Eu Gd Tb Dy Ho Er Tm Yb Lu Hf Ta W Re Os Ir Pt Au Hg Tl Pb Bi""".split()
+STAGES = "I II III IV V VI".split()
 
 LEVEL_MAPPING = """species = { column = "species" }
 energy = { column = "energy_per_cm", unit = "cm-1" }
@@ -321,8 +364,7 @@ def source_toml(ion):
            f"citation = {quoted(citation)}", 'licence = "CC0-1.0"', 'kind = "curated"',
            f"level_scale_uncertainty_per_cm = {settings['scale_uncertainty_per_cm']}", f"energy_scale = {quoted(settings['energy_scale'])}",
            "notes = [" + ", ".join(map(quoted, notes_of(ion))) + "]"]
-    band = ion.band()
-    if band:
+    for band in ion.bands():
         out += ["", "[[scope]]", f"species = [{quoted(ion.species)}]", f"band_nm = [{float(band[0])}, {float(band[1])}]", 'completeness = "strong"']
     for name, rows, records, mapping, ignore in (("levels.csv", len(ion.levels), "levels", LEVEL_MAPPING, []),
                                                  ("lines.csv", len(ion.lines), "lines", LINE_MAPPING, ["row"])):
@@ -355,7 +397,7 @@ def main():
         sys.exit(f"decisions for ions without a folder: {sorted(unknown)}")
     rated = [row for ion in ions for row in ion.lines if row[9]]
     print(f"{len(ions)} ions: {sum(len(i.levels) for i in ions)} levels, {sum(len(i.lines) for i in ions)} lines, {len(rated)} rates "
-          f"({sum(r[11] == 'derived' for r in rated)} derived), {sum(1 for i in ions if i.band())} with a scope")
+          f"({sum(r[11] == 'derived' for r in rated)} derived), {sum(1 for i in ions if i.bands())} with a scope")
 
 
 if __name__ == "__main__":

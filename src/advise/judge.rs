@@ -3,12 +3,13 @@
 use vocabulary::atom::Species;
 use vocabulary::light::{Air, Medium, PositionMedium};
 
-use super::coverage::{CHANCE_SAID, CHANCE_UNRATED, Coverage};
+use super::coverage::Coverage;
 use super::error::AdviseError;
 use super::position::placed_or_vacuum;
 use super::scene::Scene;
 use super::spectrum::Spectrum;
 use super::sum::Sum;
+use super::unlisted::{Knowledge, say_unlisted};
 use super::unrated::Unrated;
 use super::verdict::{Interference, VerdictRange, Worst};
 use super::window::{Unjudged, WindowFeature};
@@ -21,7 +22,7 @@ const CHANCE_NAMED: f64 = 0.01;
 /// Judges the features of a scene.
 pub(super) struct Judge<'a, 's> {
     scene: &'a Scene<'s>,
-    coverage: Vec<Coverage>,
+    known: Knowledge<'a, 's>,
     /// Species typed of which nothing is held.
     nothing_held: bool,
 }
@@ -29,35 +30,11 @@ pub(super) struct Judge<'a, 's> {
 impl<'a, 's> Judge<'a, 's> {
     /// `centre_nm` (vacuum) is where the scope of the sources is looked up.
     pub(super) fn new(scene: &'a Scene<'s>, centre_nm: f64, nothing_held: bool) -> Self {
-        let coverage = (0..scene.spectra.len())
-            .map(|s| Coverage::at(&scene.spectra[s], &scene.emitters[s], centre_nm))
-            .collect();
         Self {
             scene,
-            coverage,
+            known: Knowledge::new(scene, centre_nm),
             nothing_held,
         }
-    }
-
-    /// Whether a species without knowledge spoils the verdicts of others: it does where its stage
-    /// was named, and where no stage of its element is known here.
-    pub(super) fn decides(&self, spectrum: usize) -> bool {
-        let this = &self.scene.spectra[spectrum];
-        let known = |c: &Coverage| !matches!(c, Coverage::Nothing { .. });
-        if known(&self.coverage[spectrum]) || self.scene.emitters[spectrum].is_absent {
-            return false;
-        }
-        let same_element = |s: &Spectrum| {
-            s.species.atomic_number == this.species.atomic_number
-                && s.species.isotope == this.species.isotope
-        };
-        let element_known = self
-            .scene
-            .spectra
-            .iter()
-            .zip(&self.coverage)
-            .any(|(s, c)| same_element(s) && known(c));
-        this.named || !element_known
     }
 
     pub(super) fn complete_down_to(&self) -> Vec<(Species, f64)> {
@@ -68,7 +45,7 @@ impl<'a, 's> Judge<'a, 's> {
         self.scene
             .spectra
             .iter()
-            .zip(&self.coverage)
+            .zip(self.known.at_centre().iter())
             .filter_map(known)
             .collect()
     }
@@ -80,16 +57,18 @@ impl<'a, 's> Judge<'a, 's> {
             .map(|typed| Unjudged {
                 species: typed.clone(),
                 reason: "nothing is held of it".into(),
+                counted: false,
                 decides: true,
             })
             .collect();
-        for (index, coverage) in self.coverage.iter().enumerate() {
-            let Coverage::Nothing { ground_term } = *coverage else {
+        for (index, coverage) in self.known.at_centre().iter().enumerate() {
+            let Coverage::Nothing { ground_term, .. } = *coverage else {
                 continue;
             };
             if self.scene.emitters[index].is_absent || Some(index) == target {
                 continue;
             }
+            let decides = self.known.decides(self.known.at_centre(), index);
             let reason = if ground_term {
                 "only lines from its ground term are held here"
             } else {
@@ -98,7 +77,8 @@ impl<'a, 's> Judge<'a, 's> {
             out.push(Unjudged {
                 species: self.scene.spectra[index].species.to_string(),
                 reason: reason.into(),
-                decides: self.decides(index),
+                counted: !decides && self.known.stands_in(index),
+                decides,
             });
         }
         out
@@ -391,26 +371,23 @@ impl<'a, 's> Judge<'a, 's> {
         let target = &self.scene.features[index];
         let light = target.light.unwrap_or(0.0);
         let width_nm = self.scene.width.at_nm(target.nm);
-        let mut expected = 0.0;
-        let mut likeliest = (0.0, target.spectrum);
+        let mut expected: Vec<(f64, Species)> = Vec::new();
         let mut blind: Vec<Species> = Vec::new();
-        for (s, coverage) in self.coverage.iter().enumerate() {
+        let coverage = self.known.at(target.nm);
+        for (s, known) in coverage.iter().enumerate() {
             if s == target.spectrum || self.scene.emitters[s].is_absent {
                 continue;
             }
-            match coverage.expected_unlisted(light, width_nm) {
-                Some(number) => {
-                    expected += number;
-                    if number > likeliest.0 {
-                        likeliest = (number, s);
-                    }
-                }
-                None if self.decides(s) => {
+            let number = match known.expected_unlisted(light, width_nm) {
+                Some(number) => number,
+                None if self.known.decides(&coverage, s) => {
                     out.verdict = VerdictRange::UNRATED;
                     blind.push(self.scene.spectra[s].species);
+                    continue;
                 }
-                None => {}
-            }
+                None => self.known.stand_in(&coverage, s, width_nm),
+            };
+            expected.push((number, self.scene.spectra[s].species));
         }
         if let Some(first) = blind.first() {
             let more = blind.len() - 1;
@@ -427,22 +404,8 @@ impl<'a, 's> Judge<'a, 's> {
             out.remarks
                 .push("nothing is held of a species that was asked for".into());
         }
-        let species = self.scene.spectra[likeliest.1].species;
-        self.chance(1.0 - (-expected).exp(), species, out);
-    }
-
-    fn chance(&self, chance: f64, likeliest: Species, out: &mut WindowFeature) {
-        out.unlisted_chance = chance;
-        let said = format!(
-            "{:.0} % chance that an unlisted line interferes, most likely of {likeliest}",
-            100.0 * chance
-        );
-        if chance > CHANCE_UNRATED {
-            out.verdict = VerdictRange::UNRATED;
-            out.remarks.push(said);
-        } else if chance >= CHANCE_SAID {
-            out.remarks.push(said);
-        }
+        expected.sort_by(|a, b| b.0.total_cmp(&a.0));
+        say_unlisted(&expected, out);
     }
 }
 

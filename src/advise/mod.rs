@@ -12,6 +12,7 @@ mod error;
 mod feature;
 pub mod hyperfine;
 mod judge;
+pub mod ledger;
 pub mod marks;
 mod median;
 pub mod pairs;
@@ -27,11 +28,13 @@ mod spectrum;
 mod sum;
 mod target;
 pub mod tune;
+mod unlisted;
 mod unrated;
 mod verdict;
 pub mod vet;
 pub mod window;
 
+pub use coverage::{UNLISTED_IN_COMPLEX, UNLISTED_IN_SIMPLE, unlisted_per_listed};
 pub use emission::{
     Conditions, Details, EmissionModel, Entry, Gas, GivenIntensity, InstrumentForm, LevelName,
     Metastable,

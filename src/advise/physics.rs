@@ -60,7 +60,8 @@ impl Physics {
             let emission = &scene.emissions[index];
             let spectrum = &scene.spectra[emission.spectrum];
             let emitter = &scene.emitters[emission.spectrum];
-            if emitter.is_absent {
+            // What no table lists and nobody rates plays its part through the prior alone.
+            if emitter.is_absent || emission.line.is_unlisted_and_unrated() {
                 continue;
             }
             for width in emission.pressure.parts() {

@@ -109,6 +109,8 @@ impl Unrated {
                         out.bounded.push((index, median, p.sigma_dex));
                     }
                 }
+                // Lines that no table lists are held together with the prior alone.
+                None if emission.line.is_unlisted_and_unrated() => {}
                 None if counts && !is_too_weak(scene, index, part, room) => {
                     out.unbounded.push(index);
                 }

@@ -94,6 +94,9 @@ pub struct Unjudged {
     pub reason: String,
     /// Verdicts of others are `unrated` because of it.
     pub decides: bool,
+    /// It does not decide, but its unlisted lines are counted as if they lay as dense as those of
+    /// the stage of its element that is covered.
+    pub counted: bool,
 }
 
 /// The answer.
@@ -115,6 +118,31 @@ pub struct Answer {
     pub air_extrapolated: bool,
     /// What the answer rests on.
     pub physics: Physics,
+}
+
+/// Light below which a line that no table lists is not shown unless asked for, as a part of that of the
+/// brightest feature, by the prior for unknown rates.
+pub const FAINT: f64 = 1e-3;
+
+impl Answer {
+    /// Whether a feature is made of lines alone that no table lists and nobody rates: they follow
+    /// from levels.
+    pub fn is_unlisted(&self, feature: &WindowFeature) -> bool {
+        (feature.components.iter()).all(|&l| self.lines[l].line.is_unlisted_and_unrated())
+    }
+
+    /// Whether a feature is unlisted and, by the prior for unknown rates, below [`FAINT`] of the
+    /// brightest.
+    pub fn is_faint(&self, feature: &WindowFeature) -> bool {
+        let prior = |f: &WindowFeature| -> Option<f64> {
+            let parts = f.components.iter().map(|&l| &self.lines[l]);
+            parts.map(|l| l.prior_light_fraction).sum()
+        };
+        let brightest = (self.features.iter())
+            .filter_map(|f| f.light_fraction)
+            .fold(0.0, f64::max);
+        self.is_unlisted(feature) && prior(feature).is_some_and(|light| light < FAINT * brightest)
+    }
 }
 
 /// Answers the question from what is held of each species: lines from at least [`REACH_WIDTHS`]

@@ -14,6 +14,7 @@ use super::error::{CatalogueError, Result};
 use super::files::{hex, source_checksum};
 use super::gap_fill;
 use super::ingest::{self, Incoming};
+use super::reconcile;
 use super::sources::retract;
 use super::store::{Catalogue, LOCKED, failed};
 
@@ -61,8 +62,8 @@ pub(super) fn is_bundled(key: &str) -> Result<bool> {
     Ok(false)
 }
 
-/// SHA-256 over names and contents of all bundled files and the calculator's revision: names the
-/// whole set.
+/// SHA-256 over names and contents of all bundled files and the revisions of the calculator and of the
+/// rule: names the whole set.
 fn bundle_checksum() -> String {
     let mut names: Vec<_> = Tables::iter().collect();
     names.sort();
@@ -74,6 +75,7 @@ fn bundle_checksum() -> String {
         }
     }
     hash.update(gap_fill::REVISION);
+    hash.update(reconcile::REVISION);
     hex(&hash.finalize())
 }
 
@@ -178,6 +180,7 @@ fn replace(
         species.extend(store(&transaction, &path, source, &mut labels)?);
     }
     species.extend(gap_fill::install(&transaction).map_err(&written)?);
+    species.extend(of_an_older_rule(&transaction).map_err(&written)?);
     let total = 2 * species.len() as u64;
     for (done, &code) in species.iter().enumerate() {
         progress((species.len() + done) as u64, total);
@@ -185,13 +188,32 @@ fn replace(
     }
     transaction
         .execute(
-            "INSERT OR REPLACE INTO about VALUES ('bundle', ?1)",
-            [bundle_checksum()],
+            "INSERT OR REPLACE INTO about VALUES ('bundle', ?1), ('rule', ?2)",
+            [bundle_checksum().as_str(), reconcile::REVISION],
         )
         .map_err(&written)?;
     transaction.commit().map_err(&written)?;
     progress(total, total);
     Ok(())
+}
+
+/// All species held, where another revision of the rule made their lines.
+fn of_an_older_rule(connection: &Connection) -> rusqlite::Result<BTreeSet<i64>> {
+    let made_by: Option<String> = connection
+        .query_row("SELECT value FROM about WHERE name = 'rule'", [], |row| {
+            row.get(0)
+        })
+        .optional()?;
+    if made_by.as_deref() == Some(reconcile::REVISION) {
+        return Ok(BTreeSet::new());
+    }
+    connection
+        .prepare(
+            "SELECT species FROM level UNION SELECT species FROM line
+              UNION SELECT species FROM level_report UNION SELECT species FROM line_report",
+        )?
+        .query_map([], |row| row.get(0))?
+        .collect()
 }
 
 fn store(

@@ -94,7 +94,7 @@ pub(super) fn conclude(
     let computed = gap_fill::Sources::held(connection).map_err(failed(path, "read"))?;
     reconcile::rank(&mut reports);
     let (filled, of_tables) = computed.fill(species, &reports);
-    let derived = match (filled, of_tables) {
+    let mut derived = match (filled, of_tables) {
         (None, Some(derived)) => derived,
         (filled, _) => {
             reports.extend(filled);
@@ -106,6 +106,7 @@ pub(super) fn conclude(
         .iter()
         .map(|r| r.levels.iter().map(|l| l.own_row).collect())
         .collect();
+    reconcile::add_ritz(species, &reports, &mut derived);
     Ok((derived, own_rows))
 }
 
@@ -254,6 +255,7 @@ pub(super) const fn line_kind(number: u8) -> LineKind {
         1 => LineKind::Mean,
         2 => LineKind::Blend,
         3 => LineKind::Isotope,
+        4 => LineKind::Ritz,
         _ => LineKind::Line,
     }
 }

@@ -584,5 +584,6 @@ pub(super) const fn kind_number(kind: LineKind) -> u8 {
         LineKind::Mean => 1,
         LineKind::Blend => 2,
         LineKind::Isotope => 3,
+        LineKind::Ritz => 4,
     }
 }

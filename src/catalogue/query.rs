@@ -5,7 +5,9 @@ use std::sync::Arc;
 
 use rusqlite::Row;
 use vocabulary::atom::{HalfInteger, Species};
-use vocabulary::spectrum::{Completeness, Level, Line, Parity, PositionOrigin, Scope, Strength};
+use vocabulary::spectrum::{
+    Completeness, Level, Line, LineKind, Parity, PositionOrigin, Scope, Strength,
+};
 
 use super::derive::{line_kind, position_origin, rate_origin};
 use super::error::Result;
@@ -112,7 +114,7 @@ impl Catalogue {
         let read = || -> rusqlite::Result<Vec<Strength>> {
             self.connection
                 .prepare_cached(
-                    "SELECT wavenumber_per_cm, rate_per_s, lower, upper, position_origin
+                    "SELECT wavenumber_per_cm, rate_per_s, lower, upper, position_origin, kind
                        FROM line
                       WHERE species = ?1
                       ORDER BY wavenumber_per_cm, number",
@@ -123,7 +125,8 @@ impl Catalogue {
                         rate_per_s: row.get(1)?,
                         lower: row.get(2)?,
                         upper: row.get(3)?,
-                        computed: position_origin(row.get(4)?) == PositionOrigin::Computed,
+                        computed: position_origin(row.get(4)?) == PositionOrigin::Computed
+                            || line_kind(row.get(5)?) == LineKind::Ritz,
                     })
                 })?
                 .collect()

@@ -26,9 +26,10 @@ pub struct SourceRow {
     pub notes: Vec<String>,
     /// It came with the program.
     pub bundled: bool,
-    /// Line reports held from it.
+    /// Line reports held from it; of the calculator, which reports nothing, lines whose position or
+    /// rate it made.
     pub lines: u64,
-    /// Level reports held from it.
+    /// Level reports held from it; of the calculator levels that it made.
     pub levels: u64,
     /// Species it reports.
     pub species: u64,
@@ -43,13 +44,25 @@ impl Catalogue {
                     "WITH l AS (SELECT source, count(*) AS n, count(DISTINCT species) AS s
                                   FROM line_report GROUP BY source),
                           e AS (SELECT source, count(*) AS n, count(DISTINCT species) AS s
-                                  FROM level_report GROUP BY source)
+                                  FROM level_report GROUP BY source),
+                          made AS (SELECT id FROM source
+                                    WHERE kind = 'computed' AND id NOT IN (SELECT source FROM l)),
+                          ml AS (SELECT source, count(*) AS n, count(DISTINCT species) AS s
+                                   FROM (SELECT position_source AS source, species FROM line
+                                          UNION ALL
+                                         SELECT rate_source, species FROM line
+                                          WHERE rate_source <> position_source)
+                                  WHERE source IN made GROUP BY source),
+                          me AS (SELECT source, count(*) AS n FROM level
+                                  WHERE source IN made GROUP BY source)
                      SELECT key, title, citation, licence, kind, notes, bundled,
-                            coalesce(l.n, 0), coalesce(e.n, 0),
-                            max(coalesce(l.s, 0), coalesce(e.s, 0))
+                            coalesce(l.n, ml.n, 0), coalesce(e.n, me.n, 0),
+                            max(coalesce(l.s, ml.s, 0), coalesce(e.s, 0))
                        FROM source
                        LEFT JOIN l ON l.source = source.id
                        LEFT JOIN e ON e.source = source.id
+                       LEFT JOIN ml ON ml.source = source.id
+                       LEFT JOIN me ON me.source = source.id
                       ORDER BY key",
                 )?
                 .query_map([], |row| {

@@ -10,7 +10,7 @@ use super::options::{
 };
 use super::{CliError, Exit, Outcome, assemble, describe};
 use crate::advise::pressure_reach_nm;
-use crate::advise::window::{self, Answer, Question, REACH_WIDTHS};
+use crate::advise::window::{self, Answer, Question, REACH_WIDTHS, WindowLine};
 use crate::catalogue::Catalogue;
 use crate::show::{self, Context, Wish};
 
@@ -43,6 +43,9 @@ pub struct Arguments {
     /// Show only the N brightest features
     #[arg(long, value_name = "N", value_parser = clap::value_parser!(u32).range(1..))]
     strongest: Option<u32>,
+    /// Show also lines that no table lists and that are faint by the prior for unknown rates
+    #[arg(long)]
+    faint: bool,
     /// Exit with status 3 unless every feature is at least this clear
     #[arg(long, value_enum, value_name = "VERDICT")]
     require: Option<Required>,
@@ -79,10 +82,11 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
         typed: format!("{} ({})", arguments.range.trim(), read_as(&question)),
         components: arguments.components,
         strongest: arguments.strongest.map(|n| n as usize),
+        faint: arguments.faint,
     };
     let sheet = show::window(
         &answer,
-        describe(&catalogue, &answer, &question, &checked)?,
+        describe(&catalogue, &answer, &question, &checked, arguments.faint)?,
         &wish,
     );
     Ok(Outcome {
@@ -101,12 +105,14 @@ pub(super) fn species(lists: &[String]) -> Result<Vec<SpeciesRequest>, CliError>
     Ok(requests)
 }
 
-/// `--require` asks for the upper end of the interval; an answer without a feature requires that
+/// `--require` asks for the upper end of the interval of each feature that a table lists; what lines
+/// without a rate may do to it is part of its verdict. An answer without a feature requires that
 /// the window could be judged.
 fn meets(answer: &Answer, required: Required) -> bool {
     answer
         .features
         .iter()
+        .filter(|f| !answer.is_unlisted(f))
         .all(|f| required.allows(f.verdict.high))
         && answer.unrated.iter().all(|u| !u.decides)
 }
@@ -125,8 +131,10 @@ fn describe(
     answer: &Answer,
     question: &Question,
     checked: &Checked,
+    faint: bool,
 ) -> Result<Context, CliError> {
-    let lines = answer.lines.iter().map(|l| &l.line);
+    let shown = |l: &&WindowLine| faint || !answer.is_faint(&answer.features[l.feature]);
+    let lines = answer.lines.iter().filter(shown).map(|l| &l.line);
     let mut context = describe::context("window", catalogue, question.medium, checked, lines)?;
     let mut put = |key: &str, value| context.conditions.insert(key.to_owned(), value);
     put(

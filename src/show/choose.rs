@@ -6,7 +6,7 @@ use super::number::{percent, percent_in_table, purity};
 use super::passband::{FILTER, headline, judgement_notes, put_target};
 use super::physics::filter_notes;
 use super::sheet::{Align, Column, Context, Sheet};
-use super::window::unrated_value;
+use super::unjudged::unrated_value;
 use crate::advise::Wanted;
 use crate::advise::choose::{Answer, Choice};
 

@@ -40,6 +40,7 @@ const fn kind_word(kind: LineKind) -> &'static str {
         LineKind::Mean => "mean",
         LineKind::Blend => "blend",
         LineKind::Isotope => "isotope",
+        LineKind::Ritz => "ritz",
     }
 }
 

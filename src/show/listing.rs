@@ -141,11 +141,19 @@ pub fn sources(rows: &[SourceRow], path: &str) -> Sheet {
             r.citation.clone(),
         ]
     };
-    let lines: u64 = rows.iter().map(|r| r.lines).sum();
+    let of = |computed: bool| {
+        let rows = rows.iter().filter(|r| (r.kind == "computed") == computed);
+        rows.map(|r| r.lines).sum::<u64>()
+    };
+    let made = match of(true) {
+        0 => String::new(),
+        made => format!(" and {made} computed lines or rates"),
+    };
     Sheet {
         headline: vec![format!(
-            "{} sources with {lines} line reports in {path}.",
-            rows.len()
+            "{} sources with {} line reports{made} in {path}.",
+            rows.len(),
+            of(false)
         )],
         columns: SOURCE_COLUMNS.to_vec(),
         rows: rows.iter().map(cells).collect(),

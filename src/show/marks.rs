@@ -7,7 +7,7 @@ use vocabulary::spectrum::Line;
 use super::line::{line_object, medium_word, multiplet_cell, position_cell, transition_cell};
 use super::number::{in_table, percent, percent_in_table};
 use super::sheet::{Align, Column, Context, Sheet};
-use super::window::unjudged_notes;
+use super::unjudged::unjudged_notes;
 use crate::advise::marks::{
     Answer, Candidate, Dispersion, Entry, EntryState, Question, Refusal, Surveyed,
 };

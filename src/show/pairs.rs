@@ -9,7 +9,7 @@ use super::line::{medium_word, position_cell};
 use super::marks::feature_object;
 use super::number::{percent, percent_in_table, with_uncertainty};
 use super::sheet::{Align, Column, Context, Sheet};
-use super::window::unjudged_notes;
+use super::unjudged::unjudged_notes;
 use crate::advise::pairs::{Answer, LeftOut, Pair, Plot, Point, Question, Usable};
 
 const COLUMNS: [Column; 6] = [

@@ -11,8 +11,9 @@ use super::scan::{
     density_value, density_words, temperature_value, temperature_words, tilt_value, tilt_words,
 };
 use super::sheet::{Align, Column, Context, Sheet};
+use super::unjudged::{unjudged_notes, unrated_value};
 use super::vet::WORTH_A_ROW;
-use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
+use super::window::{lower_bound_note, sources_cell};
 use crate::advise::passband::{Answer, PassbandLine, Question, SPOILERS, Target};
 use crate::advise::{Placed, Verdict};
 
@@ -272,15 +273,17 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
         let target_name = name(&target.line, &target.placed);
         notes.push(format!("{target_name}: {}.", target.remarks.join("; ")));
     }
+    let open = |l: &&PassbandLine| {
+        let comes_through = |t| t >= 1e-2 * question.filter.peak();
+        l.light_fraction.is_none() && l.transmission.is_some_and(comes_through)
+    };
+    let unlisted = |l: &&PassbandLine| l.line.is_unlisted_and_unrated();
     let unrated: Vec<String> = answer
         .lines
         .iter()
-        .filter(|l| l.light_fraction.is_none())
+        .filter(open)
+        .filter(|l| !unlisted(l))
         .filter(|l| l.prior_light_fraction.is_none_or(|f| f >= WORTH_A_ROW))
-        .filter(|l| {
-            l.transmission
-                .is_some_and(|t| t >= 1e-2 * question.filter.peak())
-        })
         .map(|l| format!("{} {:.3}", l.line.species, l.placed.wavelength_nm))
         .collect();
     if !unrated.is_empty() {
@@ -298,6 +301,13 @@ pub(super) fn judgement_notes(answer: &Answer, question: &Question) -> Vec<Strin
         notes.push(format!(
             "Come through but are not rated ({why}): {}{end}.",
             unrated[..unrated.len().min(ROWS)].join(", ")
+        ));
+    }
+    let ritz = answer.lines.iter().filter(open).filter(unlisted).count();
+    if ritz > 0 {
+        notes.push(format!(
+            "In no table, but following from levels that are (Ritz): {ritz} of the lines that come \
+             through; the prior for unknown rates counts them."
         ));
     }
     notes.extend(unjudged_notes(&answer.unrated));

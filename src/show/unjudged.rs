@@ -4,13 +4,21 @@ use serde_json::{Value, json};
 
 use crate::advise::window::Unjudged;
 
+/// The stable keys of what cannot be judged.
+pub(super) fn unrated_value(unrated: &[Unjudged]) -> Value {
+    unrated
+        .iter()
+        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides, "counted": u.counted}))
+        .collect()
+}
+
 /// What cannot be judged, and why.
 pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
     let mut notes = Vec::new();
-    let listed = |decides: bool, reason: &str| {
+    let listed = |decides: bool, counted: bool, reason: &str| {
         let of: Vec<&str> = unrated
             .iter()
-            .filter(|u| u.decides == decides && u.reason == reason)
+            .filter(|u| u.decides == decides && u.counted == counted && u.reason == reason)
             .map(|u| u.species.as_str())
             .collect();
         stages(&of)
@@ -19,7 +27,7 @@ pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
     reasons.sort_unstable();
     reasons.dedup();
     for reason in &reasons {
-        let names = listed(true, reason);
+        let names = listed(true, false, reason);
         if !names.is_empty() {
             notes.push(format!(
                 "{names}: {reason}, so no line there can be called clear."
@@ -27,7 +35,14 @@ pub(super) fn unjudged_notes(unrated: &[Unjudged]) -> Vec<String> {
         }
     }
     for reason in &reasons {
-        let names = listed(false, reason);
+        let names = listed(false, true, reason);
+        if !names.is_empty() {
+            notes.push(format!(
+                "{names}: {reason}; unlisted ones are counted as if as dense as those of the other \
+                 stage; name the stage to have it decide."
+            ));
+        }
+        let names = listed(false, false, reason);
         if !names.is_empty() {
             notes.push(format!(
                 "Not judged, as {reason}: {names}; name the stage to have it count."
@@ -59,12 +74,4 @@ pub(super) fn stages(species: &[&str]) -> String {
             _ => first.to_owned(),
         });
     written.collect::<Vec<_>>().join(", ")
-}
-
-/// The stable keys of what cannot be judged.
-pub(super) fn unrated_value(unrated: &[Unjudged]) -> Value {
-    unrated
-        .iter()
-        .map(|u| json!({"species": u.species, "reason": u.reason, "decides": u.decides}))
-        .collect()
 }

@@ -11,7 +11,8 @@ use super::physics::physics_notes;
 use super::prior::prior_note;
 use super::scan::{temperature, thinned, word};
 use super::sheet::{Align, Column, Context, Sheet};
-use super::window::{lower_bound_note, sources_cell, unjudged_notes, unrated_value};
+use super::unjudged::{unjudged_notes, unrated_value};
+use super::window::{lower_bound_note, sources_cell};
 use crate::advise::vet::{ALTERNATIVES_NM, Alternative, Answer, Interferer, Question, ScanPoint};
 use crate::advise::{Placed, Verdict};
 

@@ -13,9 +13,9 @@ use super::number::{percent, percent_in_table};
 use super::physics::physics_notes;
 use super::prior::{prior_note, put_prior};
 use super::sheet::{Align, Column, Context, Sheet};
-pub(super) use super::unjudged::{unjudged_notes, unrated_value};
+use super::unjudged::{unjudged_notes, unrated_value};
 use crate::advise::Verdict;
-use crate::advise::window::{Answer, WindowFeature, WindowLine};
+use crate::advise::window::{Answer, FAINT, WindowFeature, WindowLine};
 
 /// Columns; the heading of the first names the medium where it is one for all rows.
 const COLUMNS: [Column; 9] = [
@@ -38,26 +38,33 @@ pub struct Wish {
     pub components: bool,
     /// Show only so many features, the brightest.
     pub strongest: Option<usize>,
+    /// Show also what no table lists and the prior for unknown rates takes to be faint.
+    pub faint: bool,
 }
 
 /// Builds the sheet of a window.
 pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
-    let shown = chosen(answer, wish.strongest);
+    let lit: Vec<usize> = (0..answer.features.len())
+        .filter(|&f| counts(answer, &answer.features[f]))
+        .collect();
+    let dark = answer.features.len() - lit.len();
+    let bright: Vec<usize> = (lit.iter().copied())
+        .filter(|&f| wish.faint || !answer.is_faint(&answer.features[f]))
+        .collect();
+    let shown = chosen(answer, bright.clone(), wish.strongest);
     let mut notes = notes(answer, &context, &shown);
-    let counts = answer.features.iter().filter(|f| counts(answer, f)).count();
-    let dark = answer.features.len() - counts;
+    if let Some(note) = unlisted_note(answer, lit.len() - bright.len()) {
+        notes.insert(0, note);
+    }
     if dark > 0 {
         notes.insert(
             0,
             format!("Left out: features with less than 1e-9 of the light ({dark})."),
         );
     }
-    if shown.len() < counts {
-        let some = shown.len();
-        notes.insert(
-            0,
-            format!("Shown: the {some} brightest of {counts} features."),
-        );
+    if shown.len() < bright.len() {
+        let (some, all) = (shown.len(), bright.len());
+        notes.insert(0, format!("Shown: the {some} brightest of {all} features."));
     }
     let medium = one_medium(answer, &shown);
     let rows = if wish.components {
@@ -76,7 +83,7 @@ pub fn window(answer: &Answer, context: Context, wish: &Wish) -> Sheet {
     };
     let object = object(answer, &shown, context, &notes);
     Sheet {
-        headline: headline(answer, wish, counts),
+        headline: headline(answer, wish, &bright),
         columns,
         rows,
         notes,
@@ -98,10 +105,7 @@ fn counts(answer: &Answer, feature: &WindowFeature) -> bool {
 }
 
 /// Features to show, by wavelength.
-fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<usize> {
-    let mut all: Vec<usize> = (0..answer.features.len())
-        .filter(|&f| counts(answer, &answer.features[f]))
-        .collect();
+fn chosen(answer: &Answer, mut all: Vec<usize>, strongest: Option<usize>) -> Vec<usize> {
     if let Some(count) = strongest {
         let light = |f: usize| answer.features[f].light_fraction.unwrap_or(-1.0);
         all.sort_by(|&a, &b| light(b).total_cmp(&light(a)).then(a.cmp(&b)));
@@ -111,6 +115,26 @@ fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<usize> {
     all
 }
 
+/// What stands among the features although no table lists it.
+fn unlisted_note(answer: &Answer, hidden: usize) -> Option<String> {
+    let unlisted = (answer.features.iter())
+        .filter(|f| answer.is_unlisted(f))
+        .count();
+    let shown = unlisted - hidden;
+    let faint = if hidden > 0 {
+        format!(
+            "{hidden} more, below {} of the brightest by the prior for unknown rates, not shown \
+             (--faint shows them)",
+            percent(FAINT)
+        )
+    } else {
+        "none left out".to_owned()
+    };
+    (unlisted > 0).then(|| {
+        format!("In no table, but following from levels that are (Ritz): {shown} of these features; {faint}.")
+    })
+}
+
 /// The medium of all positions shown, where it is one.
 fn one_medium(answer: &Answer, shown: &[usize]) -> Option<PositionMedium> {
     let mut media = shown.iter().map(|&f| answer.features[f].placed.medium);
@@ -118,8 +142,8 @@ fn one_medium(answer: &Answer, shown: &[usize]) -> Option<PositionMedium> {
     media.all(|m| m == first).then_some(first)
 }
 
-fn headline(answer: &Answer, wish: &Wish, count: usize) -> Vec<String> {
-    if answer.features.is_empty() {
+fn headline(answer: &Answer, wish: &Wish, counted: &[usize]) -> Vec<String> {
+    if counted.is_empty() {
         let end = if answer.unrated.iter().any(|u| u.decides) {
             "the window cannot be judged (see below)".to_owned()
         } else {
@@ -130,12 +154,9 @@ fn headline(answer: &Answer, wish: &Wish, count: usize) -> Vec<String> {
             wish.typed
         )];
     }
-    let species: BTreeSet<String> = answer
-        .features
-        .iter()
-        .filter(|f| counts(answer, f))
-        .map(|f| f.species.to_string())
-        .collect();
+    let features = || counted.iter().map(|&f| &answer.features[f]);
+    let species: BTreeSet<String> = features().map(|f| f.species.to_string()).collect();
+    let count = counted.len();
     let plural = if count == 1 { "feature" } else { "features" };
     let first = format!(
         "{}: {count} {plural} of {} species.",
@@ -150,7 +171,7 @@ fn headline(answer: &Answer, wish: &Wish, count: usize) -> Vec<String> {
         Verdict::Swamped,
         Verdict::Unrated,
     ] {
-        out.extend(verdict_words(answer, verdict));
+        out.extend(verdict_words(features(), verdict));
     }
     out
 }
@@ -175,12 +196,11 @@ fn beyond_scope(answer: &Answer) -> String {
 /// How many features a verdict's line of words names.
 const NAMED: usize = 5;
 
-fn verdict_words(answer: &Answer, verdict: Verdict) -> Option<String> {
-    let mut of: Vec<&WindowFeature> = answer
-        .features
-        .iter()
-        .filter(|f| f.verdict.central == verdict && counts(answer, f))
-        .collect();
+fn verdict_words<'f>(
+    features: impl Iterator<Item = &'f WindowFeature>,
+    verdict: Verdict,
+) -> Option<String> {
+    let mut of: Vec<&WindowFeature> = features.filter(|f| f.verdict.central == verdict).collect();
     if of.is_empty() {
         return None;
     }
@@ -308,7 +328,7 @@ pub(super) fn sources_cell<'l>(lines: impl Iterator<Item = &'l Line>) -> String 
 }
 
 /// A long key is broken behind its first hyphen.
-fn broken(key: &str) -> String {
+pub(super) fn broken(key: &str) -> String {
     match key.split_once('-') {
         Some((head, tail)) if key.len() > 10 => format!("{head}-\n{tail}"),
         _ => key.to_owned(),
@@ -318,6 +338,9 @@ fn broken(key: &str) -> String {
 fn notes(answer: &Answer, context: &Context, shown: &[usize]) -> Vec<String> {
     let mut notes = Vec::new();
     for feature in shown.iter().map(|&f| &answer.features[f]) {
+        if answer.is_unlisted(feature) {
+            continue;
+        }
         if !feature.remarks.is_empty() {
             let name = format!("{} {:.3}", feature.species, feature.placed.wavelength_nm);
             notes.push(format!("{name}: {}.", feature.remarks.join("; ")));

@@ -41,6 +41,9 @@ pub enum LineKind {
     Blend,
     /// A line of one isotope.
     Isotope,
+    /// One transition that no table lists: it follows from two measured levels. Its rate is computed
+    /// or not known.
+    Ritz,
 }
 
 /// Parity of a level.
@@ -108,6 +111,14 @@ pub struct Line {
     pub kind: LineKind,
 }
 
+impl Line {
+    /// Whether no table lists it and nobody rates it: it follows from two levels alone, and only the
+    /// prior for unknown rates says how strong it may be.
+    pub fn is_unlisted_and_unrated(&self) -> bool {
+        self.kind == LineKind::Ritz && self.rate_per_s.is_none()
+    }
+}
+
 /// Down to which strength a source claims to list the lines of a species.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, PartialOrd, Ord)]
 pub enum Completeness {
@@ -164,7 +175,7 @@ pub struct Strength {
     pub wavenumber_per_cm: f64,
     /// Rate, s⁻¹, where known.
     pub rate_per_s: Option<f64>,
-    /// Its position is computed: no table lists it.
+    /// No table lists it: it was computed, or follows from levels alone.
     pub computed: bool,
     /// Number of the lower level.
     pub lower: Option<u32>,

@@ -361,7 +361,7 @@ fn derived_rates_against_morton() {
 }
 
 /// What is claimed as complete: of Morton's lines above 3 % of the strongest inside the claimed bands (optically thin, 5800 K, kT = 4033 cm-1), the
-/// entered tables hold 95 %, and no ion misses more than 20 % or more than six.
+/// entered tables hold 96 %, and no ion misses more than 20 % or more than six.
 #[test]
 fn claimed_bands_hold_the_strong_lines_of_morton() {
     let paper = paper_lines();
@@ -369,20 +369,22 @@ fn claimed_bands_hold_the_strong_lines_of_morton() {
     for ion in ions() {
         let text = std::fs::read_to_string(ion.folder.join("source.toml")).unwrap();
         let source: toml::Table = text.parse().unwrap();
-        let Some(scope) = source.get("scope") else {
+        let Some(scopes) = source.get("scope") else {
             continue;
         };
-        let band: Vec<f64> = scope[0]["band_nm"]
-            .as_array()
-            .unwrap()
-            .iter()
-            .map(|x| x.as_float().unwrap())
+        let bands: Vec<(f64, f64)> = (scopes.as_array().unwrap().iter())
+            .map(|scope| {
+                let end = |i: usize| scope["band_nm"][i].as_float().unwrap();
+                (end(0), end(1))
+            })
             .collect();
-        let (all, lost) = strong_lines(
-            ion,
-            paper.get(&ion.species).map_or(&[], Vec::as_slice),
-            (band[0], band[1]),
-        );
+        let listed = paper.get(&ion.species).map_or(&[][..], Vec::as_slice);
+        let (mut all, mut lost) = (0, 0);
+        for band in bands {
+            let (strong, missing) = strong_lines(ion, listed, band);
+            all += strong;
+            lost += missing;
+        }
         if lost > 0 {
             println!(
                 "{}: {lost} of {all} strong lines of the ground term are not held",
@@ -399,7 +401,7 @@ fn claimed_bands_hold_the_strong_lines_of_morton() {
     }
     println!("{missing} of {strong} strong lines missing");
     assert!(
-        strong > 500 && missing * 20 <= strong,
+        strong > 450 && missing * 25 <= strong,
         "{missing} of {strong}"
     );
 }

@@ -27,7 +27,8 @@ fn catalogue() -> &'static Mutex<Catalogue> {
     HELD.get_or_init(|| Mutex::new(Catalogue::bundled_in_memory(&mut |_, _| {}).unwrap()))
 }
 
-/// All lines of a species such as `Fe II`, in order of wavenumber; multiplet means are no lines.
+/// All lines of a species such as `Fe II`, in order of wavenumber; multiplet means are no lines, and what
+/// follows from levels alone is not held for certain.
 pub fn lines_of(name: &str) -> &'static [HeldLine] {
     static READ: OnceLock<Mutex<HashMap<String, &'static [HeldLine]>>> = OnceLock::new();
     let mut read = READ.get_or_init(Mutex::default).lock().unwrap();
@@ -42,7 +43,7 @@ fn read_lines(name: &str) -> Vec<HeldLine> {
     let lines = catalogue.lines(species, &levels, 0.0, f64::MAX).unwrap();
     lines
         .into_iter()
-        .filter(|line| line.kind != LineKind::Mean)
+        .filter(|line| line.kind != LineKind::Mean && !line.is_unlisted_and_unrated())
         .map(|line| HeldLine {
             wavenumber_per_cm: line.wavenumber_per_cm,
             uncertainty_per_cm: line.wavenumber_uncertainty_per_cm,

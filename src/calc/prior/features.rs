@@ -1,5 +1,8 @@
 //! What the levels of a line tell about its rate.
 
+use std::cell::RefCell;
+use std::collections::HashMap;
+
 use vocabulary::atom::{DipoleClass, HalfInteger, Species, Term, dipole_class};
 use vocabulary::light::constants::RYDBERG_PER_CM;
 use vocabulary::spectrum::{Level, Line};
@@ -153,7 +156,28 @@ fn share(lower: (&Term, HalfInteger), upper: (&Term, HalfInteger)) -> Option<f64
     };
     let spin = HalfInteger::from_twice(u16::from(multiplicity).checked_sub(1)?);
     let ends = [lower, upper].map(|(term, j)| orbital(term).map(|l| (l, j)));
-    Some(multiplet_share(spin, ends[0]?, ends[1]?))
+    Some(remembered(spin, ends[0]?, ends[1]?))
+}
+
+/// Spin, then L and J of both ends.
+type Component = [HalfInteger; 5];
+
+/// [`multiplet_share`], each component worked out once: exact symbols are slow, and a window may
+/// hold thousands of lines of a few hundred kinds.
+fn remembered(
+    spin: HalfInteger,
+    lower: (HalfInteger, HalfInteger),
+    upper: (HalfInteger, HalfInteger),
+) -> f64 {
+    thread_local! {
+        static SHARES: RefCell<HashMap<Component, f64>> = RefCell::default();
+    }
+    let key = [spin, lower.0, lower.1, upper.0, upper.1];
+    SHARES.with_borrow_mut(|shares| {
+        *shares
+            .entry(key)
+            .or_insert_with(|| multiplet_share(spin, lower, upper))
+    })
 }
 
 #[cfg(test)]

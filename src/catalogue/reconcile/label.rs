@@ -61,6 +61,12 @@ impl Label {
         bare_term(t1) == bare_term(t2) && shells_agree(&shells(c1), &shells(c2))
     }
 
+    /// Whether both name the same configuration, parents and inner shells aside.
+    pub fn same_configuration(&self, other: &Label) -> bool {
+        both(&self.configuration, &other.configuration)
+            .is_some_and(|(a, b)| shells_agree(&shells(a), &shells(b)))
+    }
+
     /// Whether the label says nothing.
     pub fn is_empty(&self) -> bool {
         self.configuration.is_none() && self.term.is_none()

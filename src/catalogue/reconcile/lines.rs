@@ -5,13 +5,13 @@ use std::collections::BTreeMap;
 use vocabulary::spectrum::{LineKind, PositionOrigin, RateOrigin};
 
 use super::choose::{Candidate, best_by_uncertainty};
-use super::{Apart, ApartReason, DerivedLevel, DerivedLine, LineReport, SourceReports};
+use super::{Apart, ApartReason, DerivedLevel, DerivedLine, LineReport, SourceKind, SourceReports};
 
 /// What makes reports the same line: its pair of levels.
 type Pair = (usize, usize);
 
 /// Reports of one line: source and index.
-type Reports = Vec<(usize, usize)>;
+pub(super) type Reports = Vec<(usize, usize)>;
 
 /// Joins line reports by level pair, then those without levels by position.
 pub(super) fn join(
@@ -50,7 +50,7 @@ pub(super) fn join(
     lines
 }
 
-fn sort(lines: &mut [DerivedLine]) {
+pub(super) fn sort(lines: &mut [DerivedLine]) {
     lines.sort_by(|a, b| {
         (a.wavenumber_per_cm.total_cmp(&b.wavenumber_per_cm))
             .then(a.lower.cmp(&b.lower))
@@ -78,7 +78,7 @@ fn pair_of(line: &LineReport, level_of: &[Option<usize>]) -> Linked {
 }
 
 /// For each concluded level the measured level reports that joined it.
-fn measured(
+pub(super) fn measured(
     reports: &[SourceReports],
     level_of: &[Vec<Option<usize>>],
     levels: usize,
@@ -97,7 +97,7 @@ fn measured(
 
 /// Ritz positions of a pair from each source that holds both levels, whether or not it lists the
 /// line.
-fn ritz_of_pair<'a>(
+pub(super) fn ritz_of_pair<'a>(
     reports: &'a [SourceReports],
     held: &'a [Reports],
     pair: Pair,
@@ -146,8 +146,20 @@ fn by_levels(
         kind: kind_of(reports, &members),
         reports: members,
     };
+    if line.position_origin == PositionOrigin::Ritz && is_computed_alone(reports, &line.reports) {
+        line.kind = LineKind::Ritz;
+    }
     choose_rate(reports, &mut line);
     Some(line)
+}
+
+/// Whether no table lists a line, but only the calculator, between levels that were measured.
+fn is_computed_alone(reports: &[SourceReports], members: &Reports) -> bool {
+    let kind = |source: usize| reports[source].source.kind;
+    let made = |&(source, report): &(usize, usize)| {
+        kind(source) == SourceKind::Computed && reports[source].lines[report].computed
+    };
+    members.iter().all(made)
 }
 
 /// One line is a line as soon as one report of it is.
@@ -162,11 +174,11 @@ fn kind_of(reports: &[SourceReports], members: &Reports) -> LineKind {
 
 /// A position with its origin, before the best is chosen.
 #[derive(Clone, Copy)]
-struct Position {
-    wavenumber_per_cm: f64,
-    uncertainty_per_cm: f64,
-    origin: PositionOrigin,
-    source: usize,
+pub(super) struct Position {
+    pub wavenumber_per_cm: f64,
+    pub uncertainty_per_cm: f64,
+    pub origin: PositionOrigin,
+    pub source: usize,
 }
 
 /// The best of all observed positions and of the Ritz positions of each source's own levels.
@@ -190,7 +202,7 @@ fn best_position(
     best_of(reports, &positions).or_else(|| best_of(reports, &blended))
 }
 
-fn best_of(reports: &[SourceReports], positions: &[Position]) -> Option<Position> {
+pub(super) fn best_of(reports: &[SourceReports], positions: &[Position]) -> Option<Position> {
     let best = best_by_uncertainty(positions.iter().enumerate().map(|(i, p)| Candidate {
         computed: p.origin == PositionOrigin::Computed,
         kind: reports[p.source].source.kind,

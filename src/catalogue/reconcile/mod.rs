@@ -5,12 +5,13 @@
 //! a kind by the declared uncertainty of their level scale, then by key). Each level report joins
 //! a level that is there already or becomes one (`levels`); lines join by their pair of levels,
 //! or by position where a source has no levels (`lines`). Each quantity then comes from the best
-//! report for it (`choose`).
+//! report for it (`choose`). Lines that follow from levels alone are added last (`ritz`).
 
 mod choose;
 mod label;
 mod levels;
 mod lines;
+mod ritz;
 
 use std::sync::Arc;
 
@@ -206,6 +207,14 @@ pub fn rank(reports: &mut [SourceReports]) {
             .then(a.source.scale_at(1e5).total_cmp(&b.source.scale_at(1e5)))
             .then(a.source.key.cmp(&b.source.key))
     });
+}
+
+/// Changes whenever this rule changes, so that catalogues built before are brought up to date.
+pub const REVISION: &str = "rule 3";
+
+/// Adds to what was concluded from reports in their rank the lines that follow from levels alone.
+pub fn add_ritz(species: Species, reports: &[SourceReports], derived: &mut Derived) {
+    ritz::add(species, reports, derived);
 }
 
 /// Concludes levels and lines of one species from all reports of it.
