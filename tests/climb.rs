@@ -158,6 +158,85 @@ fn near_coincidences_are_flagged() {
     );
 }
 
+/// f of a step into one member of a series, with its 1 σ.
+fn strength(arguments: &str) -> (f64, f64) {
+    let found = routes(arguments);
+    let last = found[0]["steps"].as_array().unwrap().last().unwrap();
+    assert_eq!(last["strength_is_scaled"], false, "{last}");
+    let of = |key: &str| number(last, key);
+    (
+        of("oscillator_strength"),
+        of("strength_relative_uncertainty"),
+    )
+}
+
+/// Two ways to the strength of a high member: the Coulomb approximation, and scaling as n*⁻³ from a
+/// lower one (Gallagher 1994, *Rydberg Atoms*, table 2.2). The energy-normalised orbital changes
+/// with 1/n*²: up to 25 times that in f, 2 % from n = 32 on.
+#[test]
+fn coulomb_strengths_fall_as_the_cube_of_the_effective_quantum_number() {
+    for (of, lasers, letter, defect) in [
+        ("Li", "670.7..671nm,349..352nm", 'S', 0.40),
+        ("Na", "588.9..589.1nm,400..420nm", 'D', 0.01),
+        ("K", "766..767nm,450..470nm", 'S', 2.18),
+        ("Rb", "780+-1nm,470..490nm", 'S', 3.13),
+        ("Rb", "780+-1nm,470..490nm", 'D', 1.35),
+        ("Cs", "852+-1nm,500..515nm", 'D', 2.47),
+    ] {
+        let at = |n: u32| {
+            strength(&format!(
+                "--of {of} --lasers {lasers} --to series:{n}{letter}"
+            ))
+        };
+        let (low, high) = (at(32), at(64));
+        let ratio = ((64.0_f64 - defect) / (32.0 - defect)).powi(3);
+        let off = low.0 / high.0 / ratio - 1.0;
+        assert!(off.abs() < 0.02, "{of} n{letter}: {off}");
+        assert!(low.1 > 0.0 && low.1 < 0.2, "{of} n{letter}: σ {}", low.1);
+    }
+}
+
+/// Of one electron the strengths are exact: f(2p → nd) of both J, summed, is that of the orbitals, and of
+/// 2p 3/2 nine tenths go to nd 5/2 (Condon & Shortley 1935, section 9.9).
+#[test]
+fn series_of_hydrogen_are_exact() {
+    let found = routes("--of H --lasers 121.5..121.6nm,364.8..367nm --to series:30D");
+    let f = |j: &str| {
+        let of_j = |r: &&Value| {
+            let steps = r["steps"].as_array().unwrap();
+            let p = steps[0]["upper"]["j"] == "3/2";
+            p && steps[1]["series"]["j"] == j
+        };
+        let route = found.iter().find(of_j).unwrap();
+        number(&route["steps"][1], "oscillator_strength")
+    };
+    let exact = lineclear::calc::one_electron::oscillator_strength((2, 1), (30, 2)).unwrap();
+    // The reduced mass changes f by 1/1836, the fine structure by (Zα)² = 5e-5.
+    assert!((f("5/2") / (0.9 * exact) - 1.0).abs() < 6.5e-4);
+    assert!((f("3/2") / (0.1 * exact) - 1.0).abs() < 6.5e-4);
+}
+
+/// `climb` and `predict` fit the same levels and give the same members.
+#[test]
+fn members_are_those_of_predict() {
+    let predicted = json("lineclear predict \"Rb I\" --series nS1/2 --n 40..60");
+    let found = routes("--of Rb --lasers 780+-1nm,479..484nm --to series:nS");
+    let members = found[0]["steps"][1]["members"].as_array().unwrap();
+    let mut compared = 0;
+    for level in predicted["levels"].as_array().unwrap() {
+        let member = members.iter().find(|m| m["n"] == level["n"]).unwrap();
+        for (one, other) in [
+            ("energy_per_cm", "energy_per_cm"),
+            ("energy_uncertainty_per_cm", "uncertainty_per_cm"),
+        ] {
+            // The same numbers by the same functions: rounding only.
+            assert!((number(member, one) - number(level, other)).abs() < 1e-9);
+        }
+        compared += 1;
+    }
+    assert_eq!(compared, 21);
+}
+
 #[test]
 fn each_bad_question_gets_one_sentence() {
     for (arguments, exit, words) in [
@@ -182,6 +261,16 @@ fn each_bad_question_gets_one_sentence() {
             "--of Rb --lasers 780+-1nm --to series:nK",
             1,
             "cannot be computed",
+        ),
+        (
+            "--of Sr --lasers 460+-2nm,410..415nm --to series:nD",
+            1,
+            "nd 1D 2, nd 3D 1, nd 3D 2, nd 3D 3: the series has 2 usable members where a fit needs 4",
+        ),
+        (
+            "--of 87Rb --lasers 780+-1nm,479..484nm --to series:nS",
+            1,
+            "ask for Rb I",
         ),
         ("--of Rb --lasers 780nm --to limit", 2, "not a range"),
         (

@@ -80,7 +80,7 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
     let catalogue = context.open()?;
     let spectrum = spectrum(&catalogue, request, &mut assumed)?;
     let question = Question {
-        target: target(&spectrum, &arguments.to)?,
+        target: target(&catalogue, &spectrum, &arguments.to)?,
         typed_target: arguments.to.trim().to_owned(),
         temperature_k: temperature.kelvin(),
         metastable: arguments.metastable,
@@ -198,7 +198,7 @@ fn others(
         .collect())
 }
 
-fn target(spectrum: &Spectrum, typed: &str) -> Result<Target, CliError> {
+fn target(catalogue: &Catalogue, spectrum: &Spectrum, typed: &str) -> Result<Target, CliError> {
     let typed = typed.trim();
     let species = spectrum.species;
     if typed.eq_ignore_ascii_case("limit") {
@@ -206,7 +206,7 @@ fn target(spectrum: &Spectrum, typed: &str) -> Result<Target, CliError> {
         return Ok(Target::Limit(limit.energy_per_cm));
     }
     if let Some(series) = typed.strip_prefix("series:") {
-        return Ok(series_target(spectrum, typed, series)?);
+        return series_target(catalogue, spectrum.species, typed, series);
     }
     let named = climb::named_levels(&spectrum.levels, typed);
     if !named.is_empty() {
@@ -231,7 +231,12 @@ fn target(spectrum: &Spectrum, typed: &str) -> Result<Target, CliError> {
     .into())
 }
 
-fn series_target(spectrum: &Spectrum, typed: &str, series: &str) -> Result<Target, LaserError> {
+fn series_target(
+    catalogue: &Catalogue,
+    species: Species,
+    typed: &str,
+    series: &str,
+) -> Result<Target, CliError> {
     let (l, n) = climb::read_series(series)
         .filter(|(_, n)| n.is_none_or(|n| n <= HIGHEST_N))
         .ok_or_else(|| LaserError::Unreadable {
@@ -239,12 +244,32 @@ fn series_target(spectrum: &Spectrum, typed: &str, series: &str) -> Result<Targe
             text: typed.to_owned(),
             advice: "is no series; write series:nS, series:nD or one member such as series:60S (n up to 100)",
         })?;
-    let found = climb::series_of(spectrum, l).map_err(|reason| LaserError::NoSeries {
-        species: spectrum.species,
+    let found = if species.is_one_electron() {
+        climb::one_electron_series(species, l)
+    } else {
+        let (setting, held) = catalogue
+            .outer_levels(species)?
+            .ok_or(LaserError::NoLimit { species })?;
+        climb::series_of(&setting, &held, l)
+    };
+    let found = found.map_err(|reason| LaserError::NoSeries {
+        species,
         target: typed.to_owned(),
-        reason,
+        reason: reason + &of_the_mixture(species),
     })?;
     Ok(Target::Series(found, n))
+}
+
+/// Where to look for series of a single isotope.
+fn of_the_mixture(species: Species) -> String {
+    if species.isotope.is_none() {
+        return String::new();
+    }
+    let mixture = Species {
+        isotope: None,
+        ..species
+    };
+    format!("; of single isotopes few levels are held: ask for {mixture}")
 }
 
 fn describe(

@@ -6,9 +6,9 @@ use vocabulary::light::{Air, Medium};
 use vocabulary::spectrum::PositionOrigin;
 
 use super::line::{level_name, level_object, medium_word, position_word, rate_word};
-use super::number::with_uncertainty;
+use super::number::{plus_minus, with_uncertainty};
 use super::sheet::{Align, Column, Context, Sheet};
-use crate::advise::climb::{Answer, HIGHEST_N, Question, Route, RydbergLevel, Step, StepEnd};
+use crate::advise::climb::{Answer, Question, Route, RydbergLevel, Step, StepEnd};
 use crate::advise::placed;
 use crate::calc::series::orbital_letter;
 
@@ -97,8 +97,8 @@ fn row(route: usize, step: usize, s: &Step, wish: &ClimbWish) -> Vec<String> {
 fn f_cell(s: &Step) -> String {
     match (&s.end, s.oscillator_strength) {
         (StepEnd::Continuum { .. }, _) => "–".into(),
-        (StepEnd::Rydberg { .. }, Some(f)) => format!("~{f:.1e}"),
-        (_, Some(f)) => format!("{f:.2e}"),
+        (_, Some(f)) if s.scaled => format!("~{f:.1e}"),
+        (_, Some(f)) => format!("{f:.2e}{}", plus_minus(s.strength_relative_uncertainty)),
         (_, None) => "?".into(),
     }
 }
@@ -176,12 +176,22 @@ fn notes(
         ));
     }
     let steps = || shown.iter().flat_map(|r| &r.steps);
+    let last = |s: &Step| match &s.end {
+        StepEnd::Rydberg { members, .. } => members.last().map(|(m, _)| m.n),
+        _ => None,
+    };
+    let highest = steps().filter_map(last).max().unwrap_or(0);
     if steps().any(|s| matches!(s.end, StepEnd::Rydberg { .. })) {
         notes.push(format!(
-            "Series: measured members where they are held, the others from a Rydberg–Ritz fit, up to \
-             n = {HIGHEST_N}; ~ marks an f scaled as n*⁻³ from the highest member with a held rate. \
-             Fields are not counted."
+            "Series: measured members where they are held, the others computed, up to n = {highest}. f is \
+             that of the first member reached: of its paper, else by the Coulomb approximation \
+             (exact for one electron); it falls as n*⁻³ along the series. Fields are not counted."
         ));
+        if steps().any(|s| s.scaled) {
+            notes.push(
+                "~ marks an f scaled as n*⁻³ from the highest member with a held rate.".into(),
+            );
+        }
     }
     if steps().any(|s| matches!(s.end, StepEnd::Continuum { .. })) {
         notes.push(
@@ -241,6 +251,9 @@ fn step_object(s: &Step, wish: &ClimbWish) -> Map<String, Value> {
     put("rate_origin", json!(s.rate_origin.map(rate_word)));
     put("position_origin", json!(position_word(s.position_origin)));
     put("oscillator_strength", json!(s.oscillator_strength));
+    let sigma = json!(s.strength_relative_uncertainty);
+    put("strength_relative_uncertainty", sigma);
+    put("strength_is_scaled", json!(s.scaled));
     put("mismatch", json!(s.mismatch));
     let sources: Vec<&str> = s.sources.iter().map(|k| &**k).collect();
     put("step_sources", json!(sources));
@@ -250,12 +263,12 @@ fn step_object(s: &Step, wish: &ClimbWish) -> Map<String, Value> {
         .map(|c| json!({"species": c.species.to_string(), "offset_per_cm": c.offset_per_cm}))
         .collect();
     put("coincidences", Value::Array(close));
-    put_end(&mut object, &s.end);
+    put_end(&mut object, s);
     object
 }
 
-fn put_end(object: &mut Map<String, Value>, end: &StepEnd) {
-    match end {
+fn put_end(object: &mut Map<String, Value>, s: &Step) {
+    match &s.end {
         StepEnd::Level(level) => {
             object.insert("upper".into(), level_object(level));
         }
@@ -268,7 +281,13 @@ fn put_end(object: &mut Map<String, Value>, end: &StepEnd) {
             object.insert("upper".into(), Value::Null);
             let letter = orbital_letter(*l).map(String::from);
             object.insert("series".into(), json!({"term": term, "l": letter, "j": j}));
-            let members: Vec<Value> = members.iter().map(member_object).collect();
+            // Along a series f falls as n*⁻³.
+            let first = members.first().map_or(1.0, |(m, _)| m.effective);
+            let of = |member: &RydbergLevel| {
+                let f = s.oscillator_strength?;
+                Some(f * (first / member.effective).powi(3))
+            };
+            let members: Vec<Value> = members.iter().map(|m| member_object(m, of(&m.0))).collect();
             object.insert("members".into(), Value::Array(members));
         }
         StepEnd::Continuum {
@@ -285,7 +304,10 @@ fn put_end(object: &mut Map<String, Value>, end: &StepEnd) {
     }
 }
 
-fn member_object((member, wavenumber): &(RydbergLevel, f64)) -> Value {
+fn member_object(
+    (member, wavenumber): &(RydbergLevel, f64),
+    oscillator_strength: Option<f64>,
+) -> Value {
     json!({
         "n": member.n,
         "energy_per_cm": member.energy_per_cm,
@@ -293,6 +315,7 @@ fn member_object((member, wavenumber): &(RydbergLevel, f64)) -> Value {
         "effective_quantum_number": member.effective,
         "vacuum_wavelength_nm": 1e7 / wavenumber,
         "wavenumber_per_cm": wavenumber,
+        "oscillator_strength": oscillator_strength,
         "computed": member.origin == PositionOrigin::Computed,
     })
 }

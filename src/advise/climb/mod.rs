@@ -9,7 +9,9 @@ use std::sync::Arc;
 use vocabulary::atom::Species;
 use vocabulary::spectrum::{Level, PositionOrigin, RateOrigin};
 
-pub use series::{HIGHEST_N, RydbergLevel, RydbergSeries, read_series, series_of};
+pub use series::{
+    HIGHEST_N, Joint, RydbergLevel, RydbergSeries, one_electron_series, read_series, series_of,
+};
 pub use target::{Target, levels_at, named_levels, nearest_levels};
 
 use super::Spectrum;
@@ -83,8 +85,12 @@ pub struct Step {
     pub rate_per_s: Option<f64>,
     /// Where the rate comes from.
     pub rate_origin: Option<RateOrigin>,
-    /// Absorption oscillator strength; of a series that of its lowest member, scaled.
+    /// Absorption oscillator strength; of a series that of the lowest member reached.
     pub oscillator_strength: Option<f64>,
+    /// 1 σ of rate and oscillator strength over themselves.
+    pub strength_relative_uncertainty: Option<f64>,
+    /// The oscillator strength was scaled as n*⁻³ from a member with a held rate.
+    pub scaled: bool,
     /// Distance from the middle of the laser's range, as a fraction of half the range; 0 to 1.
     pub mismatch: f64,
     /// Lines of other species close by.

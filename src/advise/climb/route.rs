@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use vocabulary::light::constants::PER_CM_PER_EV;
-use vocabulary::spectrum::{Level, Line, PositionOrigin};
+use vocabulary::spectrum::{Level, Line, PositionOrigin, RateOrigin};
 
 use super::series::{RydbergLevel, RydbergSeries};
 use super::{Coincidence, MOST_STEPS, Question, Route, Step, StepEnd, Target};
@@ -158,13 +158,16 @@ impl<'a> Search<'a> {
             .iter()
             .map(|(_, w)| mismatch(source, *w))
             .fold(1.0, f64::min);
+        let strength = self.strength_into(level, series, first);
         Some(Step {
             laser,
             from: Arc::clone(level),
             wavenumber_per_cm: (wavenumber, sigma),
-            rate_per_s: None,
-            rate_origin: None,
-            oscillator_strength: self.scaled_strength(level, series, first),
+            rate_per_s: strength.rate_per_s,
+            rate_origin: strength.rate_origin,
+            oscillator_strength: strength.oscillator_strength,
+            strength_relative_uncertainty: strength.relative_uncertainty,
+            scaled: strength.scaled,
             mismatch,
             coincidences: Vec::new(),
             sources: series.sources.clone(),
@@ -178,23 +181,46 @@ impl<'a> Search<'a> {
         })
     }
 
-    /// f to a member of a series: that of the highest member with a held rate, scaled as n*⁻³ (the
-    /// density of a Rydberg orbital at the core; Gallagher 1994, *Rydberg Atoms*, table 2.2).
-    fn scaled_strength(
+    /// The strength of the step to a member of a series: that of its held line where a paper
+    /// rates it, else as calculated, else f of the highest member with a held rate scaled as n*⁻³
+    /// (the density of a Rydberg orbital at the core; Gallagher 1994, *Rydberg Atoms*, table 2.2).
+    fn strength_into(
         &self,
         level: &Level,
         series: &RydbergSeries,
         member: RydbergLevel,
-    ) -> Option<f64> {
-        let lines = self.from.get(level.number as usize)?;
-        lines
+    ) -> Strength {
+        let lines = self.from.get(level.number as usize);
+        let held: Vec<(RydbergLevel, &Line)> = lines
+            .into_iter()
+            .flatten()
+            .filter_map(|line| Some((series.holds(line.upper.as_ref()?)?, *line)))
+            .collect();
+        let published = held.iter().find(|(held, line)| {
+            held.n == member.n && line.rate_origin.is_some_and(|o| o != RateOrigin::Computed)
+        });
+        if let Some((_, line)) = published {
+            return Strength::held(line);
+        }
+        if let Some(joint) = series.joint(level, member) {
+            return Strength {
+                rate_per_s: Some(joint.rate_per_s),
+                rate_origin: Some(RateOrigin::Computed),
+                oscillator_strength: Some(joint.oscillator_strength),
+                relative_uncertainty: Some(joint.relative_uncertainty),
+                scaled: false,
+            };
+        }
+        let scaled = held
             .iter()
-            .filter_map(|line| {
-                let held = series.holds(line.upper.as_ref()?)?;
-                Some((held, oscillator_strength(line)?))
-            })
+            .filter_map(|(held, line)| Some((*held, oscillator_strength(line)?)))
             .max_by_key(|(held, _)| held.n)
-            .map(|(held, f)| f * (held.effective / member.effective).powi(3))
+            .map(|(held, f)| f * (held.effective / member.effective).powi(3));
+        Strength {
+            oscillator_strength: scaled,
+            scaled: scaled.is_some(),
+            ..Strength::default()
+        }
     }
 
     fn step_into_continuum(&self, level: &Arc<Level>, laser: usize, limit: f64) -> Option<Step> {
@@ -221,6 +247,8 @@ impl<'a> Search<'a> {
             rate_per_s: None,
             rate_origin: None,
             oscillator_strength: None,
+            strength_relative_uncertainty: None,
+            scaled: false,
             mismatch: 0.0,
             coincidences: Vec::new(),
             sources: vec![Arc::clone(&level.source)],
@@ -264,6 +292,28 @@ impl<'a> Search<'a> {
     }
 }
 
+/// How strong a step is, as far as it is known.
+#[derive(Clone, Copy, Debug, Default)]
+struct Strength {
+    rate_per_s: Option<f64>,
+    rate_origin: Option<RateOrigin>,
+    oscillator_strength: Option<f64>,
+    relative_uncertainty: Option<f64>,
+    scaled: bool,
+}
+
+impl Strength {
+    fn held(line: &Line) -> Self {
+        Self {
+            rate_per_s: line.rate_per_s,
+            rate_origin: line.rate_origin,
+            oscillator_strength: oscillator_strength(line),
+            relative_uncertainty: line.rate_relative_uncertainty,
+            scaled: false,
+        }
+    }
+}
+
 fn bound_step(line: &Line, laser: usize, source: &Laser) -> Option<Step> {
     let mut sources = vec![Arc::clone(&line.position_source)];
     sources.extend(line.rate_source.clone());
@@ -275,6 +325,8 @@ fn bound_step(line: &Line, laser: usize, source: &Laser) -> Option<Step> {
         rate_per_s: line.rate_per_s,
         rate_origin: line.rate_origin,
         oscillator_strength: oscillator_strength(line),
+        strength_relative_uncertainty: line.rate_relative_uncertainty,
+        scaled: false,
         mismatch: mismatch(source, line.wavenumber_per_cm),
         coincidences: Vec::new(),
         sources,

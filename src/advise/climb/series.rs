@@ -1,20 +1,28 @@
-//! Levels of a Rydberg series as the end of a route.
+//! Levels of a Rydberg series as the end of a route, and how strongly a level is joined to them.
 
 use std::sync::Arc;
 
-use vocabulary::atom::HalfInteger;
-use vocabulary::light::constants::{ELECTRON_MASS_U, RYDBERG_PER_CM};
+use vocabulary::atom::{HalfInteger, Species};
+use vocabulary::light::constants::RYDBERG_PER_CM;
 use vocabulary::spectrum::{Level, PositionOrigin};
 
-use crate::advise::Spectrum;
+use crate::calc::coulomb::{
+    BoundLevel, OuterLevel, PredictedSeries, Setting, bound_line_between, predict_series,
+};
+use crate::calc::one_electron::{
+    HIGHEST_FINE_N, Nucleus, component_rate, energy, rate_relative_uncertainty,
+};
+use crate::calc::plasma::absorption_f;
 use crate::calc::series::{
-    Core, LabelledLevel, Limit, Series, SeriesFit, SeriesInput, fit, group_series, orbital_number,
+    LabelledLevel, Series, SeriesError, SeriesKey, group_series, orbital_letter, orbital_number,
     outer_electron,
 };
 
 /// Highest principal quantum number that is predicted: beyond, stray fields of a few mV/cm mix the
 /// levels of real cells (field ionisation and Stark mixing scale as n⁻⁴ and n⁻⁵; common practice).
 pub const HIGHEST_N: u32 = 100;
+/// 1 σ of ln A beyond which the Coulomb approximation says too little.
+const LARGEST_SIGMA: f64 = 1.0;
 
 /// One member of a series.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -31,10 +39,30 @@ pub struct RydbergLevel {
     pub origin: PositionOrigin,
 }
 
+/// What joins a level to a member of a series.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Joint {
+    /// Spontaneous emission rate, s⁻¹.
+    pub rate_per_s: f64,
+    /// Absorption oscillator strength.
+    pub oscillator_strength: f64,
+    /// 1 σ of either over itself.
+    pub relative_uncertainty: f64,
+}
+
+/// How the members of a series and their strengths are made.
+#[derive(Clone, Debug, PartialEq)]
+enum Maker {
+    /// One electron outside a core.
+    Outer(Setting),
+    /// One electron and a nucleus.
+    OneElectron(Nucleus),
+}
+
 /// A series that a route can end in: one core, l, term and J.
 #[derive(Clone, Debug, PartialEq)]
 pub struct RydbergSeries {
-    /// Open shells of the core, `4s`; empty for a closed core.
+    /// The core, `4p6`; empty for a bare nucleus.
     pub core: String,
     /// Orbital momentum of the outer electron.
     pub l: u32,
@@ -46,143 +74,153 @@ pub struct RydbergSeries {
     pub sources: Vec<Arc<str>>,
     /// Members by n, measured where they are held, else predicted, up to [`HIGHEST_N`].
     pub members: Vec<RydbergLevel>,
+    maker: Maker,
 }
 
-/// All series of an orbital momentum on the ground core, or the reasons why there are none.
+/// All series of an orbital momentum of one electron and a nucleus, members up to the highest n
+/// whose fine structure is computed.
 ///
-/// Members up to n = [`HIGHEST_N`] come from the Ritz fit of `calc::series`; the limit is that of
-/// the species, with its 1 σ.
-pub fn series_of(spectrum: &Spectrum, l: u32) -> Result<Vec<RydbergSeries>, String> {
-    let limit = vocabulary::atom::limit(spectrum.species)
-        .ok_or_else(|| "no ionisation energy is held".to_owned())?;
-    let names: Vec<String> = spectrum.levels.iter().map(|l| open_shells(l)).collect();
-    let labelled: Vec<LabelledLevel<'_>> = spectrum
-        .levels
+/// # Errors
+/// A species that is not known to the calculator.
+pub fn one_electron_series(species: Species, l: u32) -> Result<Vec<RydbergSeries>, String> {
+    let nucleus = Nucleus::of(species).map_err(|e| e.to_string())?;
+    let ground = energy(&nucleus, 1, 0, HalfInteger::from_twice(1)).map_err(|e| e.to_string())?;
+    let charge = nucleus.charge();
+    let rydberg_per_cm = RYDBERG_PER_CM * nucleus.reduced_mass() * charge * charge;
+    let of_j = |twice_j: u32| -> Result<RydbergSeries, String> {
+        let j = HalfInteger::from_twice(twice_j as u16);
+        let mut members = Vec::new();
+        for n in l + 1..=HIGHEST_FINE_N {
+            let level = energy(&nucleus, n, l, j).map_err(|e| e.to_string())?;
+            members.push(RydbergLevel {
+                n,
+                energy_per_cm: ground.binding_per_cm - level.binding_per_cm,
+                uncertainty_per_cm: level.uncertainty_per_cm.hypot(ground.uncertainty_per_cm),
+                effective: (rydberg_per_cm / level.binding_per_cm).sqrt(),
+                origin: PositionOrigin::Computed,
+            });
+        }
+        let letter = orbital_letter(l).unwrap_or('?').to_ascii_uppercase();
+        let parity = if l.is_multiple_of(2) { "" } else { "o" };
+        Ok(RydbergSeries {
+            core: String::new(),
+            l,
+            term: format!("2{letter}{parity}"),
+            j,
+            sources: vec![Arc::from("computed-one-electron")],
+            members,
+            maker: Maker::OneElectron(nucleus.clone()),
+        })
+    };
+    let momenta = (2 * l).checked_sub(1).into_iter().chain([2 * l + 1]);
+    momenta.map(of_j).collect()
+}
+
+/// All series of an orbital momentum of one electron outside the ground core, or the reasons why
+/// there are none. Levels, limit and fit are those of the gap fill and of `predict`.
+///
+/// # Errors
+/// The reason, series by series.
+pub fn series_of(
+    setting: &Setting,
+    held: &[OuterLevel],
+    l: u32,
+) -> Result<Vec<RydbergSeries>, String> {
+    let labelled: Vec<LabelledLevel<'_>> = held
         .iter()
-        .zip(&names)
-        .filter_map(|(level, name)| label(level, name))
+        .map(|level| LabelledLevel {
+            energy_per_cm: level.energy_per_cm,
+            uncertainty_per_cm: level.uncertainty_per_cm,
+            configuration: &level.configuration,
+            term: &level.term,
+            twice_j: level.twice_j,
+        })
         .collect();
-    let mut found = Vec::new();
-    let mut reason = "no levels of such a series are held".to_owned();
-    for series in group_series(&labelled)
-        .iter()
-        .filter(|s| s.key.l == l && s.ground_core)
+    let groups = group_series(&labelled);
+    let (mut found, mut refused) = (Vec::new(), Vec::new());
+    for series in predict_series(&labelled, &setting.calc(), HIGHEST_N)
+        .into_iter()
+        .filter(|series| series.key.l == l)
     {
-        let fitted = series.core_on_ground().and_then(|core| {
-            let core = if series.key.core.is_empty() {
-                closed_core(spectrum)
-            } else {
-                core
-            };
-            fit(&SeriesInput {
-                core_charge: u32::from(spectrum.species.core_charge()),
-                rydberg_per_cm: RYDBERG_PER_CM / (1.0 + ELECTRON_MASS_U / spectrum.mass_u),
-                l,
-                core,
-                limit: Limit::Fixed {
-                    per_cm: limit.energy_per_cm,
-                    sigma_per_cm: limit.uncertainty_per_cm,
-                },
-                members: series.members.clone(),
-            })
-        });
-        match fitted {
-            Ok(fitted) => found.push(rydberg(series, &fitted, sources(spectrum, series))),
-            Err(error) => reason = error.to_string(),
+        match &series.fit {
+            Some(Err(
+                SeriesError::CoreChanging { .. }
+                | SeriesError::SplitCore { .. }
+                | SeriesError::TooFewMembers { held: 0, .. },
+            )) => {}
+            Some(Err(reason)) => refused.push((words(&series.key), reason.to_string())),
+            _ => {
+                let group = groups.iter().find(|group| group.key == series.key);
+                found.push(rydberg(setting, &series, group, held));
+            }
         }
     }
-    if found.is_empty() {
-        Err(reason)
-    } else {
-        Ok(found)
+    match (found.is_empty(), refused.is_empty()) {
+        (false, _) => Ok(found),
+        (true, true) => Err("no levels of such a series are held".into()),
+        (true, false) => Err(reasons(&refused)),
     }
 }
 
-/// The configuration without closed shells before the open ones, and without the term of a closed
-/// core: sources write `5s`, `4p6 5s` and `4s2 4p6 (1S) 5s` for one level.
-fn open_shells(level: &Level) -> String {
-    let mut words: Vec<&str> = level
-        .configuration
-        .as_deref()
-        .unwrap_or_default()
-        .split_whitespace()
-        .collect();
-    let closed = |word: &str| {
-        ["s2", "p6", "d10", "f14"].iter().any(|full| {
-            word.strip_suffix(full)
-                .is_some_and(|n| n.bytes().all(|b| b.is_ascii_digit()))
-        }) || word == "(1S)"
-    };
-    while words.len() > 1 && closed(words[0]) {
-        words.remove(0);
+/// Each reason once, with the series that it is about.
+fn reasons(refused: &[(String, String)]) -> String {
+    let mut by_reason: Vec<(&str, Vec<&str>)> = Vec::new();
+    for (series, reason) in refused {
+        match by_reason.iter_mut().find(|(known, _)| known == reason) {
+            Some((_, names)) => names.push(series),
+            None => by_reason.push((reason, vec![series])),
+        }
     }
-    words.join(" ")
+    let sentence = |(reason, names): &(&str, Vec<&str>)| format!("{}: {reason}", names.join(", "));
+    let sentences: Vec<String> = by_reason.iter().map(sentence).collect();
+    sentences.join("; ")
 }
 
-/// How rigid a closed core is: those with the electrons of a noble gas have no low excited states.
-fn closed_core(spectrum: &Spectrum) -> Core {
-    let species = spectrum.species;
-    match species.atomic_number - species.stage {
-        2 | 10 | 18 | 36 | 54 | 86 => Core::Rigid,
-        _ => Core::Soft,
-    }
+fn words(key: &SeriesKey) -> String {
+    let letter = orbital_letter(key.l).unwrap_or('?');
+    let j = HalfInteger::from_twice(key.twice_j);
+    format!("n{letter} {} {j}", key.term)
 }
 
-fn label<'l>(level: &'l Level, configuration: &'l str) -> Option<LabelledLevel<'l>> {
-    (level.origin != PositionOrigin::Computed).then_some(())?;
-    Some(LabelledLevel {
-        energy_per_cm: level.energy_per_cm,
-        uncertainty_per_cm: level.energy_uncertainty_per_cm,
-        configuration,
-        term: level.term.as_deref()?,
-        twice_j: level.j?.twice(),
-    })
-}
-
-/// Sources of the measured members of a series.
-fn sources(spectrum: &Spectrum, series: &Series) -> Vec<Arc<str>> {
-    let member = |l: &&Arc<Level>| {
-        series
-            .members
-            .iter()
-            .any(|m| m.energy_per_cm == l.energy_per_cm)
-    };
-    let mut keys: Vec<Arc<str>> = spectrum
-        .levels
+fn rydberg(
+    setting: &Setting,
+    series: &PredictedSeries,
+    group: Option<&Series>,
+    held: &[OuterLevel],
+) -> RydbergSeries {
+    let fit = series.fit.as_ref().and_then(|fit| fit.as_ref().ok());
+    let measured = group.map_or(&[][..], |group| &group.members);
+    let lowest = fit.and_then(|fit| fit.used.first().copied()).unwrap_or(1);
+    let mut members: Vec<RydbergLevel> = measured
         .iter()
-        .filter(member)
-        .map(|l| Arc::clone(&l.source))
-        .collect();
-    keys.sort();
-    keys.dedup();
-    keys
-}
-
-fn rydberg(series: &Series, fitted: &SeriesFit, sources: Vec<Arc<str>>) -> RydbergSeries {
-    let lowest = fitted.used.first().copied().unwrap_or(1);
-    let members = (lowest..=HIGHEST_N)
-        .filter_map(|n| {
-            let held = series.members.iter().find(|m| m.n == n);
-            let predicted = fitted.predict(n).ok()?;
-            let effective = f64::from(n) - predicted.quantum_defect;
-            Some(match held {
-                Some(member) => RydbergLevel {
-                    n,
-                    energy_per_cm: member.energy_per_cm,
-                    uncertainty_per_cm: member.uncertainty_per_cm,
-                    effective,
-                    origin: PositionOrigin::Measured,
-                },
-                None => RydbergLevel {
-                    n,
-                    energy_per_cm: predicted.energy_per_cm,
-                    uncertainty_per_cm: predicted.uncertainty_per_cm,
-                    effective,
-                    origin: PositionOrigin::Computed,
-                },
+        .filter(|member| member.n >= lowest)
+        .filter_map(|member| {
+            let effective = f64::from(member.n) - fit?.predict(member.n).ok()?.quantum_defect;
+            Some(RydbergLevel {
+                n: member.n,
+                energy_per_cm: member.energy_per_cm,
+                uncertainty_per_cm: member.uncertainty_per_cm,
+                effective,
+                origin: PositionOrigin::Measured,
             })
         })
         .collect();
+    members.extend(series.levels.iter().map(|level| RydbergLevel {
+        n: level.prediction.n,
+        energy_per_cm: level.prediction.energy_per_cm,
+        uncertainty_per_cm: level.prediction.uncertainty_per_cm,
+        effective: f64::from(level.prediction.n) - level.prediction.quantum_defect,
+        origin: PositionOrigin::Computed,
+    }));
+    members.sort_by_key(|member| member.n);
+    let of_series = |level: &&OuterLevel| {
+        (measured.iter()).any(|member| member.energy_per_cm == level.energy_per_cm)
+    };
+    let mut sources: Vec<Arc<str>> = (held.iter().filter(of_series))
+        .map(|level| Arc::clone(&level.source))
+        .collect();
+    sources.sort();
+    sources.dedup();
     RydbergSeries {
         core: series.key.core.clone(),
         l: series.key.l,
@@ -190,19 +228,30 @@ fn rydberg(series: &Series, fitted: &SeriesFit, sources: Vec<Arc<str>>) -> Rydbe
         j: HalfInteger::from_twice(series.key.twice_j),
         sources,
         members,
+        maker: Maker::Outer(*setting),
     }
 }
 
 impl RydbergSeries {
-    /// Whether electric dipole radiation joins a level to this series: the outer electron changes
-    /// l by one, the core and the multiplicity stay, J closes a triangle with 1.
+    /// The configuration of a level in the form in which the series writes its core.
+    fn one_form(&self, level: &Level) -> Option<String> {
+        let configuration = level.configuration.as_deref()?;
+        match &self.maker {
+            Maker::Outer(setting) => setting.one_form(configuration),
+            Maker::OneElectron(_) => Some(configuration.to_owned()),
+        }
+    }
+
+    /// Whether electric dipole radiation joins a level to this series: the outer electron, or one
+    /// of an s² shell, changes l by one, the core and the multiplicity stay, J closes a triangle
+    /// with 1.
     pub fn is_reached_from(&self, level: &Level) -> bool {
-        let outer = outer_electron(&open_shells(level));
+        let outer = self.one_form(level).and_then(|form| outer_electron(&form));
         let (Some(outer), Some(j), Some(term)) = (outer, level.j, level.term.as_deref()) else {
             return false;
         };
         let (a, b) = (j.twice(), self.j.twice());
-        outer.occupancy == 1
+        (outer.occupancy == 1 || (outer.occupancy, outer.l) == (2, 0))
             && outer.core == self.core
             && outer.l.abs_diff(self.l) == 1
             && multiplicity(term) == multiplicity(&self.term)
@@ -210,10 +259,11 @@ impl RydbergSeries {
             && a + b >= 2
     }
 
-    /// Whether a level is a member.
+    /// The member that a level is.
     pub fn holds(&self, level: &Level) -> Option<RydbergLevel> {
-        let outer = outer_electron(&open_shells(level))?;
+        let outer = outer_electron(&self.one_form(level)?)?;
         let fits = outer.core == self.core
+            && outer.occupancy == 1
             && outer.l == self.l
             && level.j == Some(self.j)
             && level.term.as_deref().is_some_and(|t| bare(t) == self.term);
@@ -221,6 +271,69 @@ impl RydbergSeries {
             .iter()
             .find(|m| fits && m.n == outer.n)
             .copied()
+    }
+
+    /// How strongly a level below is joined to a member: exact for one electron, else by the
+    /// Coulomb approximation where it holds to a factor e.
+    pub fn joint(&self, level: &Level, member: RydbergLevel) -> Option<Joint> {
+        let (rate_per_s, relative_uncertainty) = match &self.maker {
+            Maker::OneElectron(nucleus) => self.exact_rate(nucleus, level, member)?,
+            Maker::Outer(setting) => self.coulomb_rate(setting, level, member)?,
+        };
+        let wavenumber_per_cm = member.energy_per_cm - level.energy_per_cm;
+        let (upper, lower) = (self.j.weight(), level.g?);
+        Some(Joint {
+            rate_per_s,
+            oscillator_strength: absorption_f(rate_per_s, upper, lower, wavenumber_per_cm),
+            relative_uncertainty,
+        })
+    }
+
+    fn exact_rate(
+        &self,
+        nucleus: &Nucleus,
+        level: &Level,
+        member: RydbergLevel,
+    ) -> Option<(f64, f64)> {
+        let outer = outer_electron(level.configuration.as_deref()?)?;
+        let (upper, lower) = ((member.n, self.l, self.j), (outer.n, outer.l, level.j?));
+        let rate = component_rate(nucleus, upper, lower).ok()?;
+        (rate > 0.0).then(|| (rate, rate_relative_uncertainty(nucleus)))
+    }
+
+    fn coulomb_rate(
+        &self,
+        setting: &Setting,
+        level: &Level,
+        member: RydbergLevel,
+    ) -> Option<(f64, f64)> {
+        let letter = orbital_letter(self.l)?;
+        let configuration = format!("{} {}{letter}", self.core, member.n);
+        let upper = LabelledLevel {
+            energy_per_cm: member.energy_per_cm,
+            uncertainty_per_cm: member.uncertainty_per_cm,
+            configuration: configuration.trim(),
+            term: &self.term,
+            twice_j: self.j.twice(),
+        };
+        let form = self.one_form(level)?;
+        let lower = LabelledLevel {
+            energy_per_cm: level.energy_per_cm,
+            uncertainty_per_cm: level.energy_uncertainty_per_cm,
+            configuration: &form,
+            term: level.term.as_deref()?,
+            twice_j: level.j?.twice(),
+        };
+        let strength_per_cm = setting.rydberg_per_cm * f64::from(setting.core_charge).powi(2);
+        // High members are bound by little: their distance to the limit is that of the fit.
+        let upper = BoundLevel {
+            level: upper,
+            binding_per_cm: strength_per_cm / member.effective.powi(2),
+        };
+        let lower = BoundLevel::of_species(lower, &setting.calc());
+        let rate = bound_line_between(&upper, &lower, &setting.calc()).ok()?;
+        (rate.relative_uncertainty <= LARGEST_SIGMA)
+            .then_some((rate.per_s, rate.relative_uncertainty))
     }
 }
 

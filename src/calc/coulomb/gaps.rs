@@ -186,6 +186,28 @@ fn doublet_key(core: &str, l: u32, twice_j: u32) -> SeriesKey {
     }
 }
 
+/// A level with its distance to the limit of its series.
+///
+/// The distance of a predicted member is that of its fit: the fitted limit may differ from the one
+/// held elsewhere, by little, but high members are bound by little too.
+#[derive(Clone, Debug, PartialEq)]
+pub struct BoundLevel<'a> {
+    /// The level.
+    pub level: LabelledLevel<'a>,
+    /// Distance to the limit, cm⁻¹.
+    pub binding_per_cm: f64,
+}
+
+impl<'a> BoundLevel<'a> {
+    /// A level below the ionisation energy of the species.
+    pub fn of_species(level: LabelledLevel<'a>, species: &Species<'_>) -> Self {
+        Self {
+            binding_per_cm: species.limit_per_cm - level.energy_per_cm,
+            level,
+        }
+    }
+}
+
 /// A line that the calculator made, between two of the levels given.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct ComputedLine {
@@ -193,8 +215,17 @@ pub struct ComputedLine {
     pub lower: usize,
     /// Index of the upper level.
     pub upper: usize,
-    /// The rate with its uncertainty, wavenumber and integral.
+    /// The rate with its uncertainty, its integral, and the wavenumber that follows from the
+    /// distances to the limit.
     pub rate: Rate,
+}
+
+/// [`predict_bound_lines`] of levels whose limit is the ionisation energy of the species.
+pub fn predict_lines(levels: &[LabelledLevel<'_>], species: &Species<'_>) -> Vec<ComputedLine> {
+    let levels: Vec<BoundLevel<'_>> = (levels.iter())
+        .map(|level| BoundLevel::of_species(level.clone(), species))
+        .collect();
+    predict_bound_lines(&levels, species)
 }
 
 /// Rates of all lines between the levels that the Coulomb approximation covers: one electron
@@ -202,8 +233,9 @@ pub struct ComputedLine {
 ///
 /// Levels and pairs that it does not cover are passed over; [`line_between`] says why for one pair.
 /// The lines come in the order of their levels.
-pub fn predict_lines(levels: &[LabelledLevel<'_>], species: &Species<'_>) -> Vec<ComputedLine> {
-    let grounds: BTreeSet<String> = group_series(levels)
+pub fn predict_bound_lines(levels: &[BoundLevel<'_>], species: &Species<'_>) -> Vec<ComputedLine> {
+    let labelled: Vec<LabelledLevel<'_>> = levels.iter().map(|bound| bound.level.clone()).collect();
+    let grounds: BTreeSet<String> = group_series(&labelled)
         .into_iter()
         .filter(|series| series.ground_core)
         .map(|series| series.key.core)
@@ -237,7 +269,8 @@ struct Candidate {
     active: Active,
 }
 
-fn candidate(level: &LabelledLevel<'_>, species: &Species<'_>) -> Result<Candidate, CoulombError> {
+fn candidate(bound: &BoundLevel<'_>, species: &Species<'_>) -> Result<Candidate, CoulombError> {
+    let level = &bound.level;
     let outer = outer_electron(level.configuration).ok_or_else(|| CoulombError::Label {
         label: level.configuration.to_owned(),
     })?;
@@ -251,12 +284,13 @@ fn candidate(level: &LabelledLevel<'_>, species: &Species<'_>) -> Result<Candida
     let effective = effective_quantum_number(
         species.core_charge,
         species.rydberg_per_cm,
-        species.limit_per_cm,
+        level.energy_per_cm + bound.binding_per_cm,
         level.energy_per_cm,
     )?;
     Ok(Candidate {
         active: Active {
-            energy_per_cm: level.energy_per_cm,
+            // Of two levels near their limits only the distances tell how far they are apart.
+            energy_per_cm: -bound.binding_per_cm,
             state: LsState::from_labels(&outer.core, outer.l, level.term, level.twice_j)?,
             orbital: Orbital::new(effective, outer.l)?,
             occupancy: outer.occupancy,
@@ -287,16 +321,28 @@ fn between(
     rate(core_charge, a, b, polarisation, RateModel::of_class(class))
 }
 
-/// Rate of the line between two labelled levels, or why there is none.
+/// Rate of the line between two levels whose limit is the ionisation energy of the species, or
+/// why there is none.
 ///
-/// The limit in `species` has to be that of the core of the two levels.
+/// # Errors
+/// As [`bound_line_between`].
+pub fn line_between(
+    upper: &LabelledLevel<'_>,
+    lower: &LabelledLevel<'_>,
+    species: &Species<'_>,
+) -> Result<Rate, CoulombError> {
+    let [upper, lower] = [upper, lower].map(|level| BoundLevel::of_species(level.clone(), species));
+    bound_line_between(&upper, &lower, species)
+}
+
+/// Rate of the line between two levels, or why there is none.
 ///
 /// # Errors
 /// [`CoulombError`]: labels that show no single electron in LS coupling, cores that differ or are open, a
 /// selection rule, an orbital inside the core.
-pub fn line_between(
-    upper: &LabelledLevel<'_>,
-    lower: &LabelledLevel<'_>,
+pub fn bound_line_between(
+    upper: &BoundLevel<'_>,
+    lower: &BoundLevel<'_>,
     species: &Species<'_>,
 ) -> Result<Rate, CoulombError> {
     let polarisation = CorePolarisability::of_core(species.element, species.core_charge)

@@ -29,8 +29,8 @@ pub use decay::{
 };
 pub use error::CoulombError;
 pub use gaps::{
-    ComputedLevel, ComputedLine, PredictedSeries, Species, line_between, predict_lines,
-    predict_series,
+    BoundLevel, ComputedLevel, ComputedLine, PredictedSeries, Species, bound_line_between,
+    line_between, predict_bound_lines, predict_lines, predict_series,
 };
 pub use integral::{CorePolarisation, RadialIntegral, radial_integral};
 pub use orbital::{Orbital, effective_quantum_number};

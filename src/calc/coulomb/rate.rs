@@ -10,7 +10,7 @@ use crate::calc::series::label::{parents, shell};
 /// A level as the Coulomb approximation sees it.
 #[derive(Clone, Debug)]
 pub struct Active {
-    /// Energy above the ground level, cm⁻¹.
+    /// Energy on a scale that both levels of a line share, cm⁻¹.
     pub energy_per_cm: f64,
     /// Coupling.
     pub state: LsState,

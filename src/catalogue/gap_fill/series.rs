@@ -8,7 +8,8 @@ use vocabulary::atom::{Species, limit};
 use vocabulary::spectrum::{LineKind, RateOrigin};
 
 use crate::calc::coulomb::{
-    ComputedLevel, ComputedLine, RateClass, Setting, predict_lines, predict_series,
+    BoundLevel, ComputedLevel, ComputedLine, RateClass, Setting, predict_bound_lines,
+    predict_series,
 };
 use crate::calc::series::{LabelledLevel, outer_electron};
 use crate::catalogue::reconcile::{
@@ -72,6 +73,8 @@ struct Named {
     twice_j: u16,
     energy_per_cm: f64,
     uncertainty_per_cm: f64,
+    /// Distance to the limit: that of the fit for a level that was made.
+    binding_per_cm: f64,
     /// Index of the held level; `None` for one that was made.
     place: Option<usize>,
 }
@@ -86,6 +89,7 @@ impl Named {
             twice_j: level.twice_j?,
             energy_per_cm: level.energy_per_cm,
             uncertainty_per_cm: level.uncertainty_per_cm,
+            binding_per_cm: setting.limit_per_cm - level.energy_per_cm,
             place: Some(place),
         })
     }
@@ -97,6 +101,7 @@ impl Named {
             twice_j: level.twice_j,
             energy_per_cm: level.prediction.energy_per_cm,
             uncertainty_per_cm: level.prediction.uncertainty_per_cm,
+            binding_per_cm: level.prediction.binding_per_cm,
             place: None,
         }
     }
@@ -205,22 +210,28 @@ fn lines(named: &[Named], setting: &Setting) -> Vec<ComputedLine> {
     let covered: Vec<usize> = (0..named.len())
         .filter(|&index| is_covered(&named[index].configuration))
         .collect();
-    let labelled: Vec<LabelledLevel<'_>> = covered
+    let bound: Vec<BoundLevel<'_>> = covered
         .iter()
-        .map(|&index| named[index].labelled())
-        .collect();
-    predict_lines(&labelled, &setting.calc())
-        .into_iter()
-        .filter(|line| {
-            line.rate.relative_uncertainty <= LARGEST_RATE_SIGMA
-                && line.rate.wavenumber_per_cm >= LOWEST_WAVENUMBER_PER_CM
+        .map(|&index| BoundLevel {
+            level: named[index].labelled(),
+            binding_per_cm: named[index].binding_per_cm,
         })
+        .collect();
+    predict_bound_lines(&bound, &setting.calc())
+        .into_iter()
+        .filter(|line| line.rate.relative_uncertainty <= LARGEST_RATE_SIGMA)
         .map(|line| ComputedLine {
             lower: covered[line.lower],
             upper: covered[line.upper],
             ..line
         })
+        .filter(|line| wavenumber_per_cm(line, named) >= LOWEST_WAVENUMBER_PER_CM)
         .collect()
+}
+
+/// Where a line lies: the difference of the energies of its levels.
+fn wavenumber_per_cm(line: &ComputedLine, named: &[Named]) -> f64 {
+    named[line.upper].energy_per_cm - named[line.lower].energy_per_cm
 }
 
 /// Whether the core is none of those that the approximation refuses.
@@ -272,7 +283,7 @@ fn unambiguous(
     };
     let mut fresh: Vec<(f64, f64, usize)> = (lines.iter().enumerate())
         .filter(|(_, line)| is_new(line))
-        .map(|(index, line)| (line.rate.wavenumber_per_cm, sigma(line, named), index))
+        .map(|(index, line)| (wavenumber_per_cm(line, named), sigma(line, named), index))
         .collect();
     fresh.sort_by(|a, b| a.0.total_cmp(&b.0));
     let widest = fresh.iter().map(|line| line.1).fold(0.0, f64::max);
@@ -322,7 +333,7 @@ fn sigma(line: &ComputedLine, named: &[Named]) -> f64 {
 
 fn line_report(line: &ComputedLine, named: &[Named]) -> LineReport {
     LineReport {
-        wavenumber_per_cm: Some(line.rate.wavenumber_per_cm),
+        wavenumber_per_cm: Some(wavenumber_per_cm(line, named)),
         uncertainty_per_cm: Some(sigma(line, named)),
         from_levels: true,
         lower: Some(line.lower),

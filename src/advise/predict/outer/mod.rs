@@ -55,8 +55,18 @@ pub fn outer(
         members,
         partners,
         limit_per_cm,
+        limits: limits(&all),
     }
     .answer(asked, held)
+}
+
+/// Limits of the series that were fitted.
+fn limits(all: &[PredictedSeries]) -> Vec<(SeriesKey, f64)> {
+    let limit = |series: &PredictedSeries| {
+        let fit = series.fit.as_ref()?.as_ref().ok()?;
+        Some((series.key.clone(), fit.limit_per_cm))
+    };
+    all.iter().filter_map(limit).collect()
 }
 
 fn series_error(question: &Question, series: &str, cause: SeriesError) -> PredictError {

@@ -9,11 +9,11 @@ use crate::advise::predict::{
     Answer, LevelLifetime, LowerName, PredictError, PredictedLevel, PredictedLine, Question, shown,
 };
 use crate::calc::coulomb::{
-    ComputedLine, DEEPEST, Lifetime, OuterLevel, PredictedSeries, Setting, Transition,
+    BoundLevel, ComputedLine, DEEPEST, Lifetime, OuterLevel, PredictedSeries, Setting, Transition,
     black_body_lifetime, effective_quantum_number, lifetime, polarisability_scale_a0_3,
-    predict_lines,
+    predict_bound_lines,
 };
-use crate::calc::series::{LabelledLevel, SeriesFit, SeriesKey};
+use crate::calc::series::{SeriesFit, SeriesKey};
 
 /// A lifetime beyond this, s, is not worth a number: the ground level in warm radiation.
 const ENDLESS_S: f64 = 1e6;
@@ -27,6 +27,8 @@ pub(super) struct Series<'a> {
     pub partners: Vec<Entry>,
     /// The limit as fitted, else as held, with its 1 σ, cm⁻¹.
     pub limit_per_cm: (f64, f64),
+    /// Limits of all series that were fitted, cm⁻¹.
+    pub limits: Vec<(SeriesKey, f64)>,
 }
 
 impl Series<'_> {
@@ -35,13 +37,13 @@ impl Series<'_> {
         asked: Option<&PredictedSeries>,
         held: &[OuterLevel],
     ) -> Result<Answer, PredictError> {
-        let labelled: Vec<LabelledLevel<'_>> = self
+        let bound: Vec<BoundLevel<'_>> = self
             .members
             .iter()
             .chain(&self.partners)
-            .map(Entry::labelled)
+            .map(|entry| self.bound(entry))
             .collect();
-        let lines = predict_lines(&labelled, &self.setting.calc());
+        let lines = predict_bound_lines(&bound, &self.setting.calc());
         let levels = (0..self.members.len())
             .map(|index| self.level(index, &lines))
             .collect::<Result<Vec<_>, _>>()?;
@@ -59,6 +61,16 @@ impl Series<'_> {
             levels,
             sources,
         })
+    }
+
+    /// A level with its distance to the limit as its own series fits it.
+    fn bound<'e>(&self, entry: &'e Entry) -> BoundLevel<'e> {
+        let fitted = self.limits.iter().find(|(key, _)| entry.is_of(key));
+        let limit_per_cm = fitted.map_or(self.setting.limit_per_cm, |(_, limit)| *limit);
+        BoundLevel {
+            binding_per_cm: limit_per_cm - entry.energy_per_cm,
+            level: entry.labelled(),
+        }
     }
 
     fn basis(&self, fit: Option<&SeriesFit>) -> Vec<String> {
@@ -192,20 +204,17 @@ impl Series<'_> {
     fn line(&self, line: &ComputedLine) -> PredictedLine {
         let [upper, lower] = [line.upper, line.lower].map(|index| self.entry(index));
         let uncertainty_per_cm = upper.uncertainty_per_cm.hypot(lower.uncertainty_per_cm);
+        let wavenumber_per_cm = upper.energy_per_cm - lower.energy_per_cm;
         PredictedLine {
             n: upper.n,
             upper: upper.words(),
             lower: lower.words(),
-            wavenumber_per_cm: line.rate.wavenumber_per_cm,
+            wavenumber_per_cm,
             uncertainty_per_cm,
             rate_per_s: line.rate.per_s,
             rate_relative_uncertainty: line.rate.relative_uncertainty,
             method: "Coulomb approximation",
-            placed: shown(
-                line.rate.wavenumber_per_cm,
-                uncertainty_per_cm,
-                self.question.medium,
-            ),
+            placed: shown(wavenumber_per_cm, uncertainty_per_cm, self.question.medium),
         }
     }
 }
