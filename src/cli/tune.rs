@@ -5,15 +5,15 @@ use std::path::PathBuf;
 use clap::Args;
 use serde_json::{Map, Value, json};
 use vocabulary::atom::SpeciesRequest;
-use vocabulary::light::{Medium, NumberDensity, Temperature};
+use vocabulary::light::{Medium, NumberDensity, PositionMedium, Temperature};
 
 use super::bench::{self, Load, Wanted};
 use super::options::{CatalogueOptions, OutputOptions, medium};
 use super::window::species;
 use super::{CliError, Exit, Outcome};
-use crate::advise::tune::{self, Answer, Atom, LaserError, Question};
+use crate::advise::tune::{self, Answer, Atom, Laser, LaserError, Question};
 use crate::catalogue::Catalogue;
-use crate::show::{self, Context, TuneWish};
+use crate::show::{self, Context, Format, TuneWish};
 
 /// Which transitions a laser of this tuning range reaches from populated levels
 ///
@@ -95,15 +95,78 @@ pub(super) fn run(arguments: Arguments, context: &CatalogueOptions) -> Result<Ou
         .collect();
     bench::caution(context, &elements);
     let described = describe(&catalogue, &answer, &held.atoms, &question, assumed)?;
+    let empty = answer.transitions.is_empty() && answer.two_photon.is_empty();
     let wish = TuneWish {
         typed: typed(&arguments, &question),
+        hint: match empty {
+            true => hint(&catalogue, &wanted, &arguments, &question)?,
+            false => None,
+        },
         strongest: arguments.strongest.map(|n| n as usize),
+        with_keys: !matches!(arguments.output.format, Format::Table | Format::Markdown),
     };
     Ok(Outcome {
         sheet: show::tune(&answer, &held.atoms, &question, described, &wish),
         format: arguments.output.format,
         exit: Exit::Answered,
     })
+}
+
+/// Where to look when nothing lies in a range: in the other medium, else at the nearest transition of
+/// the species asked for.
+fn hint(
+    catalogue: &Catalogue,
+    wanted: &Wanted<'_>,
+    arguments: &Arguments,
+    question: &Question,
+) -> Result<Option<String>, CliError> {
+    let (Some(range), [laser]) = (&arguments.range, question.lasers.as_slice()) else {
+        return Ok(None);
+    };
+    let found = |laser: Laser, medium: Medium| -> Result<Vec<(f64, String)>, CliError> {
+        let question = Question {
+            lasers: vec![laser],
+            medium,
+            ..question.clone()
+        };
+        let held = bench::atoms(catalogue, wanted, load(&question))?;
+        Ok(tune::answer(&question, &held.atoms)?.positions(&held.atoms))
+    };
+    let other = match laser.range.read_in {
+        Some(PositionMedium::Air) => Some((Medium::Vacuum, "vacuum")),
+        Some(PositionMedium::Vacuum) => Some((Medium::Air, "air")),
+        None => None,
+    };
+    if let Some((medium, word)) = other
+        && let Ok(laser) = bench::laser(range, medium)
+    {
+        let names: Vec<String> = found(laser, medium)?
+            .into_iter()
+            .map(|(_, name)| name)
+            .collect();
+        if let Some(first) = names.first() {
+            return Ok(Some(match names.len() {
+                1 => format!("Read in {word} the range holds {first}: ask with --medium {word}."),
+                n => format!(
+                    "Read in {word} the range holds {n}, {first} among them: ask with --medium {word}."
+                ),
+            }));
+        }
+    }
+    if wanted.of.is_empty() {
+        return Ok(None);
+    }
+    let mut wide = laser.clone();
+    wide.range.wavenumber_low_per_cm /= 2.0;
+    wide.range.wavenumber_high_per_cm *= 2.0;
+    let far = |wavenumber: f64| {
+        let range = &laser.range;
+        (range.wavenumber_low_per_cm - wavenumber).max(wavenumber - range.wavenumber_high_per_cm)
+    };
+    let nearest = found(wide, question.medium)?
+        .into_iter()
+        .min_by(|a, b| far(a.0).total_cmp(&far(b.0)));
+    Ok(nearest.map(|(_, name)| format!("The nearest is {name}.")))
 }
 
 fn check(arguments: &Arguments) -> Result<(Question, Vec<String>), CliError> {
@@ -189,7 +252,6 @@ fn load(question: &Question) -> Load {
 
 /// What was asked, and in which medium a range was read.
 fn typed(arguments: &Arguments, question: &Question) -> String {
-    use vocabulary::light::PositionMedium;
     let read_in = match question.lasers.first().and_then(|l| l.range.read_in) {
         Some(PositionMedium::Air) => " (read in air)",
         Some(PositionMedium::Vacuum) => " (read in vacuum)",

@@ -5,12 +5,13 @@ mod decay;
 mod error;
 mod neighbour;
 mod populated;
+mod seen;
 pub mod strength;
 mod two_photon;
 
 use std::sync::Arc;
 
-use vocabulary::light::{Air, Medium, SpectralRange};
+use vocabulary::light::{Air, Medium, PositionMedium, SpectralRange};
 use vocabulary::spectrum::{Level, Line};
 
 pub use atom::{Atom, Lifetime, is_named, same_level};
@@ -18,11 +19,13 @@ pub use decay::{Cycling, Decay, DecayBook, Decays, dipole_allowed};
 pub use error::LaserError;
 pub use neighbour::Neighbour;
 pub use populated::{POPULATED, Populated};
+pub use seen::{Absorbed, Seen};
 pub use two_photon::{TwoPhoton, two_photon_allowed};
 
 use super::hyperfine::{self, Component, Constants};
 use super::{Placed, placed};
 use crate::calc::shape::ShapeError;
+use seen::Narrow;
 use strength::Dipole;
 
 /// MHz of 1 cm⁻¹.
@@ -118,8 +121,10 @@ pub struct Transition {
     pub lower_population: Option<f64>,
     /// Part of the atoms of its element that this isotope is; 1 where it was asked for by name.
     pub isotope_fraction: Option<f64>,
-    /// Part of weak light that the cell absorbs at line centre.
-    pub absorbed_fraction: Option<f64>,
+    /// What the cell absorbs of weak narrow light.
+    pub absorbed: Option<Absorbed>,
+    /// What lasers with a linewidth of their own see of it.
+    pub seen: Vec<Seen>,
     /// Hyperfine components; empty where not asked for or not known.
     pub components: Vec<Component>,
     /// Why there are no components, where they were asked for.
@@ -158,6 +163,26 @@ pub struct Answer {
     pub two_photon: Vec<TwoPhoton>,
     /// Species (by place in the list) whose populations rest on too few levels.
     pub lower_bounds: Vec<usize>,
+}
+
+impl Answer {
+    /// Vacuum wavenumber (cm⁻¹) of the laser for each transition, and its name: species and
+    /// wavelength in nm in the medium asked for.
+    pub fn positions(&self, atoms: &[Atom]) -> Vec<(f64, String)> {
+        let name = |atom: usize, placed: &Placed| {
+            let medium = match placed.medium {
+                PositionMedium::Air => "air",
+                PositionMedium::Vacuum => "vacuum",
+            };
+            let species = atoms[atom].spectrum.species;
+            format!("{species} {:.3} nm ({medium})", placed.wavelength_nm)
+        };
+        let one = self.transitions.iter();
+        let one = one.map(|t| (t.line.wavenumber_per_cm, name(t.atom, &t.placed)));
+        let two = self.two_photon.iter();
+        let two = two.map(|t| (t.photon_per_cm.0, name(t.atom, &t.placed)));
+        one.chain(two).collect()
+    }
 }
 
 /// Answers the question from the atoms that may be there.
@@ -269,16 +294,30 @@ impl Bench<'_> {
         let lower_rate = self.book.of(atom, lower).total_per_s().unwrap_or(0.0);
         let total = decays.total_per_s().or(line.rate_per_s);
         let natural_hz = total.map(|upper_rate| (upper_rate + lower_rate) / std::f64::consts::TAU);
-        let strengths = self
-            .strengths(line, (lower, upper), natural_hz, mass_u)
-            .map_err(in_species(&self.atoms[atom]))?;
+        let failed = in_species(&self.atoms[atom]);
+        let dipole = dipole(line, lower, upper);
+        let strengths = dipole
+            .map(|dipole| seen::strengths(question, &dipole, natural_hz, mass_u))
+            .transpose()
+            .map_err(&failed)?;
         let thermal = self.populated[atom].thermally(lower.number);
         let lower_population = self.populated[atom]
             .fraction(lower.number)
             .filter(|_| thermal);
         let (components, no_components) = self.components(atom, lower, upper);
+        let absorbers = self.absorbers(atom, lower_population);
+        let saturation = total.map(|t| strength::saturation_mw_per_cm2(vacuum_nm, t));
+        let narrow = Narrow {
+            dipole,
+            natural_hz,
+            saturation_mw_per_cm2: saturation,
+            mass_u,
+            absorbers_per_cm3: absorbers,
+            components: components.iter().map(|c| (c.share, c.offset_mhz)).collect(),
+        };
         Ok(Transition {
             atom,
+            seen: seen::seen(question, &lasers, &narrow).map_err(&failed)?,
             lasers,
             placed,
             air_nm: self.air.index(vacuum_nm).ok().map(|n| vacuum_nm / n.index),
@@ -291,11 +330,11 @@ impl Bench<'_> {
                 question.temperature_k,
                 mass_u,
             )
-            .map_err(in_species(&self.atoms[atom]))?,
-            saturation_mw_per_cm2: total.map(|t| strength::saturation_mw_per_cm2(vacuum_nm, t)),
+            .map_err(&failed)?,
+            saturation_mw_per_cm2: saturation,
             recoil_cm_per_s: strength::recoil_cm_per_s(vacuum_nm, mass_u),
             isotope_fraction: self.part(atom),
-            absorbed_fraction: self.absorbed(atom, lower_population, strengths),
+            absorbed: seen::absorbed(question, &narrow, natural_hz).map_err(&failed)?,
             strengths,
             lower_population,
             components,
@@ -321,37 +360,6 @@ impl Bench<'_> {
             .or_else(|| Some((line.rate_per_s? / total?).min(1.0)))
     }
 
-    fn strengths(
-        &self,
-        line: &Line,
-        (lower, upper): (&Level, &Level),
-        natural_hz: Option<f64>,
-        mass_u: f64,
-    ) -> Result<Option<Strengths>, ShapeError> {
-        let (Some(rate_per_s), Some(lower_weight), Some(upper_weight)) =
-            (line.rate_per_s, lower.g, upper.g)
-        else {
-            return Ok(None);
-        };
-        let vacuum_nm = 1e7 / line.wavenumber_per_cm;
-        let dipole = Dipole {
-            vacuum_nm,
-            rate_per_s,
-            lower_weight,
-            upper_weight,
-        };
-        let temperature_k = self.question.temperature_k;
-        Ok(Some(Strengths {
-            oscillator_strength: dipole.oscillator_strength(),
-            natural_cross_section_cm2: natural_hz.map(|hz| dipole.natural_cross_section_cm2(hz)),
-            doppler_cross_section_cm2: dipole.doppler_cross_section_cm2(
-                temperature_k,
-                mass_u,
-                natural_hz.unwrap_or(0.0),
-            )?,
-        }))
-    }
-
     /// Part of the atoms of its element that an isotope is; 1 where it was asked for by name.
     fn part(&self, atom: usize) -> Option<f64> {
         let atom = &self.atoms[atom];
@@ -362,19 +370,9 @@ impl Bench<'_> {
         }
     }
 
-    fn absorbed(
-        &self,
-        atom: usize,
-        population: Option<f64>,
-        strengths: Option<Strengths>,
-    ) -> Option<f64> {
-        let absorbers = self.question.density_per_cm3? * self.part(atom)? * population?;
-        let cross_section = strengths?.doppler_cross_section_cm2;
-        Some(strength::absorbed_fraction(
-            absorbers,
-            cross_section,
-            self.question.cell_cm,
-        ))
+    /// Atoms of the cell in the lower level, cm⁻³.
+    fn absorbers(&self, atom: usize, population: Option<f64>) -> Option<f64> {
+        Some(self.question.density_per_cm3? * self.part(atom)? * population?)
     }
 
     fn components(
@@ -391,6 +389,16 @@ impl Bench<'_> {
             Err(why) => (Vec::new(), Some(why)),
         }
     }
+}
+
+/// What the strengths of a line are made from, where its rate and weights are held.
+fn dipole(line: &Line, lower: &Level, upper: &Level) -> Option<Dipole> {
+    Some(Dipole {
+        vacuum_nm: 1e7 / line.wavenumber_per_cm,
+        rate_per_s: line.rate_per_s?,
+        lower_weight: lower.g?,
+        upper_weight: upper.g?,
+    })
 }
 
 /// Hyperfine components of a line of one isotope, or why they are not known.

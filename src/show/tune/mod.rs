@@ -35,6 +35,10 @@ pub struct TuneWish {
     pub typed: String,
     /// Show only so many, the strongest.
     pub strongest: Option<usize>,
+    /// Where to look when nothing was found.
+    pub hint: Option<String>,
+    /// The form of the answer needs the keys of each row.
+    pub with_keys: bool,
 }
 
 /// Builds the sheet of a tuning range.
@@ -58,13 +62,15 @@ pub fn tune(
         );
     }
     let mut object = context.object(&notes);
+    // Thousands of rows have thousands of keys: they are made where they are printed.
     let list = shown
         .iter()
+        .filter(|_| wish.with_keys)
         .map(|t| transition_object(t, atoms, question))
         .collect();
     object.insert("transitions".into(), Value::Array(list));
     Sheet {
-        headline: headline(&shown, answer.transitions.len(), &wish.typed),
+        headline: headline(&shown, answer.transitions.len(), wish),
         columns: COLUMNS.to_vec(),
         rows: shown.iter().flat_map(|t| rows(t, question)).collect(),
         notes,
@@ -87,13 +93,15 @@ fn chosen(answer: &Answer, strongest: Option<usize>) -> Vec<&Transition> {
     all
 }
 
-fn headline(shown: &[&Transition], all: usize, typed: &str) -> Vec<String> {
+fn headline(shown: &[&Transition], all: usize, wish: &TuneWish) -> Vec<String> {
+    let typed = &wish.typed;
     if shown.is_empty() {
-        return vec![format!(
+        let nothing = format!(
             "{typed}: no held line from a populated level lies in this range (levels with at least \
              {} of the atoms, or metastable ones where asked for).",
             percent(POPULATED)
-        )];
+        );
+        return [nothing].into_iter().chain(wish.hint.clone()).collect();
     }
     let species: BTreeSet<String> = shown.iter().map(|t| t.line.species.to_string()).collect();
     let plural = if all == 1 {

@@ -1,7 +1,7 @@
 //! Sentences below the table of `tune`.
 
 use super::{name, three_digits};
-use crate::advise::tune::{Answer, Atom, Cycling, Question, Transition};
+use crate::advise::tune::{Absorbed, Answer, Atom, Cycling, Question, Seen, Transition};
 use crate::show::line::level_name;
 use crate::show::number::percent;
 use crate::show::sheet::Context;
@@ -155,30 +155,78 @@ fn absorption_notes(shown: &[&Transition], question: &Question) -> Vec<String> {
     if question.density_per_cm3.is_none() {
         return Vec::new();
     }
-    let absorbed: Vec<String> = shown
-        .iter()
-        .filter_map(|t| Some(format!("{} {}", name(t), percent(t.absorbed_fraction?))))
-        .collect();
-    match absorbed.is_empty() {
-        true => vec!["Absorption of the cell: not known (no rate, weight or population).".into()],
-        false => vec![format!(
-            "Absorption of weak light at line centre over {} cm: {}; without hyperfine structure.",
-            question.cell_cm,
-            absorbed.join(", ")
-        )],
+    let known = || shown.iter().filter_map(|t| Some((*t, t.absorbed?)));
+    let words = |with_structure: bool| -> Vec<String> {
+        known()
+            .filter(|(_, absorbed)| absorbed.offset_mhz.is_some() == with_structure)
+            .map(|(t, absorbed)| absorbed_words(t, absorbed, question))
+            .collect()
+    };
+    let cell = question.cell_cm;
+    let (resolved, plain) = (words(true), words(false));
+    let mut out = Vec::new();
+    if !resolved.is_empty() {
+        out.push(format!(
+            "Absorption of weak light over {cell} cm at the strongest point of the hyperfine \
+             structure: {}.",
+            resolved.join(", ")
+        ));
+    }
+    if !plain.is_empty() {
+        let hyperfine = if question.hyperfine {
+            ""
+        } else {
+            "; without hyperfine structure, which spreads it (--hyperfine)"
+        };
+        out.push(format!(
+            "Absorption of weak light at line centre over {cell} cm: {}{hyperfine}.",
+            plain.join(", ")
+        ));
+    }
+    if out.is_empty() {
+        out.push("Absorption of the cell: not known (no rate, weight or population).".into());
+    }
+    out
+}
+
+/// `87Rb I 780.027 21 % at −2450 MHz (20 % of red)`.
+fn absorbed_words(t: &Transition, absorbed: Absorbed, question: &Question) -> String {
+    let at = |offset: f64| format!(" at {offset:+.0} MHz");
+    let place = absorbed.offset_mhz.map_or_else(String::new, at);
+    let narrow = format!("{} {}{place}", name(t), percent(absorbed.fraction));
+    let broad = t.seen.iter().filter_map(|seen| {
+        let laser = &question.lasers[seen.laser].name;
+        Some(format!("{} of {laser}", percent(seen.absorbed?.fraction)))
+    });
+    let broad: Vec<String> = broad.collect();
+    match broad.is_empty() {
+        true => narrow,
+        false => format!("{narrow} ({})", broad.join(", ")),
     }
 }
 
-/// How large a beam each laser saturates.
+/// What each laser sees, and how large a beam it saturates.
 fn laser_notes(shown: &[&Transition], question: &Question) -> Vec<String> {
     let mut out = Vec::new();
+    let mut folded = false;
     for (index, laser) in question.lasers.iter().enumerate() {
+        let reached = || shown.iter().filter(|t| t.lasers.contains(&index));
+        let seen = |t: &Transition| t.seen.iter().find(|s| s.laser == index).copied();
+        let of: Vec<String> = reached()
+            .filter_map(|t| Some((t, seen(t)?)))
+            .filter_map(|(t, seen)| Some(seen_words(&name(t), &seen, laser.power_mw)?))
+            .take(8)
+            .collect();
+        if let Some(width) = laser.linewidth_mhz.filter(|_| !of.is_empty()) {
+            folded = true;
+            let name = &laser.name;
+            out.push(format!("{name}, linewidth {width} MHz: {}.", of.join("; ")));
+            continue;
+        }
         let Some(power) = laser.power_mw else {
             continue;
         };
-        let of: Vec<String> = shown
-            .iter()
-            .filter(|t| t.lasers.contains(&index))
+        let of: Vec<String> = reached()
             .filter_map(|t| {
                 let area = power / t.saturation_mw_per_cm2?;
                 Some(format!("{} {} cm²", name(t), three_digits(area)))
@@ -194,5 +242,31 @@ fn laser_notes(shown: &[&Transition], question: &Question) -> Vec<String> {
             ));
         }
     }
+    if folded {
+        out.push(FOLDED.into());
+    }
     out
+}
+
+/// How a linewidth counts.
+const FOLDED: &str = "Linewidths: a laser's line is taken as a Lorentzian (white frequency noise); its \
+                      width adds to the natural one, and both are folded with the Doppler profile. The \
+                      table is for narrow light.";
+
+/// `87Rb I 780.027 1.8e-9 cm² at rest, 3.3e-11 cm² in the gas, saturation 1.8 mW/cm² (11 cm²)`.
+fn seen_words(name: &str, seen: &Seen, power_mw: Option<f64>) -> Option<String> {
+    let gas = seen.doppler_cross_section_cm2?;
+    let mut words = name.to_owned();
+    if let Some(rest) = seen.natural_cross_section_cm2 {
+        words.push_str(&format!(" {rest:.3e} cm² at rest,"));
+    }
+    words.push_str(&format!(" {gas:.3e} cm² in the gas"));
+    if let Some(saturation) = seen.saturation_mw_per_cm2 {
+        words.push_str(&format!(", saturation {} mW/cm²", three_digits(saturation)));
+        if let Some(power) = power_mw {
+            let area = three_digits(power / saturation);
+            words.push_str(&format!(" (of a beam of {area} cm²)"));
+        }
+    }
+    Some(words)
 }

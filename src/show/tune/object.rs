@@ -67,13 +67,27 @@ pub(super) fn transition_object(t: &Transition, atoms: &[Atom], question: &Quest
     );
     let unrated: Vec<Value> = t.decays.unrated().map(|l| level_object(l)).collect();
     put("unrated_decays_to", Value::Array(unrated));
-    put("absorbed_fraction", json!(t.absorbed_fraction));
+    put("absorbed_fraction", json!(t.absorbed.map(|a| a.fraction)));
+    let offset = t.absorbed.and_then(|a| a.offset_mhz);
+    put("absorbed_at_offset_mhz", json!(offset));
     let lasers: Vec<&str> = t
         .lasers
         .iter()
         .map(|&l| question.lasers[l].name.as_str())
         .collect();
     put("lasers", json!(lasers));
+    let seen = t.seen.iter().map(|s| {
+        json!({
+            "laser": question.lasers[s.laser].name,
+            "linewidth_mhz": s.linewidth_mhz,
+            "natural_cross_section_cm2": s.natural_cross_section_cm2,
+            "doppler_cross_section_cm2": s.doppler_cross_section_cm2,
+            "saturation_intensity_mw_per_cm2": s.saturation_mw_per_cm2,
+            "absorbed_fraction": s.absorbed.map(|a| a.fraction),
+            "absorbed_at_offset_mhz": s.absorbed.and_then(|a| a.offset_mhz),
+        })
+    });
+    put("seen_by", Value::Array(seen.collect()));
     let components: Vec<Value> = t
         .components
         .iter()

@@ -52,6 +52,7 @@ pub(super) fn two_photon(
     let mut object = context.object(&notes);
     let list = shown
         .iter()
+        .filter(|_| wish.with_keys)
         .map(|t| two_photon_object(t, atoms, question))
         .collect();
     object.insert("transitions".into(), Value::Array(list));
@@ -73,7 +74,7 @@ pub(super) fn two_photon(
         )
     };
     Sheet {
-        headline: vec![headline],
+        headline: [headline].into_iter().chain(wish.hint.clone()).collect(),
         columns: TWO_PHOTON_COLUMNS.to_vec(),
         rows: shown.iter().map(|t| two_photon_row(t, atoms)).collect(),
         notes,
