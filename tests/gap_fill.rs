@@ -13,7 +13,8 @@ use std::sync::{Mutex, MutexGuard, OnceLock};
 
 use gap_fill_support::{RUBIDIUM, all_lines, bundled, common, label};
 use lineclear::calc::coulomb::{ComputedLevel, Setting, predict_series};
-use lineclear::calc::series::LabelledLevel;
+use lineclear::calc::series::label::{bare_term, shell};
+use lineclear::calc::series::{LabelledLevel, outer_electron};
 use lineclear::catalogue::{Catalogue, SourceFiles};
 use lineclear::vocabulary;
 use vocabulary::atom::HalfInteger;
@@ -102,6 +103,60 @@ fn no_computed_line_stands_beside_a_table_line_of_the_same_name() {
         }
     }
     assert!(computed > 100_000, "{computed}");
+}
+
+/// Where coupling is not LS no rate is computed, and where it begins to fail the rate is uncertain.
+#[test]
+fn rates_are_computed_only_where_coupling_is_ls() {
+    let catalogue = bundled();
+    let (mut computed, mut open) = (0, Vec::new());
+    for species in catalogue.species().unwrap() {
+        for line in all_lines(&catalogue, species) {
+            if line.rate_source.as_deref() != Some("computed-series") {
+                continue;
+            }
+            computed += 1;
+            let mut cores = Vec::new();
+            let mut multiplicities = Vec::new();
+            for end in [&line.lower, &line.upper] {
+                let level = end.as_ref().unwrap();
+                let term = bare_term(level.term.as_deref().unwrap());
+                // Pair coupling writes K in brackets, jj coupling has no letter of L.
+                assert!(!term.contains(['[', '(']), "{species}: {term}");
+                multiplicities.push(term.chars().next());
+                let outer = outer_electron(level.configuration.as_deref().unwrap()).unwrap();
+                cores.push(outer.core);
+            }
+            assert_eq!(
+                multiplicities[0], multiplicities[1],
+                "{species}: the spin changes"
+            );
+            let shells = |core: &str| -> Vec<(u32, u32, u32)> {
+                core.split_whitespace().filter_map(shell).collect()
+            };
+            let is_open = |&(_, l, q): &(u32, u32, u32)| q < 4 * l + 2;
+            for core in &cores {
+                let deep = |s: &(u32, u32, u32)| s.1 > 1 && is_open(s);
+                assert!(
+                    !shells(core).iter().any(deep),
+                    "{species}: open shell in {core}"
+                );
+            }
+            // An open p shell that is not half filled.
+            let split = |core: &String| {
+                let of = |s: &(u32, u32, u32)| s.1 == 1 && is_open(s);
+                shells(core).iter().any(of) && !core.contains("S)")
+            };
+            if cores.iter().any(split) {
+                open.push(line.rate_relative_uncertainty.unwrap());
+            }
+        }
+    }
+    assert!(computed > 5_000, "{computed}");
+    assert!(open.len() > 200, "{}", open.len());
+    open.sort_by(f64::total_cmp);
+    // The median σ of rigid cores is 2 % (reference/coulomb/withheld.md); that of these ten times more.
+    assert!(open[open.len() / 2] > 0.2, "{}", open[open.len() / 2]);
 }
 
 #[test]

@@ -8,6 +8,9 @@ use std::collections::HashMap;
 use common::{json, run};
 use serde_json::Value;
 
+mod absorption {
+    include!("tune/absorption.rs");
+}
 mod lifetimes {
     include!("tune/lifetimes.rs");
 }
