@@ -12,7 +12,7 @@ use std::path::Path;
 use std::sync::{Mutex, MutexGuard, OnceLock};
 
 use gap_fill_support::{RUBIDIUM, all_lines, bundled, common, label};
-use lineclear::calc::coulomb::{ComputedLevel, Setting, predict_series};
+use lineclear::calc::coulomb::{ComputedLevel, Setting, predict_scaled_series};
 use lineclear::calc::series::label::{bare_term, shell};
 use lineclear::calc::series::{LabelledLevel, outer_electron};
 use lineclear::catalogue::{Catalogue, SourceFiles};
@@ -161,8 +161,7 @@ fn rates_are_computed_only_where_coupling_is_ls() {
 
 #[test]
 fn computed_levels_of_rubidium_are_those_of_the_calculator() {
-    // 0.1 per cm: the scale that the table of the lowest levels declares, the widest of its sources.
-    let setting = Setting::of(RUBIDIUM, 0.1).unwrap();
+    let setting = Setting::of(RUBIDIUM).unwrap();
     let held = tables_alone().levels(RUBIDIUM).unwrap();
     let names: Vec<(String, &vocabulary::spectrum::Level)> = held
         .iter()
@@ -181,10 +180,16 @@ fn computed_levels_of_rubidium_are_those_of_the_calculator() {
             twice_j: level.j.unwrap().twice(),
         })
         .collect();
-    let calculated: Vec<ComputedLevel> = predict_series(&labelled, &setting.calc(), 20)
-        .into_iter()
-        .flat_map(|series| series.levels)
-        .collect();
+    // The scales that the two tables declare, cm⁻¹.
+    let scale = |level: &vocabulary::spectrum::Level| match &*level.source {
+        "morton2000" => 0.1,
+        "curated-rb-i" => 0.05,
+        other => panic!("a level of {other}"),
+    };
+    let scales: Vec<f64> = names.iter().map(|(_, level)| scale(level)).collect();
+    let made = predict_scaled_series(&labelled, &scales, &setting.calc(), 20);
+    let calculated: Vec<ComputedLevel> =
+        made.into_iter().flat_map(|series| series.levels).collect();
     let catalogue = bundled().levels(RUBIDIUM).unwrap();
     let computed = || {
         catalogue

@@ -217,7 +217,8 @@ fn an_import_that_changes_a_series_leaves_the_others_bit_for_bit() {
         let lines = other_lines(&catalogue, species, letter, j);
         let sigma = 0.1 * level.energy_uncertainty_per_cm;
         let record = Record::Level(level_record(species, name, energy, sigma));
-        import(&mut catalogue, "invented", &[record]);
+        // A table of a wide scale: only its own series may feel it.
+        import_scaled(&mut catalogue, "invented", 0.5, &[record]);
         let after = computed_levels(&catalogue, species);
         let part = |all: &[(String, String)], own: bool| -> Vec<(String, String)> {
             let of = all.iter().filter(|(key, _)| (key == series) == own);

@@ -7,7 +7,7 @@ use vocabulary::light::constants::RYDBERG_PER_CM;
 use vocabulary::spectrum::{Level, PositionOrigin};
 
 use crate::calc::coulomb::{
-    BoundLevel, OuterLevel, PredictedSeries, Setting, bound_line_between, predict_series,
+    BoundLevel, OuterLevel, PredictedSeries, Setting, bound_line_between, predict_scaled_series,
 };
 use crate::calc::one_electron::{
     HIGHEST_FINE_N, Nucleus, component_rate, energy, rate_relative_uncertainty,
@@ -138,7 +138,8 @@ pub fn series_of(
         .collect();
     let groups = group_series(&labelled);
     let (mut found, mut refused) = (Vec::new(), Vec::new());
-    for series in predict_series(&labelled, &setting.calc(), HIGHEST_N)
+    let scales: Vec<f64> = held.iter().map(|level| level.scale_per_cm).collect();
+    for series in predict_scaled_series(&labelled, &scales, &setting.calc(), HIGHEST_N)
         .into_iter()
         .filter(|series| series.key.l == l)
     {

@@ -6,6 +6,7 @@ use super::{
     Active, CorePolarisation, CoulombError, LsState, Orbital, Rate, RateClass, RateModel,
     effective_quantum_number, rate,
 };
+use crate::calc::series::label::bare_term;
 use crate::calc::series::polarisation::{CorePolarisability, LOWEST_L, NonPenetrating};
 use crate::calc::series::{
     Core, LabelledLevel, Limit, Prediction, Series, SeriesError, SeriesFit, SeriesInput, SeriesKey,
@@ -23,7 +24,7 @@ pub struct Species<'a> {
     pub rydberg_per_cm: f64,
     /// Ionisation energy, cm⁻¹: the limit of the series on the ground core.
     pub limit_per_cm: f64,
-    /// 1 σ of the limit against the levels, scales included, cm⁻¹.
+    /// 1 σ of the limit above the ground level, cm⁻¹.
     pub limit_sigma_per_cm: f64,
 }
 
@@ -79,13 +80,49 @@ pub fn predict_series(
     species: &Species<'_>,
     most_n: u32,
 ) -> Vec<PredictedSeries> {
+    predict_scaled_series(levels, &[], species, most_n)
+}
+
+/// [`predict_series`] of levels whose tables have uncertain scales: `scales_per_cm` holds, for each
+/// level, by how much its table as a whole may be off the ground level (1 σ, cm⁻¹; none counts as
+/// 0). A series is fitted to a limit that is as uncertain against its own members, and no other
+/// series feels it.
+pub fn predict_scaled_series(
+    levels: &[LabelledLevel<'_>],
+    scales_per_cm: &[f64],
+    species: &Species<'_>,
+    most_n: u32,
+) -> Vec<PredictedSeries> {
     let groups = group_series(levels);
     let mut found: Vec<PredictedSeries> = groups
         .iter()
-        .map(|series| from_members(series, species, most_n))
+        .map(|series| {
+            let scale_per_cm = scale_of(&series.key, levels, scales_per_cm);
+            let against = Species {
+                limit_sigma_per_cm: species.limit_sigma_per_cm.hypot(scale_per_cm),
+                ..species.clone()
+            };
+            from_members(series, &against, most_n)
+        })
         .collect();
     found.extend(non_penetrating(&groups, species, most_n));
     found
+}
+
+/// The widest scale among the members of a series; the ground level is on every scale.
+fn scale_of(key: &SeriesKey, levels: &[LabelledLevel<'_>], scales_per_cm: &[f64]) -> f64 {
+    let is_member = |level: &LabelledLevel<'_>| {
+        outer_electron(level.configuration).is_some_and(|outer| {
+            outer.core == key.core
+                && outer.l == key.l
+                && level.twice_j == key.twice_j
+                && bare_term(level.term) == key.term
+        })
+    };
+    (levels.iter().zip(scales_per_cm))
+        .filter(|(level, _)| level.energy_per_cm != 0.0 && is_member(level))
+        .map(|(_, scale)| *scale)
+        .fold(0.0, f64::max)
 }
 
 fn from_members(series: &Series, species: &Species<'_>, most_n: u32) -> PredictedSeries {

@@ -30,7 +30,7 @@ pub use decay::{
 pub use error::CoulombError;
 pub use gaps::{
     BoundLevel, ComputedLevel, ComputedLine, PredictedSeries, Species, bound_line_between,
-    line_between, predict_bound_lines, predict_lines, predict_series,
+    line_between, predict_bound_lines, predict_lines, predict_scaled_series, predict_series,
 };
 pub use integral::{CorePolarisation, RadialIntegral, radial_integral};
 pub use orbital::{Orbital, effective_quantum_number};

@@ -21,6 +21,8 @@ pub struct OuterLevel {
     pub energy_per_cm: f64,
     /// 1 σ, cm⁻¹.
     pub uncertainty_per_cm: f64,
+    /// By how much the scale of its table may be off, 1 σ, cm⁻¹.
+    pub scale_per_cm: f64,
     /// Key of its source.
     pub source: Arc<str>,
 }
@@ -38,14 +40,13 @@ pub struct Setting {
     pub rydberg_per_cm: f64,
     /// Ionisation energy, cm⁻¹.
     pub limit_per_cm: f64,
-    /// 1 σ of the ionisation energy against the levels, cm⁻¹.
+    /// 1 σ of the ionisation energy, cm⁻¹.
     pub limit_sigma_per_cm: f64,
 }
 
 impl Setting {
     /// The setting of a species; `None` where its ionisation energy or mass is not known.
-    /// `scale_per_cm` is the uncertainty common to the levels.
-    pub fn of(species: Species, scale_per_cm: f64) -> Option<Self> {
+    pub fn of(species: Species) -> Option<Self> {
         let known = limit(species)?;
         let mixture = Species::new(species.atomic_number, 1);
         let atom = Species {
@@ -59,7 +60,7 @@ impl Setting {
             core_charge: u32::from(species.core_charge()),
             rydberg_per_cm: RYDBERG_PER_CM / (1.0 + ELECTRON_MASS_U / nucleus_u),
             limit_per_cm: known.energy_per_cm,
-            limit_sigma_per_cm: known.uncertainty_per_cm.hypot(scale_per_cm),
+            limit_sigma_per_cm: known.uncertainty_per_cm,
         })
     }
 
@@ -121,7 +122,7 @@ mod tests {
     #[test]
     fn cores_take_one_form() {
         let form = |z, stage, text: &str| {
-            let setting = Setting::of(Species::new(z, stage), 0.0).unwrap();
+            let setting = Setting::of(Species::new(z, stage)).unwrap();
             setting.one_form(text).unwrap()
         };
         assert_eq!(form(11, 1, "3p"), "2p6 3p");

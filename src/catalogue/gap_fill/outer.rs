@@ -35,11 +35,7 @@ impl Catalogue {
                 .collect()
         };
         let held = read().map_err(self.failed("read"))?;
-        let scale_per_cm = held
-            .iter()
-            .map(|level| level.scale_per_cm)
-            .fold(0.0, f64::max);
-        let Some(setting) = Setting::of(species, scale_per_cm) else {
+        let Some(setting) = Setting::of(species) else {
             return Ok(None);
         };
         let mut best = BTreeMap::new();
@@ -91,6 +87,7 @@ impl Held {
             twice_j: self.twice_j?,
             energy_per_cm: self.energy_per_cm,
             uncertainty_per_cm: self.uncertainty_per_cm,
+            scale_per_cm: self.scale_per_cm,
             source: self.source,
         })
     }

@@ -9,7 +9,7 @@ use vocabulary::spectrum::{LineKind, RateOrigin};
 
 use crate::calc::coulomb::{
     BoundLevel, ComputedLevel, ComputedLine, RateClass, Setting, predict_bound_lines,
-    predict_series,
+    predict_scaled_series,
 };
 use crate::calc::series::{LabelledLevel, outer_electron};
 use crate::catalogue::reconcile::{
@@ -37,7 +37,7 @@ pub(super) fn reports(
     source: &RankedSource,
 ) -> Option<SourceReports> {
     let scale_per_cm = widest_scale(held);
-    let setting = Setting::of(species, scale_per_cm)?;
+    let setting = Setting::of(species)?;
     let mut named = named_levels(held, &setting);
     let predicted = missing(&named, &setting, held);
     let first_made = named.len();
@@ -58,12 +58,16 @@ pub(super) fn reports(
     })
 }
 
-/// Uncertainty common to all levels of one source: the largest of them.
+/// By how much the scale of the table of a level may be off, cm⁻¹.
+fn scale_at(held: &Derived, place: usize) -> f64 {
+    let level = &held.levels[place];
+    held.sources[level.source].scale_at(level.energy_per_cm)
+}
+
+/// The largest of them, so that a level is found again whatever tables say of it.
 fn widest_scale(held: &Derived) -> f64 {
-    held.levels
-        .iter()
-        .map(|level| held.sources[level.source].scale_at(level.energy_per_cm))
-        .fold(0.0, f64::max)
+    let scales = (0..held.levels.len()).map(|place| scale_at(held, place));
+    scales.fold(0.0, f64::max)
 }
 
 /// A level with its label in one form.
@@ -198,7 +202,10 @@ fn missing(named: &[Named], setting: &Setting, held: &Derived) -> Vec<ComputedLe
         };
         unresolved.iter().any(|mean| mean.same_multiplet(&label))
     };
-    predict_series(&labelled, &setting.calc(), HIGHEST_N)
+    let scales: Vec<f64> = (named.iter())
+        .map(|level| level.place.map_or(0.0, |place| scale_at(held, place)))
+        .collect();
+    predict_scaled_series(&labelled, &scales, &setting.calc(), HIGHEST_N)
         .into_iter()
         .flat_map(|series| series.levels)
         .filter(|level| level.prediction.energy_per_cm < setting.limit_per_cm && !is_held(level))

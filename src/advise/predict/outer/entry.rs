@@ -17,6 +17,8 @@ pub(super) struct Entry {
     pub core: String,
     pub energy_per_cm: f64,
     pub uncertainty_per_cm: f64,
+    /// By how much the scale of its table may be off, cm⁻¹.
+    pub scale_per_cm: f64,
     pub method: String,
 }
 
@@ -63,6 +65,7 @@ pub(super) fn entry(level: &OuterLevel) -> Option<Entry> {
         },
         energy_per_cm: level.energy_per_cm,
         uncertainty_per_cm: level.uncertainty_per_cm,
+        scale_per_cm: level.scale_per_cm,
         method: format!("held, {}", level.source),
     })
 }
@@ -88,6 +91,7 @@ pub(super) fn predicted_entry(key: &SeriesKey, n: u32, energy: (f64, f64), metho
         core: key.core.clone(),
         energy_per_cm: energy.0,
         uncertainty_per_cm: energy.1,
+        scale_per_cm: 0.0,
         method: method.to_owned(),
     }
 }

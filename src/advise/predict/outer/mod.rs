@@ -8,11 +8,13 @@ use std::collections::BTreeMap;
 use self::entry::{Entry, entry, key_words, predicted_entry};
 use self::rates::Series;
 use super::{Answer, PredictError, Question, SeriesName};
-use crate::calc::coulomb::{OuterLevel, PredictedSeries, Setting, predict_series};
+use crate::calc::coulomb::{
+    OuterLevel, PredictedSeries, Setting, predict_scaled_series, predict_series,
+};
 use crate::calc::series::{LabelledLevel, SeriesError, SeriesKey, group_series, orbital_letter};
 
 /// Members of the neighbouring series above the last n asked for, for what lifts a level.
-const MORE_N: u32 = 10;
+const MORE_N: u32 = 30;
 
 /// Answers for a species with several electrons; `held` are its measured levels.
 ///
@@ -40,7 +42,9 @@ pub fn outer(
     check_given(question, &key, &entries)?;
     replace_given(question, &key, &mut entries);
     let labelled: Vec<LabelledLevel<'_>> = entries.iter().map(Entry::labelled).collect();
-    let all = predict_series(&labelled, &setting.calc(), question.to_n + MORE_N);
+    let scales: Vec<f64> = entries.iter().map(|entry| entry.scale_per_cm).collect();
+    let most_n = question.to_n + MORE_N;
+    let all = predict_scaled_series(&labelled, &scales, &setting.calc(), most_n);
     let asked = all.iter().find(|series| series.key == key);
     let members = members(question, &key, &entries, asked)?;
     let partners = partners(&key, &entries, &all);
@@ -162,6 +166,7 @@ fn replace_given(question: &Question, key: &SeriesKey, entries: &mut Vec<Entry>)
             core: key.core.clone(),
             energy_per_cm: member.energy_per_cm,
             uncertainty_per_cm: member.uncertainty_per_cm,
+            scale_per_cm: 0.0,
             method: "given".into(),
         }
     }));
