@@ -109,7 +109,7 @@ pub fn one_electron_series(species: Species, l: u32) -> Result<Vec<RydbergSeries
             j,
             sources: vec![Arc::from("computed-one-electron")],
             members,
-            maker: Maker::OneElectron(nucleus.clone()),
+            maker: Maker::OneElectron(nucleus),
         })
     };
     let momenta = (2 * l).checked_sub(1).into_iter().chain([2 * l + 1]);

@@ -214,7 +214,7 @@ fn laser_notes(shown: &[&Transition], question: &Question) -> Vec<String> {
         let seen = |t: &Transition| t.seen.iter().find(|s| s.laser == index).copied();
         let of: Vec<String> = reached()
             .filter_map(|t| Some((t, seen(t)?)))
-            .filter_map(|(t, seen)| Some(seen_words(&name(t), &seen, laser.power_mw)?))
+            .filter_map(|(t, seen)| seen_words(&name(t), &seen, laser.power_mw))
             .take(8)
             .collect();
         if let Some(width) = laser.linewidth_mhz.filter(|_| !of.is_empty()) {
