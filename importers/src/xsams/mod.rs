@@ -1,14 +1,15 @@
 //! The atomic part of XSAMS 1.0: species, states, radiative transitions.
 //!
-//! States may stand behind the transitions that name them, so both are gathered (up to
-//! [`Limits::links`]) before the first row is handed on. Rows are in the catalogue's units.
+//! Rows are handed on while the document is read, in the catalogue's units. Of the states only what
+//! a line needs is kept, by name; a transition that stands before its states waits for the end of
+//! the document. Both are bound by [`Limits::links`].
 
 mod quantity;
 mod state;
 mod transition;
 mod tree;
 
-use std::collections::HashMap;
+use std::collections::{HashMap, HashSet, VecDeque};
 use std::io::Read;
 
 use crate::limits::Limits;
@@ -30,10 +31,13 @@ struct Owner {
 }
 
 /// Reads the levels or the lines of a document.
-pub struct XsamsReader {
+pub struct XsamsReader<R: Read> {
     columns: Vec<ColumnInfo>,
-    rows: std::vec::IntoIter<Result<Ready, RowError>>,
-    warnings: Vec<String>,
+    kind: RecordKind,
+    document: Document<R>,
+    /// Transitions that came before their states.
+    waiting: VecDeque<Transition>,
+    ended: bool,
 }
 
 /// A row in the order of the columns.
@@ -42,44 +46,62 @@ struct Ready {
     cells: Vec<String>,
 }
 
-impl XsamsReader {
-    /// Reads the whole document and links its transitions to its states.
+impl<R: Read> XsamsReader<R> {
+    /// Begins a document; its transitions are linked to its states.
     ///
     /// # Errors
-    /// Another document, one that is not well-formed, or one beyond the limits.
-    pub fn new<R: Read>(input: R, kind: RecordKind, limits: &Limits) -> Result<Self, RowError> {
+    /// Another document.
+    pub fn new(input: R, kind: RecordKind, limits: &Limits) -> Result<Self, RowError> {
         let mut document = Document::new(input, limits);
-        document.read()?;
-        let Document {
-            states,
-            order,
-            transitions,
-            warnings,
-            ..
-        } = document;
-        let (columns, rows) = match kind {
-            RecordKind::Levels => {
-                let rows = order.iter().filter_map(|id| states.get(id));
-                (state::columns(), rows.map(state_row).collect::<Vec<_>>())
-            }
-            RecordKind::Lines => {
-                let rows = transitions.iter().map(|transition| {
-                    let cells = transition.cells(&states);
-                    cells
-                        .map(|cells| Ready {
-                            line: transition.line,
-                            cells,
-                        })
-                        .map_err(|message| fault(transition.line, message))
-                });
-                (transition::columns(), rows.collect())
-            }
+        document.begin()?;
+        let columns = match kind {
+            RecordKind::Levels => state::columns(),
+            RecordKind::Lines => transition::columns(),
         };
         Ok(Self {
             columns,
-            rows: rows.into_iter(),
-            warnings,
+            kind,
+            document,
+            waiting: VecDeque::new(),
+            ended: false,
         })
+    }
+
+    /// The next level or line; `None` at the end.
+    fn next_ready(&mut self) -> Result<Option<Ready>, RowError> {
+        while !self.ended {
+            match self.document.next_part()? {
+                None => self.ended = true,
+                Some(Part::State(id, state)) => {
+                    if self.kind == RecordKind::Levels {
+                        return state_row(&state).map(Some);
+                    }
+                    self.document.states.insert(id, *state);
+                }
+                Some(Part::Transition(_)) if self.kind == RecordKind::Levels => {}
+                Some(Part::Transition(transition)) => {
+                    if transition.is_linked(&self.document.states) {
+                        return self.line_row(&transition).map(Some);
+                    }
+                    self.document.check_links(self.waiting.len())?;
+                    self.waiting.push_back(*transition);
+                }
+            }
+        }
+        match self.waiting.pop_front() {
+            None => Ok(None),
+            Some(transition) => self.line_row(&transition).map(Some),
+        }
+    }
+
+    fn line_row(&self, transition: &Transition) -> Result<Ready, RowError> {
+        match transition.cells(&self.document.states) {
+            Ok(cells) => Ok(Ready {
+                line: transition.line,
+                cells,
+            }),
+            Err(message) => Err(fault(transition.line, message)),
+        }
     }
 }
 
@@ -97,16 +119,15 @@ fn state_row(state: &State) -> Result<Ready, RowError> {
     }
 }
 
-impl RowReader for XsamsReader {
+impl<R: Read> RowReader for XsamsReader<R> {
     fn columns(&self) -> &[ColumnInfo] {
         &self.columns
     }
 
     fn read_row(&mut self, row: &mut Row) -> Result<bool, RowError> {
-        let Some(next) = self.rows.next() else {
+        let Some(ready) = self.next_ready()? else {
             return Ok(false);
         };
-        let ready = next?;
         row.start(ready.line);
         for cell in &ready.cells {
             row.push(cell);
@@ -115,8 +136,14 @@ impl RowReader for XsamsReader {
     }
 
     fn warnings(&self) -> Vec<String> {
-        self.warnings.clone()
+        self.document.warnings.clone()
     }
+}
+
+/// A part of the document that may become a row.
+enum Part {
+    State(String, Box<State>),
+    Transition(Box<Transition>),
 }
 
 /// What has been read so far.
@@ -124,9 +151,10 @@ struct Document<R: Read> {
     xml: Xml<R>,
     limits: Limits,
     owner: Owner,
+    /// Names of all states.
+    names: HashSet<String>,
+    /// States that lines may refer to.
     states: HashMap<String, State>,
-    order: Vec<String>,
-    transitions: Vec<Transition>,
     warnings: Vec<String>,
 }
 
@@ -136,22 +164,27 @@ impl<R: Read> Document<R> {
             xml: Xml::new(input, limits),
             limits: limits.clone(),
             owner: Owner::default(),
+            names: HashSet::new(),
             states: HashMap::new(),
-            order: Vec::new(),
-            transitions: Vec::new(),
             warnings: Vec::new(),
         }
     }
 
-    fn read(&mut self) -> Result<(), RowError> {
+    fn begin(&mut self) -> Result<(), RowError> {
         match self.xml.pull()? {
-            Some(Node::Open(root)) if root.name == "XSAMSData" && root.namespace == NAMESPACE => {}
+            Some(Node::Open(root)) if root.name == "XSAMSData" && root.namespace == NAMESPACE => {
+                Ok(())
+            }
             _ => {
                 let message =
                     "the document is no XSAMS 1.0; older schemas of that name are not read";
-                return Err(self.xml.fail(message));
+                Err(self.xml.fail(message))
             }
         }
+    }
+
+    /// Reads on to the next state or transition; `None` at the end.
+    fn next_part(&mut self) -> Result<Option<Part>, RowError> {
         while let Some(node) = self.xml.pull()? {
             let Node::Open(element) = node else {
                 continue;
@@ -173,8 +206,13 @@ impl<R: Read> Document<R> {
                     self.owner.isotope = tree.text_at(&["MassNumber"]).unwrap_or_default();
                 }
                 "IonCharge" => self.owner.charge = self.xml.content()?.trim().to_owned(),
-                "AtomicState" => self.state(element)?,
-                "RadiativeTransition" => self.transition(element)?,
+                "AtomicState" => return self.state(element).map(Some),
+                "RadiativeTransition" => {
+                    let line = self.xml.line();
+                    let tree = self.tree(element)?;
+                    let transition = Box::new(Transition::new(&tree, line));
+                    return Ok(Some(Part::Transition(transition)));
+                }
                 "Molecules" | "Solids" | "Particles" | "Collisions" | "NonRadiative" => {
                     self.warnings
                         .push(format!("the part `{}` is not read", element.name));
@@ -183,45 +221,36 @@ impl<R: Read> Document<R> {
                 _ => self.xml.skip()?,
             }
         }
-        Ok(())
+        Ok(None)
     }
 
     fn tree(&mut self, element: crate::xml::Element) -> Result<Tree, RowError> {
         Tree::read(&mut self.xml, element, self.limits.cell_bytes)
     }
 
-    fn check_links(&self) -> Result<(), RowError> {
-        if self.states.len() + self.transitions.len() >= self.limits.links {
+    fn check_links(&self, waiting: usize) -> Result<(), RowError> {
+        if self.names.len() + waiting >= self.limits.links {
             return Err(self.xml.fail(format!(
-                "more than the limit of {} states and transitions",
+                "more than the limit of {} states and waiting transitions",
                 self.limits.links
             )));
         }
         Ok(())
     }
 
-    fn state(&mut self, element: crate::xml::Element) -> Result<(), RowError> {
-        self.check_links()?;
+    fn state(&mut self, element: crate::xml::Element) -> Result<Part, RowError> {
+        self.check_links(0)?;
         let line = self.xml.line();
         let tree = self.tree(element)?;
         let Some(id) = tree.attribute("stateID").map(str::to_owned) else {
             return Err(self.xml.fail("an AtomicState has no stateID"));
         };
-        let state = State::new(&tree, &self.owner, line);
-        if self.states.insert(id.clone(), state).is_some() {
+        if !self.names.insert(id.clone()) {
             let id = crate::sink::shown(&id);
             return Err(self.xml.fail(format!("two states are called `{id}`")));
         }
-        self.order.push(id);
-        Ok(())
-    }
-
-    fn transition(&mut self, element: crate::xml::Element) -> Result<(), RowError> {
-        self.check_links()?;
-        let line = self.xml.line();
-        let tree = self.tree(element)?;
-        self.transitions.push(Transition::new(&tree, line));
-        Ok(())
+        let state = Box::new(State::new(&tree, &self.owner, line));
+        Ok(Part::State(id, state))
     }
 }
 

@@ -64,6 +64,13 @@ impl Transition {
         }
     }
 
+    /// Whether nothing that stands further down can change the line: both states are there, or one
+    /// is not named.
+    pub fn is_linked(&self, states: &HashMap<String, State>) -> bool {
+        let known = |id: &Option<String>| id.as_ref().is_none_or(|id| states.contains_key(id));
+        known(&self.lower) && known(&self.upper)
+    }
+
     /// The cells of a line, or why it is none.
     pub fn cells(&self, states: &HashMap<String, State>) -> Result<Vec<String>, String> {
         let find = |reference: &Option<String>| match reference {
