@@ -191,3 +191,34 @@ fn a_plain_table_is_explained_with_a_mapping_to_edit() {
     let (_, said, exit) = run(folder.path(), &["import", path]);
     assert!(exit == 1 && said.contains("--explain"), "{said}");
 }
+
+/// The bad files of `tests/reference/bad_files`: each golden run is one sentence that names the file,
+/// and where a row is at fault its line; nothing of them is loaded.
+#[test]
+fn each_bad_file_has_its_sentence() {
+    let root = Path::new(env!("CARGO_MANIFEST_DIR")).join("tests/golden/bad_files");
+    let mut count = 0;
+    for entry in std::fs::read_dir(root).unwrap() {
+        let path = entry.unwrap().path();
+        let text = std::fs::read_to_string(&path).unwrap();
+        let name = path.file_stem().unwrap().to_str().unwrap().to_owned();
+        let (head, rest) = text.split_once("--- standard error\n").unwrap();
+        let (said, exit) = rest.split_once("--- exit ").unwrap();
+        assert!(
+            head.ends_with("--- standard output\n"),
+            "{name} prints an answer"
+        );
+        assert_eq!(said.lines().count(), 1, "{name}: {said}");
+        assert_eq!(exit.trim(), "1", "{name}");
+        assert!(
+            said.contains(&name) || said.contains("harrow-bay"),
+            "{name}: {said}"
+        );
+        assert!(
+            !said.contains('\u{1b}') && !said.contains('\u{202e}'),
+            "{name}"
+        );
+        count += 1;
+    }
+    assert!(count >= 40, "{count} bad files");
+}

@@ -11,7 +11,9 @@ use importers::detect::detect;
 use importers::ecsv::EcsvReader;
 use importers::explain::explain;
 use importers::fits::FitsReader;
+use importers::jsonl::JsonlReader;
 use importers::mrt::MrtReader;
+use importers::parquet::ParquetReader;
 use importers::row::{Row, RowError, RowReader};
 use importers::source::{Format, RecordKind};
 use importers::votable::VotableReader;
@@ -35,6 +37,8 @@ fn open(format: Format, bytes: &[u8]) -> Result<Box<dyn RowReader>, RowError> {
         Format::Votable => Box::new(VotableReader::new(input, None, &limits)?),
         Format::Fits => Box::new(FitsReader::new(input, None, &limits)?),
         Format::Xsams => Box::new(XsamsReader::new(input, RecordKind::Lines, &limits)?),
+        Format::Jsonl => Box::new(JsonlReader::new(input, &limits)?),
+        Format::Parquet => Box::new(ParquetReader::new(input, &limits)?),
         _ => Box::new(MrtReader::new(input, &limits)?),
     })
 }
@@ -307,7 +311,10 @@ proptest! {
     /// Whatever the bytes are, every reader ends with rows or a sentence.
     #[test]
     fn arbitrary_bytes_never_panic(bytes in prop::collection::vec(any::<u8>(), 0..600)) {
-        for format in [Format::Ecsv, Format::Votable, Format::Fits, Format::Xsams, Format::Mrt] {
+        for format in [
+            Format::Ecsv, Format::Votable, Format::Fits, Format::Xsams, Format::Mrt, Format::Jsonl,
+            Format::Parquet,
+        ] {
             let _ = drain(format, &bytes);
         }
         let _ = detect(&bytes);
@@ -333,6 +340,28 @@ proptest! {
             let mut bytes = bytes;
             let length = bytes.len();
             bytes[at % length] = byte;
+            let _ = drain(format, &bytes);
+            bytes.truncate(cut % length);
+            let _ = drain(format, &bytes);
+        }
+    }
+
+    /// The same for files of formats that others' libraries read for us, damaged anywhere.
+    #[test]
+    fn damaged_exports_never_panic(
+        damages in prop::collection::vec((0usize..1_000_000, any::<u8>()), 1..4),
+        cut in 0usize..1_000_000,
+    ) {
+        for (format, whole) in [
+            (Format::Parquet, &include_bytes!("../importers/fuzz/corpus/parquet/harrow_bay.parquet")[..]),
+            (Format::Jsonl, include_bytes!("../importers/fuzz/corpus/jsonl/harrow_bay.jsonl")),
+            (Format::Ecsv, include_bytes!("../importers/fuzz/corpus/handover/harrow_bay.csv")),
+        ] {
+            let mut bytes = whole.to_vec();
+            let length = bytes.len();
+            for (at, byte) in &damages {
+                bytes[at % length] = *byte;
+            }
             let _ = drain(format, &bytes);
             bytes.truncate(cut % length);
             let _ = drain(format, &bytes);

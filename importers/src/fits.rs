@@ -44,11 +44,11 @@ impl<R: Read> FitsReader<R> {
     /// # Errors
     /// No such table, a broken header, sizes that contradict each other.
     pub fn new(mut input: R, wanted: Option<&str>, limits: &Limits) -> Result<Self, RowError> {
-        let fail = |message: String| RowError::fatal(0, RowProblem::Format(message));
+        let fail = |message: String| RowError::fatal(1, RowProblem::Format(message));
         let mut number = 0usize;
         loop {
             let header = read_header(&mut input, limits)
-                .map_err(|problem| RowError::fatal(0, problem))?
+                .map_err(|problem| RowError::fatal(1, problem))?
                 .ok_or_else(|| fail("the file holds no such binary table".to_owned()))?;
             let table = header.text("XTENSION").as_deref() == Some("BINTABLE");
             number += usize::from(table);
@@ -58,7 +58,7 @@ impl<R: Read> FitsReader<R> {
             if table && chosen {
                 return Self::with_header(input, &header, limits).map_err(fail);
             }
-            skip_data(&mut input, &header).map_err(|problem| RowError::fatal(0, problem))?;
+            skip_data(&mut input, &header).map_err(|problem| RowError::fatal(1, problem))?;
         }
     }
 

@@ -49,7 +49,9 @@ impl<R: Read> JsonlReader<R> {
         }
         if let Some(members) = members {
             let members = reader.cells(members).map_err(fatal)?;
-            let names = members.iter().map(|(name, _)| ColumnInfo::named(name));
+            let names = members
+                .iter()
+                .map(|(name, _)| ColumnInfo::with_unit_in_name(name));
             reader.columns = names.collect();
             let line = reader.lines.line();
             check_columns(reader.columns.len(), limits)

@@ -271,7 +271,10 @@ impl<R: Read> Header<'_, R> {
 
     fn columns(&mut self) -> Result<Vec<MrtColumn>, RowError> {
         let mut columns: Vec<MrtColumn> = Vec::new();
-        while let Some(text) = self.next()? {
+        loop {
+            let Some(text) = self.next()? else {
+                return Err(self.fail("the byte-by-byte description breaks off"));
+            };
             if is_rule(text.as_bytes()) {
                 break;
             }

@@ -1,17 +1,21 @@
 //! Parquet files with flat columns: numbers, words, truths, each perhaps missing.
 //!
 //! The footer stands at the end, so that the file is first laid down aside (in memory while it is
-//! small, else in a temporary file without a name); rows are then read in batches.
+//! small, else in a temporary file without a name); rows are then read in batches. The library that
+//! decodes them panics on some damaged files, which is caught: the program must unwind.
 
+use std::cell::Cell;
 use std::fs::File;
 use std::io::{Read, Seek, SeekFrom, Write};
-use std::sync::Arc;
+use std::panic::{AssertUnwindSafe, catch_unwind};
+use std::sync::{Arc, Once};
 
 use bytes::Bytes;
 use parquet::basic::{ConvertedType, LogicalType, Type as Physical};
 use parquet::column::reader::{ColumnReader, ColumnReaderImpl};
 use parquet::data_type::DataType;
 use parquet::errors::ParquetError;
+use parquet::file::metadata::ParquetMetaData;
 use parquet::file::reader::{FileReader, SerializedFileReader};
 use parquet::schema::types::ColumnDescriptor;
 
@@ -47,8 +51,9 @@ impl ParquetReader {
     /// # Errors
     /// A file that is no Parquet, or with columns that are no cells of a table.
     pub fn new<R: Read>(input: R, limits: &Limits) -> Result<Self, RowError> {
-        let file = lay_down(input).map_err(fatal)?;
+        let (file, length) = lay_down(input).map_err(fatal)?;
         let metadata = file.metadata();
+        check_places(metadata, length).map_err(|message| fatal(RowProblem::Format(message)))?;
         let descriptors = metadata.file_metadata().schema_descr().columns();
         check_columns(descriptors.len(), limits).map_err(fatal)?;
         for descriptor in descriptors {
@@ -56,7 +61,7 @@ impl ParquetReader {
         }
         let columns = descriptors
             .iter()
-            .map(|descriptor| ColumnInfo::named(descriptor.path().parts().join("_")))
+            .map(|descriptor| ColumnInfo::with_unit_in_name(descriptor.path().parts().join("_")))
             .collect();
         let about = metadata
             .file_metadata()
@@ -116,12 +121,13 @@ impl ParquetReader {
         if self.group >= self.file.num_row_groups() || self.columns.is_empty() {
             return Ok(false);
         }
-        let opened = self.file.get_row_group(self.group).and_then(|group| {
+        let opened = guarded(|| {
+            let group = self.file.get_row_group(self.group)?;
             (0..self.columns.len())
                 .map(|index| group.get_column_reader(index))
                 .collect::<Result<Vec<_>, _>>()
         });
-        self.readers = opened.map_err(|error| self.fail(broken(&error)))?;
+        self.readers = opened.map_err(|problem| self.fail(problem))?;
         self.group += 1;
         Ok(true)
     }
@@ -157,27 +163,89 @@ fn fatal(problem: RowProblem) -> RowError {
     RowError::fatal(1, problem)
 }
 
+thread_local! {
+    /// The library is at work on this thread: what it panics about is told as an error.
+    static GUARDED: Cell<bool> = const { Cell::new(false) };
+}
+
+/// Runs the library, which panics on some damaged files, and makes an error of that. Nothing that it
+/// was given is used afterwards: every such error is the end of the file.
+fn guarded<T>(work: impl FnOnce() -> Result<T, ParquetError>) -> Result<T, RowProblem> {
+    static QUIET: Once = Once::new();
+    QUIET.call_once(|| {
+        let told = std::panic::take_hook();
+        std::panic::set_hook(Box::new(move |info| {
+            if !GUARDED.get() {
+                told(info);
+            }
+        }));
+    });
+    GUARDED.set(true);
+    let done = catch_unwind(AssertUnwindSafe(work));
+    GUARDED.set(false);
+    match done {
+        Ok(result) => result.map_err(|error| broken(&error)),
+        Err(_) => {
+            let message = "the file is no sound Parquet: its pages contradict its footer";
+            Err(RowProblem::Format(message.to_owned()))
+        }
+    }
+}
+
 fn broken(error: &ParquetError) -> RowProblem {
     RowProblem::Format(format!("the file is no sound Parquet: {error}"))
 }
 
 /// The file where it can be read from any place.
-fn lay_down<R: Read>(mut input: R) -> Result<Arc<dyn FileReader>, RowProblem> {
+fn lay_down<R: Read>(mut input: R) -> Result<(Arc<dyn FileReader>, u64), RowProblem> {
     let mut head = Vec::new();
     input
         .by_ref()
         .take(IN_MEMORY as u64 + 1)
         .read_to_end(&mut head)?;
+    let mut length = head.len() as u64;
     if head.len() <= IN_MEMORY {
-        let reader = SerializedFileReader::new(Bytes::from(head)).map_err(|e| broken(&e))?;
-        return Ok(Arc::new(reader));
+        let reader = guarded(|| SerializedFileReader::new(Bytes::from(head)))?;
+        return Ok((Arc::new(reader), length));
     }
     let mut aside: File = tempfile::tempfile()?;
     aside.write_all(&head)?;
-    std::io::copy(&mut input, &mut aside)?;
+    length += std::io::copy(&mut input, &mut aside)?;
     aside.seek(SeekFrom::Start(0))?;
-    let reader = SerializedFileReader::new(aside).map_err(|e| broken(&e))?;
-    Ok(Arc::new(reader))
+    let reader = guarded(|| SerializedFileReader::new(aside))?;
+    Ok((Arc::new(reader), length))
+}
+
+/// The footer says where each column stands: inside the file, or nothing of it is read.
+fn check_places(metadata: &ParquetMetaData, length: u64) -> Result<(), String> {
+    let columns = metadata.file_metadata().schema_descr().num_columns();
+    for group in metadata.row_groups() {
+        if group.num_columns() != columns || group.num_rows() < 0 {
+            return Err("the file is no sound Parquet: a row group is not of its table".into());
+        }
+        for column in group.columns() {
+            let first = column.data_page_offset();
+            let from = column
+                .dictionary_page_offset()
+                .map_or(first, |at| at.min(first));
+            let size = column.compressed_size();
+            let end = u64::try_from(from)
+                .ok()
+                .zip(u64::try_from(size).ok())
+                .and_then(|(from, size)| from.checked_add(size));
+            let sound = end.is_some_and(|end| end <= length)
+                && column.num_values() >= 0
+                && column.uncompressed_size() >= 0
+                && column.dictionary_page_offset().is_none_or(|at| at >= 0);
+            if !sound {
+                let name = crate::sink::shown(&column.column_path().string());
+                return Err(format!(
+                    "the file is no sound Parquet: column `{name}` does not stand inside it"
+                ));
+            }
+        }
+    }
+    Ok(())
 }
 
 /// Lists, and types that are neither number, word nor truth, are no cells.
@@ -235,9 +303,8 @@ fn typed<T: DataType>(
     let (mut levels, mut values) = (Vec::new(), Vec::new());
     let mut records = 0;
     while records < BATCH {
-        let (read, _, _) = reader
-            .read_records(BATCH - records, Some(&mut levels), None, &mut values)
-            .map_err(|error| broken(&error))?;
+        let (read, _, _) =
+            guarded(|| reader.read_records(BATCH - records, Some(&mut levels), None, &mut values))?;
         if read == 0 {
             break;
         }

@@ -21,6 +21,18 @@ pub struct ColumnInfo {
 }
 
 impl ColumnInfo {
+    /// A column of a format without units, whose name may end in one (`wavelength_nm`).
+    pub fn with_unit_in_name(name: impl Into<String>) -> Self {
+        let name = name.into();
+        let ends = [("_nm", "nm"), ("_per_cm", "cm-1"), ("_per_s", "s-1")];
+        let found = ends.iter().find(|(end, _)| name.ends_with(end));
+        Self {
+            unit: found.map(|(_, unit)| (*unit).to_owned()),
+            dialect: Dialect::Mapping,
+            ..Self::named(name)
+        }
+    }
+
     /// A column of which only the name is known.
     pub fn named(name: impl Into<String>) -> Self {
         Self {

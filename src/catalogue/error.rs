@@ -142,6 +142,14 @@ pub enum CatalogueError {
         /// What was stated.
         stated: String,
     },
+    /// A file that is no table at all.
+    #[error("{}: {what}", path.display())]
+    NoTable {
+        /// The file.
+        path: PathBuf,
+        /// What it is, and what to do.
+        what: String,
+    },
     /// A file that does not say what its columns mean.
     #[error(
         "{}: this file does not describe itself; `lineclear import --explain {}` offers a \

@@ -19,6 +19,7 @@ pub struct SourceFiles {
     description: SourceDescription,
     folder: PathBuf,
     checksum: String,
+    limits: Limits,
 }
 
 impl SourceFiles {
@@ -59,6 +60,7 @@ impl SourceFiles {
             description,
             folder,
             checksum,
+            limits: Limits::default(),
         })
     }
 
@@ -68,10 +70,16 @@ impl SourceFiles {
     /// # Errors
     /// A file that cannot be read or does not describe itself; a key that cannot be used.
     pub fn self_describing(path: &Path, stated: &Stated) -> Result<Self> {
-        let found = explain(path)?.detected;
-        let format = match (stated.format, found) {
+        let explanation = explain(path)?;
+        let format = match (stated.format, explanation.detected) {
             (Some(format), _) | (None, Detected::Table(format)) => format,
-            _ => Format::Delimited,
+            (None, Detected::Text) => Format::Delimited,
+            (None, _) => {
+                return Err(CatalogueError::NoTable {
+                    path: path.to_owned(),
+                    what: explanation.notes.join("; "),
+                });
+            }
         };
         let Some(word) = self_describing_word(format) else {
             return Err(CatalogueError::NeedsDescription {
@@ -103,6 +111,7 @@ impl SourceFiles {
             checksum: source_checksum(&text, &[hash]),
             folder: path.parent().map(Path::to_owned).unwrap_or_default(),
             description,
+            limits: Limits::default(),
         })
     }
 
@@ -120,6 +129,12 @@ impl SourceFiles {
             });
         }
         Ok(self)
+    }
+
+    /// Other limits on what the files may ask for.
+    pub fn with_limits(mut self, limits: Limits) -> Self {
+        self.limits = limits;
+        self
     }
 
     /// Key of the source.
@@ -145,7 +160,7 @@ impl SourceFiles {
         };
         let options = ReadOptions {
             skip_bad,
-            ..ReadOptions::default()
+            limits: self.limits.clone(),
         };
         let mut open = |name: &str| -> io::Result<Box<dyn Read>> {
             Ok(Box::new(BufReader::with_capacity(

@@ -13,12 +13,14 @@ mod reports;
 mod resonance;
 mod sources;
 mod store;
+mod writer;
 
 pub use error::{CatalogueError, Result};
 pub use files::{SourceFiles, Stated, explain};
 pub use handover::{HandedOver, Receiver, Selection};
-pub use ingest::{ImportSummary, Incoming, ReportWriter};
+pub use ingest::{ImportSummary, Incoming};
 pub use query::Levels;
 pub use resonance::{BranchingRow, HyperfineRow, LifetimeRow, NamedLevel, ResonanceTables};
 pub use sources::SourceRow;
 pub use store::{Catalogue, Opened};
+pub use writer::ReportWriter;

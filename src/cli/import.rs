@@ -3,6 +3,7 @@
 use std::path::PathBuf;
 
 use clap::Args;
+use importers::Limits;
 use importers::source::Format;
 
 use super::options::{CatalogueOptions, OutputOptions};
@@ -54,6 +55,9 @@ pub struct Arguments {
     /// Format of a file that describes itself, where its content does not tell
     #[arg(long = "format", value_enum, value_name = "FORMAT")]
     table_format: Option<TableFormat>,
+    /// Another limit on what a file may ask for, such as cell-bytes=4MiB; may be repeated
+    #[arg(long, value_name = "NAME=NUMBER")]
+    limit: Vec<String>,
     #[command(flatten)]
     output: OutputOptions,
 }
@@ -76,6 +80,15 @@ enum TableFormat {
 }
 
 impl Arguments {
+    fn limits(&self) -> Result<Limits, CliError> {
+        let mut limits = Limits::default();
+        for text in &self.limit {
+            let set = limits.set(text);
+            set.map_err(|problem| CliError::Usage(format!("--limit: {problem}")))?;
+        }
+        Ok(limits)
+    }
+
     /// A file that the program wrote says itself what it is.
     fn refuse_statements(&self) -> Result<(), CliError> {
         let stated = self.licence.is_some()
@@ -100,6 +113,7 @@ impl Arguments {
                 .is_some_and(|e| e.eq_ignore_ascii_case("toml"));
         if described {
             let files = SourceFiles::find(&self.source)?;
+            let files = files.with_limits(self.limits()?);
             return Ok(files.with_licence(self.licence.as_deref())?);
         }
         let stated = Stated {
@@ -118,7 +132,7 @@ impl Arguments {
             }),
         };
         let files = SourceFiles::self_describing(&self.source, &stated)?;
-        Ok(files.with_licence(None)?)
+        Ok(files.with_limits(self.limits()?).with_licence(None)?)
     }
 }
 
@@ -133,7 +147,7 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
             exit: Exit::Answered,
         });
     }
-    if let Some(files) = HandedOver::find(&arguments.source)? {
+    if let Some(files) = HandedOver::find(&arguments.source, &arguments.limits()?)? {
         arguments.refuse_statements()?;
         let mut catalogue = context.open()?;
         catalogue.stop_when(interrupt::wish()?);

@@ -16,10 +16,9 @@ use vocabulary::atom::HalfInteger;
 
 use crate::catalogue::derive::{self, Labels};
 use crate::catalogue::error::{CatalogueError, Result, Stop};
-use crate::catalogue::ingest::{
-    self, ImportSummary, Incoming, Inserts, NewLevel, NewLine, kind_number, rate_origin_number,
-};
+use crate::catalogue::ingest::{self, ImportSummary, Incoming, kind_number, rate_origin_number};
 use crate::catalogue::store::{Catalogue, LOCKED, failed, go_on};
+use crate::catalogue::writer::{Inserts, NewLevel, NewLine};
 use crate::catalogue::{bundled, gap_fill};
 
 /// A file, or a folder of files by element, that the program wrote.
@@ -27,6 +26,7 @@ use crate::catalogue::{bundled, gap_fill};
 pub struct HandedOver {
     parts: Vec<(PathBuf, Format)>,
     header: Header,
+    limits: Limits,
 }
 
 impl HandedOver {
@@ -34,7 +34,7 @@ impl HandedOver {
     ///
     /// # Errors
     /// One that was, but of another form, or with parts that do not belong together.
-    pub fn find(path: &Path) -> Result<Option<Self>> {
+    pub fn find(path: &Path, limits: &Limits) -> Result<Option<Self>> {
         let files = if path.is_dir() {
             parts(path)
         } else {
@@ -42,7 +42,7 @@ impl HandedOver {
         };
         let mut found: Option<Self> = None;
         for file in files {
-            let Some((format, about)) = about(&file) else {
+            let Some((format, about)) = about(&file, limits) else {
                 return Ok(None);
             };
             let bad = |message: String| CatalogueError::HandedOver {
@@ -55,6 +55,7 @@ impl HandedOver {
                     found = Some(Self {
                         parts: vec![(file, format)],
                         header,
+                        limits: limits.clone(),
                     });
                 }
                 Some(whole) if whole.header == header => whole.parts.push((file, format)),
@@ -104,9 +105,9 @@ fn parts(folder: &Path) -> Vec<PathBuf> {
 }
 
 /// Format and header of a file that carries one.
-fn about(path: &Path) -> Option<(Format, String)> {
+fn about(path: &Path, limits: &Limits) -> Option<(Format, String)> {
     let mut head = Vec::new();
-    open(path)
+    open(path, limits)
         .ok()?
         .take(HEAD_BYTES as u64)
         .read_to_end(&mut head)
@@ -123,12 +124,12 @@ fn about(path: &Path) -> Option<(Format, String)> {
     if !carries.contains(&format) {
         return None;
     }
-    let rows = importers::open_file("", format, open(path).ok()?, &Limits::default()).ok()?;
+    let rows = importers::open_file("", format, open(path, limits).ok()?, limits).ok()?;
     rows.about().map(|about| (format, about.to_owned()))
 }
 
-fn open(path: &Path) -> std::io::Result<Box<dyn Read>> {
-    importers::unpack::unpack(Box::new(File::open(path)?), &Limits::default())
+fn open(path: &Path, limits: &Limits) -> std::io::Result<Box<dyn Read>> {
+    importers::unpack::unpack(Box::new(File::open(path)?), limits)
 }
 
 impl Catalogue {
@@ -212,7 +213,7 @@ fn store_rows(
     };
     let mut read = 0;
     for (file, format) in &files.parts {
-        read += taker.read(file, *format, &files.header, path)?;
+        read += taker.read((file, *format), files, path)?;
     }
     Ok(Stored {
         read,
@@ -334,15 +335,22 @@ struct Taker<'c, 'l> {
 }
 
 impl Taker<'_, '_> {
-    fn read(&mut self, file: &Path, format: Format, header: &Header, path: &Path) -> Result<u64> {
+    fn read(
+        &mut self,
+        (file, format): (&Path, Format),
+        files: &HandedOver,
+        path: &Path,
+    ) -> Result<u64> {
         let name = file.display().to_string();
-        let input = open(file).map_err(|error| ImportError::Open {
+        let input = open(file, &files.limits).map_err(|error| ImportError::Open {
             file: name.clone(),
             error,
         })?;
-        let mut rows = importers::open_file(&name, format, input, &Limits::default())?;
-        handover::read(rows.as_mut(), &name, header, &mut |row| self.accept(row))
-            .map_err(|error| ingest::unwrap_sink(error, path))
+        let mut rows = importers::open_file(&name, format, input, &files.limits)?;
+        handover::read(rows.as_mut(), &name, &files.header, &mut |row| {
+            self.accept(row)
+        })
+        .map_err(|error| ingest::unwrap_sink(error, path))
     }
 
     fn accept(&mut self, row: ReportRow) -> std::result::Result<(), Rejected> {
