@@ -577,7 +577,7 @@ mod written {
                         LineKind::Line => "line",
                         LineKind::Mean => "mean",
                         LineKind::Blend => "blend",
-                        LineKind::Isotope => "isotope",
+                        LineKind::Isotope | LineKind::Ritz => "isotope",
                     }),
                     Cell::Truth(l.computed),
                 ]);

@@ -331,7 +331,11 @@ pub const LINES: &[Column] = &[
         "meta.bib",
         "key of the source of the position",
     ),
-    KIND,
+    text(
+        "kind",
+        "",
+        "line, mean, blend, isotope, or ritz: listed by no table, it follows from levels",
+    ),
     LOWER[0],
     LOWER[1],
     LOWER[2],
