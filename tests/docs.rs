@@ -57,3 +57,28 @@ fn the_two_commands_of_the_readme_are_there() {
         assert!(text.contains(command), "{command}");
     }
 }
+
+#[test]
+fn the_mix_of_the_readme_can_be_read() {
+    let text = fs::read_to_string(Path::new(env!("CARGO_MANIFEST_DIR")).join("README.md")).unwrap();
+    let block = text.split("```toml").nth(1).unwrap();
+    let block: String = block.split("```").next().unwrap().to_owned();
+    let folder = tempfile::tempdir().unwrap();
+    let file = folder.path().join("mix.toml");
+    fs::write(&file, block).unwrap();
+    let command = format!(
+        "lineclear passband --centre 501.6nm --fwhm 1nm --target \"He I 501.57nm\" --among He,C \
+         --mix {}",
+        file.display()
+    );
+    let answer = common::json(&command);
+    assert_eq!(answer["conditions"]["model"], "coronal");
+    assert_eq!(answer["conditions"]["electron_density_per_m3"], 1e18);
+    assert_eq!(answer["conditions"]["gas_temperature_k"], 800.0);
+    for list in ["amounts", "ion_fractions", "metastable", "gas"] {
+        assert!(
+            !answer["conditions"][list].as_array().unwrap().is_empty(),
+            "{list}"
+        );
+    }
+}

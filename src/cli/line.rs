@@ -29,6 +29,15 @@ fn parts(text: &str) -> Result<(Option<SpeciesRequest>, SpectralQuantity), CliEr
             return Ok((Some(species), position));
         }
     }
+    // A position behind something that is no species: what is wrong is the species.
+    if let [species @ .., last] = words.as_slice()
+        && !species.is_empty()
+        && last.parse::<SpectralQuantity>().is_ok()
+        && species.concat().parse::<SpectralQuantity>().is_err()
+        && species.concat().parse::<f64>().is_err()
+    {
+        species.join(" ").parse::<SpeciesRequest>()?;
+    }
     if text.parse::<SpeciesRequest>().is_ok() {
         let typed = text.trim();
         return Err(CliError::Usage(format!(
@@ -77,7 +86,7 @@ mod tests {
 
     #[test]
     fn a_line_without_position_is_refused() {
-        for text in ["He I", "", "He I@", "@587nm"] {
+        for text in ["He I", "", "He I@", "@587nm", "Xx I 587nm"] {
             assert!(wanted(text, Medium::Auto).is_err(), "{text}");
         }
     }

@@ -7,7 +7,7 @@ use crate::calc::shape::{Instrument, ResponseCurve};
 /// How the light of different species compares.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum EmissionModel {
-    /// Each species of the mix is seen: its strongest rated line between 200 and 1000 nm (else
+    /// Each species of the mix is seen (forbidden lines aside where others are rated): its strongest rated line between 200 and 1000 nm (else
     /// anywhere) has the strength of its amount; its strongest below 200 nm, where the light that
     /// is looked at lies there.
     Visible,

@@ -27,6 +27,8 @@ use crate::calc::plasma::{Partition, Plasma, UNKNOWN_STRENGTH_SIGMA_DEX};
 
 /// Band in which a visible source is scaled, vacuum nm.
 const VISIBLE_NM: std::ops::RangeInclusive<f64> = 200.0..=1000.0;
+/// Rates below this are those of lines that no electric dipole allows, or nearly so, s⁻¹.
+const FORBIDDEN_BELOW_PER_S: f64 = 1e3;
 /// Relative 1 σ of a rate for which none is stated.
 pub const UNSTATED_RATE_SIGMA: f64 = 0.5;
 
@@ -136,11 +138,24 @@ impl Emitter {
 
     /// Light of the strongest rated line in a band (vacuum nm); zero where none is rated.
     pub fn strongest(&self, spectrum: &Spectrum, from_nm: f64, to_nm: f64) -> f64 {
-        let inside = |s: &&Strength| (from_nm..=to_nm).contains(&(1e7 / s.wavenumber_per_cm));
+        self.strongest_from_rate(spectrum, 0.0, (from_nm, to_nm))
+    }
+
+    /// As [`Emitter::strongest`], of the lines whose rate is at least this (s⁻¹).
+    fn strongest_from_rate(
+        &self,
+        spectrum: &Spectrum,
+        least_rate_per_s: f64,
+        (from_nm, to_nm): (f64, f64),
+    ) -> f64 {
+        let counts = |s: &&Strength| {
+            (from_nm..=to_nm).contains(&(1e7 / s.wavenumber_per_cm))
+                && s.rate_per_s.is_some_and(|rate| rate >= least_rate_per_s)
+        };
         spectrum
             .strengths
             .iter()
-            .filter(inside)
+            .filter(counts)
             .filter_map(|s| self.of_strength(spectrum, s))
             .fold(0.0, f64::max)
     }
@@ -308,16 +323,21 @@ fn scale(
     Ok(())
 }
 
+/// A forbidden line makes no species visible: it scales one only where no other line is rated.
 fn visible_factor(spectrum: &Spectrum, emitter: &Emitter, far_ultraviolet: bool) -> f64 {
-    let (from_nm, to_nm) = if far_ultraviolet {
+    let everywhere = (0.0, f64::INFINITY);
+    let band = if far_ultraviolet {
         (0.0, *VISIBLE_NM.start())
     } else {
         VISIBLE_NM.into_inner()
     };
-    let seen = match emitter.strongest(spectrum, from_nm, to_nm) {
-        s if s > 0.0 => s,
-        _ => emitter.strongest(spectrum, 0.0, f64::INFINITY),
-    };
+    let least_rates = [FORBIDDEN_BELOW_PER_S, 0.0];
+    let seen = least_rates
+        .into_iter()
+        .flat_map(|rate| [(rate, band), (rate, everywhere)])
+        .map(|(rate, band)| emitter.strongest_from_rate(spectrum, rate, band))
+        .find(|light| *light > 0.0)
+        .unwrap_or(0.0);
     if seen > 0.0 {
         spectrum.amount / seen
     } else {
