@@ -120,3 +120,38 @@ fn none_of_a_species_is_as_if_it_were_absent() {
     let (central, chance, said) = verdict(500.8, rateless(501.7, false, "1Po"), 0.0);
     assert_eq!((central, chance), (Verdict::Clear, None), "{said}");
 }
+
+#[test]
+fn a_forbidden_line_makes_no_species_visible() {
+    // The only line of the ion between 200 and 1000 nm is forbidden (0.3 s⁻¹); its resonance line
+    // at 88 nm, 1e9 s⁻¹, sets the scale, beside which the forbidden line is as good as dark.
+    let ion = spectrum(
+        Species::new(22, 3),
+        &[
+            (0.0, 5.0, "3p4", "3P"),
+            (14_000.0, 5.0, "3p4", "1D"),
+            (113_000.0, 3.0, "3p3 4s", "3So"),
+        ],
+        &[(0, 1, Some(0.3)), (0, 2, Some(1e9))],
+    );
+    let ion = Spectrum {
+        limit_per_cm: Some(220_000.0),
+        ..ion
+    };
+    let kt = 8065.5;
+    let question = flat(conditions(EmissionModel::Visible, kt));
+    let answer = ask(&question, &[one_line(21, 500.0, 1e7), ion]).unwrap();
+    let light = |nm: f64| {
+        let line = answer
+            .lines
+            .iter()
+            .find(|l| (l.placed.vacuum_nm - nm).abs() < 1e-6);
+        line.unwrap().light_fraction.unwrap()
+    };
+    assert!((light(500.0) / light(1e7 / 113_000.0) - 1.0).abs() < 1e-9);
+    // Boltzmann and A σ: 5/3 e^(99 000/8065.5) (0.3/1e9) (14/113) = 1.3e-5; the Planck–Larkin
+    // factors 13 and 25 kT below the limit are 1 to 3e-5.
+    let expected = 5.0 / 3.0 * (99_000.0 / kt).exp() * 0.3e-9 * 14.0 / 113.0;
+    let ratio = light(1e7 / 14_000.0) / light(500.0);
+    assert!((ratio / expected - 1.0).abs() < 1e-4, "{ratio} {expected}");
+}
