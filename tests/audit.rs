@@ -8,7 +8,7 @@ use std::path::Path;
 use std::sync::Arc;
 
 use common::{json, run};
-use lineclear::advise::audit::{Finding, KnownFindings, Rule, audit};
+use lineclear::advise::audit::{Finding, KnownFindings, Lifetime, Rule, audit};
 use lineclear::catalogue::{Catalogue, Incoming};
 use lineclear::importers::record::{LevelEnd, LevelRecord, LineRecord, Place, Record};
 use lineclear::importers::source::SourceDescription;
@@ -60,7 +60,7 @@ fn every_known_finding_of_an_audit_rule_is_still_found() {
     let text = std::fs::read_to_string(path).unwrap();
     let catalogue = Catalogue::bundled_in_memory(&mut |_, _| ()).unwrap();
     let species = catalogue.species().unwrap();
-    let findings = audit(&catalogue.reports(&species).unwrap()).findings;
+    let findings = audit(&catalogue.reports(&species).unwrap(), &[]).findings;
     let mut checked = 0;
     for entry in text.split("[[finding]]").skip(1) {
         let rule = Rule::ALL
@@ -178,6 +178,7 @@ fn an_imported_table_with_air_declared_as_vacuum_is_not_clean() {
 /// An invented source about an invented spectrum of Na I, one row after the other.
 struct Table {
     records: Vec<Record>,
+    lifetimes: Vec<Lifetime>,
 }
 
 const NA_I: Species = Species::new(11, 1);
@@ -193,6 +194,7 @@ impl Table {
     fn new() -> Self {
         Self {
             records: Vec::new(),
+            lifetimes: Vec::new(),
         }
     }
 
@@ -248,14 +250,43 @@ impl Table {
         self
     }
 
+    /// An invented lifetime of a level.
+    fn lifetime(mut self, (_, configuration, term, j): Of, lifetime_ns: f64) -> Self {
+        self.lifetimes.push(Lifetime {
+            species: NA_I,
+            configuration: configuration.into(),
+            term: term.into(),
+            j: HalfInteger::parse(&j.to_string()).unwrap(),
+            lifetime_ns,
+            uncertainty_ns: 0.01 * lifetime_ns,
+            paper: "invented".into(),
+        });
+        self
+    }
+
     fn found(&self) -> Vec<Finding> {
+        self.found_beside(&[])
+    }
+
+    /// What is found with other tables in the catalogue.
+    fn found_beside(&self, others: &[&Table]) -> Vec<Finding> {
         let mut catalogue = Catalogue::empty_in_memory().unwrap();
-        let text = "key = \"invented\"\ntitle = \"t\"\ncitation = \"invented\"\n\
-                    licence = \"CC0-1.0\"\nkind = \"paper\"\n";
-        let description = SourceDescription::parse(text, "invented").unwrap();
+        self.import(&mut catalogue, "invented");
+        for (number, other) in others.iter().enumerate() {
+            other.import(&mut catalogue, &format!("invented-{number}"));
+        }
+        audit(&catalogue.reports(&[NA_I]).unwrap(), &self.lifetimes).findings
+    }
+
+    fn import(&self, catalogue: &mut Catalogue, key: &str) {
+        let text = format!(
+            "key = \"{key}\"\ntitle = \"t\"\ncitation = \"invented\"\n\
+             licence = \"CC0-1.0\"\nkind = \"paper\"\n"
+        );
+        let description = SourceDescription::parse(&text, "invented").unwrap();
         let incoming = Incoming {
             description: &description,
-            checksum: "0",
+            checksum: key,
             bundled: false,
         };
         let feed = |sink: &mut dyn Sink| {
@@ -271,7 +302,6 @@ impl Table {
             })
         };
         catalogue.import(&incoming, feed, false).unwrap();
-        audit(&catalogue.reports(&[NA_I]).unwrap()).findings
     }
 
     /// The only finding.
@@ -365,6 +395,58 @@ fn more_strength_than_electrons_is_named() {
     assert_eq!(found.rule, Rule::StrengthSum);
     let expected = 1.4992 * 2.0 * 3e9 / 17_000.0_f64.powi(2) / 11.0;
     assert!((found.size / expected - 1.0).abs() < 1e-3, "{found:?}");
+}
+
+/// One table has the better value of a level, another the line from it to a level of its own.
+#[test]
+fn a_line_between_two_scales_is_named() {
+    let better = Table::new()
+        .level(GROUND)
+        .level(ODD)
+        .line(GROUND, ODD, 0.0, None);
+    let beside = |off_per_cm: f64| {
+        let odd: Of = (ODD.0 + off_per_cm, ODD.1, ODD.2, ODD.3);
+        let mut table = Table::new().level(GROUND).level(odd).level(EVEN);
+        if let Some(Record::Level(level)) = table.records.get_mut(1) {
+            level.energy_uncertainty_per_cm = 0.3;
+        }
+        table.line(odd, EVEN, 0.0, None)
+    };
+    let mixed = |off_per_cm: f64| {
+        let mut found = better.found_beside(&[&beside(off_per_cm)]);
+        found.retain(|f| f.rule == Rule::ScalesMixed);
+        found
+    };
+    assert_eq!(mixed(0.02), [], "inside the uncertainty of the lines");
+    let found = mixed(0.5);
+    assert_eq!(found.len(), 1, "{found:#?}");
+    assert!((found[0].size - 0.5).abs() < 1e-6, "{found:#?}");
+}
+
+#[test]
+fn rates_that_a_lifetime_does_not_allow_are_named() {
+    // 1/τ of the odd level is 6e7 s⁻¹; its one rate is 6e7 ± 5 %, the lifetime known to 1 %.
+    assert_eq!(sound().lifetime(ODD, 1e9 / 6e7).found(), []);
+    assert_eq!(sound().lifetime(ODD, 1.1e9 / 6e7).found(), [], "two sigma");
+    let more = sound().lifetime(ODD, 1.25e9 / 6e7).one();
+    assert_eq!((more.rule, more.unit), (Rule::Lifetime, "times"));
+    assert!((more.size - 1.25).abs() < 1e-9, "{more:?}");
+    // The odd level decays to the ground level alone: too little is as wrong as too much.
+    let less = sound().lifetime(ODD, 0.8e9 / 6e7).one();
+    assert_eq!(less.rule, Rule::Lifetime);
+    // 3d could also decay to a level that no rate leads to: too little proves nothing.
+    let other: Of = (16_950.0, "3p", "2Po", 0.5);
+    let table = || sound().level(other).line(GROUND, other, 0.0, Some(6e7));
+    let lone: Of = (29_000.0, "3d", "2D", 1.5);
+    let open = || {
+        table()
+            .level(lone)
+            .line(ODD, lone, 0.0, Some(1e7))
+            .lifetime(lone, 1e9 / 6e7)
+    };
+    assert_eq!(open().found(), []);
+    let closed = open().line(other, lone, 0.0, Some(1e7));
+    assert_eq!(closed.one().rule, Rule::Lifetime);
 }
 
 /// Levels of Na I np 2Po3/2 from quantum defects of the trade (δ = 0.8548, R = 109734.7 cm⁻¹,

@@ -112,7 +112,7 @@ fn examine(mutate: impl FnOnce(&mut Vec<Record>)) -> Found {
     import(&mut catalogue, &description, &specimen);
     let species = catalogue.species().unwrap();
     let reports = catalogue.reports(&species).unwrap();
-    let Audit { mut findings, .. } = audit(&reports);
+    let Audit { mut findings, .. } = audit(&reports, &[]);
     let text = std::fs::read_to_string(data().join("known_findings.toml")).unwrap();
     let known = KnownFindings::parse(&text).unwrap();
     findings.retain(|f| known.of(f).is_none());

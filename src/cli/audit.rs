@@ -5,8 +5,8 @@ use vocabulary::atom::{Species, SpeciesRequest};
 
 use super::options::{CatalogueOptions, OutputOptions};
 use super::{CliError, Exit, Outcome, window};
-use crate::advise::audit::{self, KnownFindings};
-use crate::catalogue::{Catalogue, CatalogueError};
+use crate::advise::audit::{self, KnownFindings, Lifetime};
+use crate::catalogue::{Catalogue, CatalogueError, LifetimeRow};
 use crate::show::{self, AuditWish};
 
 /// Findings of the bundled tables that are decided.
@@ -15,7 +15,7 @@ const KNOWN: &str = include_str!("../../data/known_findings.toml");
 /// Find what is wrong inside the catalogue, and what to do about it
 ///
 /// Checks every report: positions against levels (wrong medium, wrong unit, one level off),
-/// selection rules, J and energies against other sources, series, rates. Sources that disagree
+/// selection rules, J and energies against other sources, series, rates, lifetimes. Sources that disagree
 /// about a line beyond 3 sigma or 25 % in rate are counted, and listed on request.
 #[derive(Args, Debug)]
 #[command(
@@ -55,7 +55,7 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
     }
     let (species, not_held) = held(&catalogue, &requests)?;
     let reports = catalogue.reports(&species)?;
-    let mut answer = audit::audit(&reports);
+    let mut answer = audit::audit(&reports, &lifetimes(&catalogue)?);
     if let Some(key) = &arguments.source {
         answer.keep_source(key);
     }
@@ -75,6 +75,21 @@ pub(super) fn run(arguments: &Arguments, context: &CatalogueOptions) -> Result<O
         format: arguments.output.format,
         exit,
     })
+}
+
+/// Lifetimes that papers report, while their source is in the catalogue.
+fn lifetimes(catalogue: &Catalogue) -> Result<Vec<Lifetime>, CliError> {
+    let rows = catalogue.resonance_tables()?.lifetimes;
+    let lifetime = |row: LifetimeRow| Lifetime {
+        species: row.species,
+        configuration: row.level.configuration,
+        term: row.level.term,
+        j: row.level.j,
+        lifetime_ns: row.lifetime_ns,
+        uncertainty_ns: row.uncertainty_ns,
+        paper: row.paper,
+    };
+    Ok(rows.into_iter().map(lifetime).collect())
 }
 
 /// Refuses the key of a source that is not loaded.

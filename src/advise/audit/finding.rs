@@ -48,11 +48,13 @@ pub enum Rule {
     WeightFactor,
     /// More oscillator strength than electrons.
     StrengthSum,
+    /// Rates out of a level that its lifetime does not allow.
+    Lifetime,
 }
 
 impl Rule {
     /// Every rule.
-    pub const ALL: [Self; 18] = [
+    pub const ALL: [Self; 19] = [
         Self::Species,
         Self::AirAsVacuum,
         Self::VacuumAsAir,
@@ -71,6 +73,7 @@ impl Rule {
         Self::RateScale,
         Self::WeightFactor,
         Self::StrengthSum,
+        Self::Lifetime,
     ];
 
     /// Its name in answers and in lists of known findings.
@@ -94,6 +97,7 @@ impl Rule {
             Self::RateScale => "rate-scale",
             Self::WeightFactor => "weight-factor",
             Self::StrengthSum => "strength-sum",
+            Self::Lifetime => "lifetime",
         }
     }
 }

@@ -8,6 +8,7 @@ mod conflict;
 mod finding;
 mod known;
 mod levels;
+mod lifetimes;
 mod names;
 mod positions;
 mod rates;
@@ -22,6 +23,7 @@ use vocabulary::report::Reports;
 pub use conflict::{Conflict, ConflictCounts, Quantity};
 pub use finding::{Finding, Place, Rule, Table};
 pub use known::{KnownError, KnownFindings};
+pub use lifetimes::Lifetime;
 
 /// The answer of an audit.
 #[derive(Clone, Debug, Default)]
@@ -38,6 +40,8 @@ pub struct Audit {
     pub lines: usize,
     /// Level reports looked at.
     pub levels: usize,
+    /// Sums of rates that were compared with a lifetime.
+    pub sums: usize,
 }
 
 impl Audit {
@@ -49,8 +53,8 @@ impl Audit {
     }
 }
 
-/// Applies all rules to all reports.
-pub fn audit(reports: &[Reports]) -> Audit {
+/// Applies all rules to all reports; `lifetimes` are those that papers report.
+pub fn audit(reports: &[Reports], lifetimes: &[Lifetime]) -> Audit {
     let mut answer = Audit {
         species: reports.len(),
         ..Audit::default()
@@ -64,6 +68,7 @@ pub fn audit(reports: &[Reports]) -> Audit {
             .map(|f| f.source.as_str())
             .collect();
         let mut found = of_species(of);
+        answer.sums += lifetimes::check(of, lifetimes, &mut found);
         found.retain(|f| !strangers.contains(&f.source.as_str()));
         answer.findings.append(&mut found);
         conflict::of_species(of, &mut answer.conflicts, &mut answer.counts);

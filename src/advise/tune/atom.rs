@@ -81,12 +81,24 @@ impl Atom {
 /// Whether a level bears a name: J and term agree, and its configuration ends with the one named
 /// (closed inner shells may stand before it).
 pub fn is_named(level: &Level, configuration: &str, term: &str, j: HalfInteger) -> bool {
-    level.j == Some(j)
-        && level.term.as_deref().is_some_and(|t| bare(t) == bare(term))
-        && level
-            .configuration
-            .as_deref()
-            .is_some_and(|c| ends_with(c, configuration))
+    let label = (
+        level.configuration.as_deref(),
+        level.term.as_deref(),
+        level.j,
+    );
+    bears_name(label, configuration, term, j)
+}
+
+/// The same of configuration, term and J.
+pub fn bears_name(
+    label: (Option<&str>, Option<&str>, Option<HalfInteger>),
+    configuration: &str,
+    term: &str,
+    j: HalfInteger,
+) -> bool {
+    label.2 == Some(j)
+        && label.1.is_some_and(|t| bare(t) == bare(term))
+        && label.0.is_some_and(|c| ends_with(c, configuration))
 }
 
 /// Whether two levels of an element in two isotopes are the same.

@@ -14,7 +14,7 @@ use std::sync::Arc;
 use vocabulary::light::{Air, Medium, PositionMedium, SpectralRange};
 use vocabulary::spectrum::{Level, Line};
 
-pub use atom::{Atom, Lifetime, is_named, same_level};
+pub use atom::{Atom, Lifetime, bears_name, is_named, same_level};
 pub use decay::{Cycling, Decay, DecayBook, Decays, dipole_allowed};
 pub use error::LaserError;
 pub use neighbour::Neighbour;
