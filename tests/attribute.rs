@@ -260,6 +260,10 @@ fn bad_lists_are_refused_in_one_sentence_each() {
         ),
         ("position\n500\n", "no column of positions with its unit"),
         (
+            "position_nm;intensity\n500,1;3\n",
+            "cells are separated by semicolons here",
+        ),
+        (
             "position_nm,intensity\n500,0\n",
             "line 2, column `intensity`: `0` is not above zero",
         ),

@@ -34,6 +34,20 @@ pub enum TableFileError {
         /// Cells of the header.
         wanted: u64,
     },
+    /// Another separator.
+    #[error(
+        "{}: line 1: `{found}`: cells are separated by {separator} here; separate them by commas, \
+         and write decimal points",
+        path.display()
+    )]
+    Separator {
+        /// The file.
+        path: PathBuf,
+        /// The header.
+        found: String,
+        /// What separates its cells.
+        separator: &'static str,
+    },
     /// No rows.
     #[error("{}: holds no row; write a header line and one row per entry", path.display())]
     Empty {
@@ -184,6 +198,16 @@ impl TableFile {
             .iter()
             .map(str::to_owned)
             .collect();
+        if let [one] = header.as_slice() {
+            let other = [(';', "semicolons"), ('\t', "tabs"), ('|', "bars")];
+            if let Some((_, separator)) = other.iter().find(|(sign, _)| one.contains(*sign)) {
+                return Err(TableFileError::Separator {
+                    path: path.to_owned(),
+                    found: one.clone(),
+                    separator,
+                });
+            }
+        }
         let mut rows = Vec::new();
         for record in reader.into_records() {
             let record = record.map_err(not_csv)?;
@@ -449,5 +473,6 @@ mod tests {
         assert!(said("position_nm,wavelength_A\n500,5000\n").contains("units are mixed"));
         assert!(said("position_nm\n").contains("holds no row"));
         assert!(said("x\n1\n").contains("no column of positions"));
+        assert!(said("position_nm;intensity\n500;1\n").contains("separated by semicolons here"));
     }
 }

@@ -68,18 +68,11 @@ struct Simulated {
     withheld: BTreeSet<&'static str>,
 }
 
-/// The first list of a seed in which each of the eight species shows three peaks.
 fn simulated(sigma_nm: f64, seed: u64) -> Simulated {
-    for attempt in 0.. {
-        let chosen = chosen(&mut Chance::of(&[seed, attempt]));
-        let withheld: BTreeSet<&'static str> = chosen[SPECIES..].iter().copied().collect();
-        let lines = strongest(&[seed, attempt], &chosen, &withheld);
-        let shown = |species: &str| lines.iter().filter(|l| l.2 == species).count();
-        if chosen[..SPECIES].iter().all(|s| shown(s) >= FEWEST_PEAKS) {
-            return measured(&[seed, attempt], &lines, withheld, sigma_nm);
-        }
-    }
-    unreachable!("attempts do not end")
+    let chosen = chosen(&mut Chance::of(&[seed]));
+    let withheld: BTreeSet<&'static str> = chosen[SPECIES..].iter().copied().collect();
+    let lines = strongest(seed, &chosen, &withheld);
+    measured(seed, &lines, withheld, sigma_nm)
 }
 
 /// Species of different elements; the last are withheld.
@@ -104,34 +97,39 @@ fn hundredths(nm: f64) -> u64 {
     (100.0 * nm).round() as u64
 }
 
-/// Place, intensity and species of the strongest lines: amounts and strengths are log-normal, σ 0.7.
+/// Place, intensity and species of the strongest lines, among them three of each species that is not withheld: amounts
+/// and strengths are log-normal, σ 0.7.
 fn strongest(
-    seed: &[u64; 2],
+    seed: u64,
     chosen: &[&'static str],
     withheld: &BTreeSet<&str>,
 ) -> Vec<(f64, f64, &'static str)> {
     let mut lines: Vec<(f64, f64, &'static str)> = Vec::new();
     for &species in chosen {
         let part = if withheld.contains(species) { 0.3 } else { 1.0 };
-        let [seed, attempt] = *seed;
-        let amount = part * (0.7 * Chance::of(&[seed, attempt, place(species)]).normal()).exp();
+        let amount = part * (0.7 * Chance::of(&[seed, place(species)]).normal()).exp();
         for &(nm, light) in &features()[species] {
-            let strength = Chance::of(&[seed, attempt, place(species), hundredths(nm)]).normal();
+            let strength = Chance::of(&[seed, place(species), hundredths(nm)]).normal();
             lines.push((nm, amount * light * (0.7 * strength).exp(), species));
         }
     }
     lines.sort_by(|a, b| b.1.total_cmp(&a.1));
-    lines.truncate(PEAKS - NOISE);
-    lines
+    let mut shown: BTreeMap<&str, usize> = BTreeMap::new();
+    let (mut kept, rest): (Vec<_>, Vec<_>) = lines.into_iter().partition(|line| {
+        let count = shown.entry(line.2).or_default();
+        *count += 1;
+        *count <= FEWEST_PEAKS && !withheld.contains(line.2)
+    });
+    kept.extend(rest.into_iter().take(PEAKS - NOISE - kept.len()));
+    kept
 }
 
 fn measured(
-    seed: &[u64; 2],
+    seed: u64,
     lines: &[(f64, f64, &'static str)],
     withheld: BTreeSet<&'static str>,
     sigma_nm: f64,
 ) -> Simulated {
-    let [seed, attempt] = *seed;
     let faintest = lines.iter().map(|l| l.1).fold(f64::INFINITY, f64::min);
     // Fixed before anything is matched: the species may be found, and no other true line lies within the error.
     let alone = |line: &(f64, f64, &str)| {
@@ -142,7 +140,7 @@ fn measured(
             == 1
     };
     let error = |line: &(f64, f64, &str)| {
-        Chance::of(&[seed, attempt, place(line.2), hundredths(line.0), 1]).normal()
+        Chance::of(&[seed, place(line.2), hundredths(line.0), 1]).normal()
     };
     let mut peaks: Vec<Made> = lines
         .iter()
@@ -153,7 +151,7 @@ fn measured(
             assignable: alone(line) && !withheld.contains(line.2),
         })
         .collect();
-    let mut chance = Chance::of(&[seed, attempt, 1000]);
+    let mut chance = Chance::of(&[seed, 1000]);
     peaks.extend((0..NOISE).map(|_| Made {
         position_nm: SPAN_NM.0 + (SPAN_NM.1 - SPAN_NM.0) * chance.part(),
         intensity: faintest * (1.0 + chance.part()),

@@ -65,9 +65,10 @@ pub(super) fn judge(room: &Room<'_>, peaks: &[Peak], found: &Found, scale: Scale
         let (blind, _) = case.species();
         let shown = blind.iter().zip(&room.log_prior).filter(|(e, _)| e.present);
         odds.extend(shown.map(|(e, prior)| e.log_ratio + prior));
-        // The species of the true list, nothing being known of the peaks.
+        // The species of the true list, as bright as there, nothing being known of the peaks.
         let unclaimed = vec![0.9; list.len()];
-        let candidates = room.candidates(&case, &list, &found.evidence, &unclaimed);
+        let candidates =
+            room.candidates(&case, &list, &found.evidence, &unclaimed, &found.brightness);
         for (list, &origin) in candidates.iter().zip(&origin) {
             let claimed = usize::from(is_claimed(list));
             matched += claimed;
@@ -108,18 +109,20 @@ fn shifted(peaks: &[Peak], range: (f64, f64), shift_nm: f64) -> (Vec<Peak>, Vec<
     out.into_iter().unzip()
 }
 
-/// Expected part of wrong first candidates among attributed peaks. Of N peaks M are attributed; a
-/// peak whose origin is not among the species is attributed by chance with probability r, so that
-/// r (N − M)/(1 − r) attributions are chance ones (J. D. Storey 2002, J. R. Stat. Soc. B 64, 479,
-/// with the part of true nulls taken from N − M); and each attribution is wrong with the
-/// probability of its rival candidates.
+/// Expected part of wrong first candidates among attributed peaks. A peak whose origin is not among
+/// the species is attributed by chance with probability r, so that r n/(1 − r) attributions are
+/// chance ones, n being the unattributed peaks of such origin (J. D. Storey 2002, J. R. Stat. Soc. B
+/// 64, 479; n is the sum of what is left of them beside their candidates); and each attribution is
+/// wrong with the probability of its rival candidates.
 pub(super) fn false_discovery_rate(peaks: &[PeakAnswer], chance_match: f64) -> Option<f64> {
     let attributed: Vec<&PeakAnswer> = peaks.iter().filter(|p| p.attributed().is_some()).collect();
     if attributed.is_empty() {
         return None;
     }
-    let (all, count) = (peaks.len() as f64, attributed.len() as f64);
-    let chance = chance_match * (all - count) / (1.0 - chance_match).max(0.01);
+    let count = attributed.len() as f64;
+    let left = |p: &PeakAnswer| 1.0 - p.candidates.iter().map(|c| c.probability).sum::<f64>();
+    let open: f64 = (peaks.iter().filter(|p| p.attributed().is_none()).map(left)).sum();
+    let chance = chance_match * open / (1.0 - chance_match).max(0.01);
     let rivals: f64 = attributed
         .iter()
         .flat_map(|p| p.candidates.iter().skip(1))

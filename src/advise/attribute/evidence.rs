@@ -36,7 +36,7 @@ pub struct Evidence {
     pub present: bool,
     /// Index of the temperature that fits best.
     pub temperature: usize,
-    /// Light of the weakest feature that counted; zero where none did.
+    /// Light of the weakest feature that counted, else of the strongest.
     pub weakest: f64,
     /// Templates that counted and are matched, the strongest first.
     pub matched: Vec<usize>,
@@ -253,6 +253,10 @@ impl Case<'_> {
             .iter()
             .filter_map(|(i, _)| self.templates[*i].light.as_ref().map(|l| l[temperature]))
             .fold(f64::INFINITY, f64::min);
+        let strongest = ranked
+            .first()
+            .and_then(|&i| self.templates[i].light.as_ref())
+            .map_or(f64::INFINITY, |l| l[temperature]);
         let of = |wanted: bool| {
             counted
                 .iter()
@@ -269,10 +273,11 @@ impl Case<'_> {
             probability: 0.0,
             present: false,
             temperature,
+            // Where none counted the strongest alone may be seen.
             weakest: if weakest.is_finite() {
                 weakest
             } else {
-                f64::INFINITY
+                strongest
             },
             matched: of(true),
             missing: of(false),

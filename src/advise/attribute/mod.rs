@@ -232,7 +232,9 @@ pub fn answer(
 fn range(peaks: &[Peak], question: &Question) -> (f64, f64) {
     let low = peaks.first().map_or(0.0, |p| p.vacuum_nm);
     let high = peaks.last().map_or(0.0, |p| p.vacuum_nm);
-    let margin = question.width.at_nm(high).max(1e-9);
+    // A line may lie beyond the outermost peak by the width, or by what the peak is uncertain.
+    let sigma = peaks.iter().map(|p| p.sigma_nm).fold(0.0, f64::max);
+    let margin = question.width.at_nm(high).max(2.0 * sigma).max(1e-9);
     (low - margin, high + margin)
 }
 

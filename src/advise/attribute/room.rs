@@ -27,6 +27,8 @@ pub(super) struct Room<'a> {
 /// What was found in one list.
 pub(super) struct Found {
     pub evidence: Vec<Evidence>,
+    /// How bright its species are.
+    pub brightness: Brightness,
     /// Per peak: match and probability, the most likely first.
     pub candidates: Vec<Vec<(Match, f64)>>,
 }
@@ -47,9 +49,11 @@ impl<'a> Room<'a> {
         let density = peak_density(peaks, self.range);
         let case = self.case(&matches, &density);
         let (evidence, claimed) = case.species();
-        let candidates = self.candidates(&case, peaks, &evidence, &claimed);
+        let brightness = Brightness::new(self, &case, peaks, &evidence);
+        let candidates = self.candidates(&case, peaks, &evidence, &claimed, &brightness);
         Found {
             evidence,
+            brightness,
             candidates,
         }
     }
@@ -62,11 +66,11 @@ impl<'a> Room<'a> {
         peaks: &[Peak],
         evidence: &[Evidence],
         claimed: &[f64],
+        brightness: &Brightness,
     ) -> Vec<Vec<(Match, f64)>> {
         let unexplained =
             claimed.iter().map(|c| 1.0 - c).sum::<f64>() / claimed.len().max(1) as f64;
         let unknown = unexplained.max(UNKNOWN_SHARE);
-        let brightness = Brightness::new(self, case, peaks, evidence);
         let mut weights: Vec<Vec<(Match, f64)>> = vec![Vec::new(); peaks.len()];
         for m in &case.matches.all {
             let species = self.templates[m.template].spectrum;
