@@ -5,7 +5,8 @@
 
 -- One row a fact about this file.
 CREATE TABLE about (
-    name  TEXT PRIMARY KEY,  -- 'bundle': checksum of the bundled tables it was built from
+    name  TEXT PRIMARY KEY,  -- 'bundle': checksum of the bundled tables it was built from;
+                             -- 'rule': revision of the rule that made levels and lines
     value TEXT NOT NULL
 ) STRICT, WITHOUT ROWID;
 
@@ -110,6 +111,7 @@ CREATE TABLE line (
     rate_relative_uncertainty     REAL,              -- fraction, 1 sigma
     rate_origin                   INTEGER,           -- 0 published, 1 derived, 2 computed
     rate_source                   INTEGER REFERENCES source (id),
-    kind                          INTEGER NOT NULL,  -- 0 line, 1 mean, 2 blend, 3 isotope
+    kind                          INTEGER NOT NULL,  -- 0 line, 1 mean, 2 blend, 3 isotope,
+                                                     -- 4 ritz: in no table, from levels alone
     PRIMARY KEY (species, wavenumber_per_cm, number)
 ) STRICT, WITHOUT ROWID;
