@@ -50,7 +50,8 @@ pub struct Emitter {
 #[derive(Clone, Debug)]
 enum Populations {
     Unknown,
-    Thermal(Partition),
+    /// LTE, with the part of the atoms in each level by number (NaN without a weight).
+    Thermal(Partition, Vec<f64>),
     Corona(Corona),
 }
 
@@ -130,7 +131,7 @@ impl Emitter {
     fn power(&self, wavenumber: f64, rate: f64, upper: &Level) -> Option<f64> {
         let population = match &self.populations {
             Populations::Unknown => return None,
-            Populations::Thermal(p) => p.fraction(upper.energy_per_cm, upper.g?),
+            Populations::Thermal(_, parts) => known(parts, upper)?,
             Populations::Corona(corona) => corona.population_m3(upper.number)?,
         };
         Some(self.factor * population * rate * wavenumber)
@@ -164,7 +165,7 @@ impl Emitter {
     pub fn population(&self, level: &Level) -> Option<f64> {
         match &self.populations {
             Populations::Unknown => None,
-            Populations::Thermal(p) => Some(p.fraction(level.energy_per_cm, level.g?)),
+            Populations::Thermal(_, parts) => known(parts, level),
             Populations::Corona(corona) => corona.fraction(level.number),
         }
     }
@@ -172,10 +173,16 @@ impl Emitter {
     /// Whether levels that are not held may raise the partition function by more than 1 %.
     pub fn is_lower_bound(&self) -> bool {
         match &self.populations {
-            Populations::Thermal(p) => p.is_lower_bound(),
+            Populations::Thermal(p, _) => p.is_lower_bound(),
             _ => false,
         }
     }
+}
+
+/// The part of the atoms in a level, where it is known.
+fn known(parts: &[f64], level: &Level) -> Option<f64> {
+    let part = parts.get(level.number as usize).copied();
+    part.filter(|p| !p.is_nan())
 }
 
 /// Relative 1 σ of a ratio of light from what whole species share: of the light of species with
@@ -218,7 +225,13 @@ pub fn emitters(
     let mut out = Vec::with_capacity(spectra.len());
     for ((spectrum, partition), share) in spectra.iter().zip(partitions).zip(shares) {
         let populations = match partition {
-            Some(partition) => Populations::Thermal(partition),
+            Some(partition) => {
+                let part = |l: &std::sync::Arc<Level>| {
+                    l.g.map_or(f64::NAN, |g| partition.fraction(l.energy_per_cm, g))
+                };
+                let parts = spectrum.levels.iter().map(part).collect();
+                Populations::Thermal(partition, parts)
+            }
             None if corona => {
                 Corona::new(spectrum, conditions)?.map_or(Populations::Unknown, Populations::Corona)
             }
