@@ -2,7 +2,8 @@
 //! filter of 10 nm, and a choice among 10,000 filters.
 //!
 //! `cargo bench --bench passband`. The command line runs, start and reading included, so that what
-//! a user waits for is measured; `one_temperature` is the part that the scan does not add.
+//! a user waits for is measured; `one_temperature` is the part that the scan does not add. Records:
+//! `passband.md`.
 
 use std::path::PathBuf;
 use std::process::{Command, Stdio};
