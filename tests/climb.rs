@@ -237,6 +237,22 @@ fn members_are_those_of_predict() {
     assert_eq!(compared, 21);
 }
 
+/// Where no route ends at the target, the answer tells how far the lasers lead: of strontium 5s 5p ³P1
+/// is reached, and 5s 6s ³S1 lies 688.0 nm (vacuum, common practice) above it.
+#[test]
+fn without_a_route_the_missing_step_is_named() {
+    let command = "lineclear climb --of Sr --lasers 689..690nm,679..680nm --to \"5s 6s 3S 1\"";
+    let found = run(&format!("{command} --medium vacuum"));
+    assert_eq!(found.exit, 0, "{}", found.stderr);
+    let words: Vec<&str> = found.stdout.split_whitespace().collect();
+    let said = words.join(" ");
+    assert!(said.contains("Reached: 5s (2S) 5p 3Po 1;"), "{said}");
+    assert!(said.contains("and takes 688.02"), "{said}");
+    let reached = json(command)["reached"].as_array().unwrap().len();
+    assert_eq!(reached, 1);
+    assert!(json("lineclear climb --of Rb --lasers 780+-1nm --to 5p")["reached"].is_null());
+}
+
 #[test]
 fn each_bad_question_gets_one_sentence() {
     for (arguments, exit, words) in [

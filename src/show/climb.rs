@@ -8,7 +8,7 @@ use vocabulary::spectrum::PositionOrigin;
 use super::line::{level_name, level_object, medium_word, position_word, rate_word};
 use super::number::{plus_minus, with_uncertainty};
 use super::sheet::{Align, Column, Context, Sheet};
-use crate::advise::climb::{Answer, Question, Route, RydbergLevel, Step, StepEnd};
+use crate::advise::climb::{Answer, Question, Route, RydbergLevel, Short, Step, StepEnd, Target};
 use crate::advise::placed;
 use crate::calc::series::orbital_letter;
 
@@ -41,8 +41,13 @@ pub fn climb(answer: &Answer, question: &Question, context: Context, wish: &Clim
     let mut object = context.object(&notes);
     let routes = shown.iter().map(|r| route_object(r, wish)).collect();
     object.insert("routes".into(), Value::Array(routes));
+    let reached = answer.short.as_ref().map(|short| {
+        let levels = short.reached.iter().map(|level| level_object(level));
+        levels.collect::<Vec<Value>>()
+    });
+    object.insert("reached".into(), json!(reached));
     Sheet {
-        headline: vec![headline(answer, question, wish)],
+        headline: headline(answer, question, wish),
         columns: COLUMNS.to_vec(),
         rows: shown
             .iter()
@@ -60,13 +65,41 @@ pub fn climb(answer: &Answer, question: &Question, context: Context, wish: &Clim
     }
 }
 
-fn headline(answer: &Answer, question: &Question, wish: &ClimbWish) -> String {
+fn headline(answer: &Answer, question: &Question, wish: &ClimbWish) -> Vec<String> {
     let (species, target) = (wish.species, &question.typed_target);
-    match answer.routes.len() {
+    let mut out = vec![match answer.routes.len() {
         0 => format!("{species} to {target}: no route through held lines within these ranges."),
         1 => format!("{species} to {target}: 1 route."),
         n => format!("{species} to {target}: {n} routes, the strongest first."),
-    }
+    }];
+    let into_continuum = matches!(question.target, Target::Limit(_));
+    let words = |short| short_words(short, wish.medium, into_continuum);
+    out.extend(answer.short.as_ref().map(words));
+    out
+}
+
+/// So many levels are named that the lasers reach without coming to the target.
+const NAMED: usize = 4;
+
+fn short_words(short: &Short, medium: Medium, into_continuum: bool) -> String {
+    let names: Vec<String> = (short.reached.iter().take(NAMED))
+        .map(|level| level_name(level))
+        .collect();
+    let more = match short.reached.len().saturating_sub(NAMED) {
+        0 => String::new(),
+        n => format!(" and {n} more"),
+    };
+    let on = match &short.missing {
+        Some((from, wavenumber)) => {
+            let at_most = if into_continuum { "at most " } else { "" };
+            let sigma = from.energy_uncertainty_per_cm;
+            let nm = position(*wavenumber, sigma, medium).replace(' ', " nm in ");
+            let from = level_name(from);
+            format!("the nearest step to the target begins at {from} and takes {at_most}{nm}")
+        }
+        None => "no held line leads from there to the target".into(),
+    };
+    format!("Reached: {}{more}; {on}.", names.join(", "))
 }
 
 fn row(route: usize, step: usize, s: &Step, wish: &ClimbWish) -> Vec<String> {

@@ -111,11 +111,23 @@ pub struct Route {
     pub score: Option<f64>,
 }
 
+/// How far the lasers lead where no route ends at the target.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Short {
+    /// Excited levels that are reached, by energy.
+    pub reached: Vec<Arc<Level>>,
+    /// The step to the target that comes nearest to one of the ranges: where it begins, and the
+    /// least or only vacuum wavenumber that it takes, cm⁻¹.
+    pub missing: Option<(Arc<Level>, f64)>,
+}
+
 /// The answer.
 #[derive(Clone, Debug, Default)]
 pub struct Answer {
     /// Routes, the best first; those with an unknown strength last.
     pub routes: Vec<Route>,
+    /// Where there is no route: how far the lasers lead.
+    pub short: Option<Short>,
 }
 
 /// Answers the question from a spectrum with all its lines, and the spectra of other species with
@@ -142,5 +154,6 @@ pub fn answer(
         step.coincidences = route::coincidences(step, &absorbers, question, spectrum.mass_u);
     }
     routes.sort_by(|a, b| b.score.unwrap_or(-1.0).total_cmp(&a.score.unwrap_or(-1.0)));
-    Ok(Answer { routes })
+    let short = routes.is_empty().then(|| search.short());
+    Ok(Answer { routes, short })
 }

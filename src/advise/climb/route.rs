@@ -1,12 +1,13 @@
 //! Search of routes: all ways of up to three steps, each by another laser.
 
+use std::collections::BTreeMap;
 use std::sync::Arc;
 
 use vocabulary::light::constants::PER_CM_PER_EV;
 use vocabulary::spectrum::{Level, Line, PositionOrigin, RateOrigin};
 
 use super::series::{RydbergLevel, RydbergSeries};
-use super::{Coincidence, MOST_STEPS, Question, Route, Step, StepEnd, Target};
+use super::{Coincidence, MOST_STEPS, Question, Route, Short, Step, StepEnd, Target};
 use crate::advise::Spectrum;
 use crate::advise::tune::{Laser, LaserError, MHZ_PER_CM, Populated, strength};
 use crate::calc::plasma::absorption_f;
@@ -256,6 +257,67 @@ impl<'a> Search<'a> {
         })
     }
 
+    /// How far the lasers lead.
+    pub(super) fn short(&self) -> Short {
+        let mut reached = BTreeMap::new();
+        for start in self.starts() {
+            self.spread(start, &mut Vec::new(), &mut reached);
+        }
+        let reached: Vec<Arc<Level>> = reached.into_values().collect();
+        let missing = (reached.iter())
+            .flat_map(|level| self.needed(level).map(move |w| (Arc::clone(level), w)))
+            .min_by(|a, b| self.distance(a.1).total_cmp(&self.distance(b.1)));
+        Short { reached, missing }
+    }
+
+    /// Collects the levels that free lasers reach from a level, short of the last step.
+    fn spread(
+        &self,
+        level: &Arc<Level>,
+        used: &mut Vec<usize>,
+        reached: &mut BTreeMap<u32, Arc<Level>>,
+    ) {
+        if used.len() + 1 == MOST_STEPS {
+            return;
+        }
+        let lasers = &self.question.lasers;
+        for laser in (0..lasers.len())
+            .filter(|l| !used.contains(l))
+            .collect::<Vec<_>>()
+        {
+            let lines = self.from.get(level.number as usize).into_iter().flatten();
+            for line in lines.filter(|l| lasers[laser].range.contains_per_cm(l.wavenumber_per_cm)) {
+                let Some(upper) = &line.upper else { continue };
+                reached.insert(upper.number, Arc::clone(upper));
+                used.push(laser);
+                self.spread(upper, used, reached);
+                used.pop();
+            }
+        }
+    }
+
+    /// Wavenumbers of the steps from a level to the target, cm⁻¹.
+    fn needed(&self, level: &Level) -> Box<dyn Iterator<Item = f64> + '_> {
+        let energy = level.energy_per_cm;
+        match &self.question.target {
+            Target::Levels(targets) => {
+                let is_target = |l: &Level| targets.iter().any(|t| t.number == l.number);
+                let lines = self.from.get(level.number as usize).into_iter().flatten();
+                let to_target = lines.filter(move |l| l.upper.as_deref().is_some_and(is_target));
+                Box::new(to_target.map(|l| l.wavenumber_per_cm))
+            }
+            Target::Series(series, n) => {
+                let joined: Vec<&RydbergSeries> =
+                    series.iter().filter(|s| s.is_reached_from(level)).collect();
+                let members = joined.into_iter().flat_map(|s| &s.members);
+                let wanted = members.filter(move |m| n.is_none_or(|n| m.n == n));
+                let above = wanted.map(move |m| m.energy_per_cm - energy);
+                Box::new(above.filter(|w| *w > 0.0))
+            }
+            Target::Limit(limit) => Box::new(Some(limit - energy).into_iter().filter(|w| *w > 0.0)),
+        }
+    }
+
     /// Whether any laser reaches any line from a populated level.
     pub(super) fn any_first_step(&self) -> bool {
         self.starts().any(|start| {
@@ -268,24 +330,24 @@ impl<'a> Search<'a> {
         })
     }
 
+    /// Distance of a wavenumber from the nearest laser range, cm⁻¹; negative inside one.
+    fn distance(&self, wavenumber_per_cm: f64) -> f64 {
+        let lasers = self.question.lasers.iter();
+        let far = lasers.map(|l| {
+            let below = l.range.wavenumber_low_per_cm - wavenumber_per_cm;
+            let above = wavenumber_per_cm - l.range.wavenumber_high_per_cm;
+            below.max(above)
+        });
+        far.fold(f64::INFINITY, f64::min)
+    }
+
     /// `; the nearest is 780.241 nm (vacuum)`.
     pub(super) fn nearest_first_step(&self) -> String {
-        let distance = |wavenumber: f64| {
-            self.question
-                .lasers
-                .iter()
-                .map(|l| {
-                    let below = l.range.wavenumber_low_per_cm - wavenumber;
-                    let above = wavenumber - l.range.wavenumber_high_per_cm;
-                    below.max(above)
-                })
-                .fold(f64::INFINITY, f64::min)
-        };
         self.starts()
             .filter_map(|start| self.from.get(start.number as usize))
             .flatten()
             .map(|l| l.wavenumber_per_cm)
-            .min_by(|a, b| distance(*a).total_cmp(&distance(*b)))
+            .min_by(|a, b| self.distance(*a).total_cmp(&self.distance(*b)))
             .map_or_else(String::new, |w| {
                 format!("; the nearest is {:.3} nm in vacuum", 1e7 / w)
             })
