@@ -223,7 +223,7 @@ pub fn derive(species: Species, mut reports: Vec<SourceReports>) -> Derived {
     derive_ranked(species, &reports)
 }
 
-/// As [`derive`], of reports that stand in the order of [`rank`].
+/// As [`derive()`], of reports that stand in the order of [`rank`].
 pub fn derive_ranked(species: Species, reports: &[SourceReports]) -> Derived {
     let (levels, level_of, mut apart) = levels::join(species, reports);
     let lines = lines::join(reports, &levels, &level_of, &mut apart);
