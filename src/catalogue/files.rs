@@ -2,15 +2,18 @@
 
 use std::fs::File;
 use std::io::{self, BufReader, Read};
+use std::panic::resume_unwind;
 use std::path::{Path, PathBuf};
+use std::sync::mpsc::{SyncSender, sync_channel};
 
 use importers::detect::Detected;
 use importers::explain::Explanation;
+use importers::record::Record;
 use importers::source::{Format, SourceDescription};
-use importers::{Limits, ReadOptions, read_source};
+use importers::{ImportError, Limits, ReadOptions, ReadReport, Sink, SinkError, read_source};
 use sha2::{Digest, Sha256};
 
-use super::error::{CatalogueError, Result};
+use super::error::{CatalogueError, Result, Stop};
 use super::ingest::{ImportSummary, Incoming};
 use super::store::Catalogue;
 
@@ -162,16 +165,72 @@ impl SourceFiles {
             skip_bad,
             limits: self.limits.clone(),
         };
-        let mut open = |name: &str| -> io::Result<Box<dyn Read>> {
-            Ok(Box::new(BufReader::with_capacity(
-                1 << 18,
-                File::open(self.folder.join(name))?,
-            )))
-        };
-        let read = |sink: &mut dyn importers::Sink| {
-            read_source(&self.description, &mut open, &options, sink)
+        let read = |sink: &mut dyn Sink| {
+            read_ahead(sink, |sink| {
+                let mut open = |name: &str| -> io::Result<Box<dyn Read>> {
+                    let file = File::open(self.folder.join(name))?;
+                    Ok(Box::new(BufReader::with_capacity(1 << 18, file)))
+                };
+                read_source(&self.description, &mut open, &options, sink)
+            })
         };
         catalogue.import(&incoming, read, dry_run)
+    }
+}
+
+/// Records that pass from the reading to the writing thread at once.
+const BATCH: usize = 256;
+
+/// Reads on a thread of its own, a few batches ahead of the sink, so that a large table is read
+/// while what was read is stored.
+fn read_ahead(
+    sink: &mut dyn Sink,
+    read: impl FnOnce(&mut dyn Sink) -> std::result::Result<ReadReport, ImportError> + Send,
+) -> std::result::Result<ReadReport, ImportError> {
+    std::thread::scope(|scope| {
+        let (send, receive) = sync_channel::<Vec<Record>>(8);
+        let reader = scope.spawn(move || {
+            let mut batches = Batches {
+                send,
+                batch: Vec::with_capacity(BATCH),
+            };
+            let report = read(&mut batches);
+            batches.pass_on().map_err(ImportError::Sink)?;
+            report
+        });
+        let stored = receive
+            .iter()
+            .flatten()
+            .try_for_each(|record| sink.accept(record));
+        drop(receive); // a reader that is ahead ends here
+        let report = reader.join().unwrap_or_else(|panic| resume_unwind(panic));
+        stored.map_err(ImportError::Sink).and(report)
+    })
+}
+
+/// Gathers records into batches.
+struct Batches {
+    send: SyncSender<Vec<Record>>,
+    batch: Vec<Record>,
+}
+
+impl Batches {
+    /// Fails where nobody receives any more.
+    fn pass_on(&mut self) -> std::result::Result<(), SinkError> {
+        let batch = std::mem::replace(&mut self.batch, Vec::with_capacity(BATCH));
+        self.send
+            .send(batch)
+            .map_err(|_| Box::new(Stop) as SinkError)
+    }
+}
+
+impl Sink for Batches {
+    fn accept(&mut self, record: Record) -> std::result::Result<(), SinkError> {
+        self.batch.push(record);
+        if self.batch.len() == BATCH {
+            self.pass_on()?;
+        }
+        Ok(())
     }
 }
 

@@ -60,6 +60,7 @@ impl Catalogue {
     ) -> Result<ImportSummary> {
         let path = self.path.clone();
         self.keys.take();
+        self.prepare_for_writing()?;
         let stop = Arc::clone(&self.stop);
         let transaction = self
             .connection

@@ -203,6 +203,14 @@ impl Catalogue {
             .map_err(failed(&path, "marked"))
     }
 
+    /// Sets the connection for a large write: 64 MiB of pages, so that what many species append to
+    /// stays in memory, and one wait for the disk at the end (WAL keeps the file sound without more).
+    pub(super) fn prepare_for_writing(&self) -> Result<()> {
+        self.connection
+            .execute_batch("PRAGMA cache_size = -65536; PRAGMA synchronous = NORMAL")
+            .map_err(self.failed("opened"))
+    }
+
     /// Turns an SQLite error into one of the catalogue.
     pub(super) fn failed(
         &self,

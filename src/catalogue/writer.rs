@@ -121,7 +121,7 @@ impl<'c> Inserts<'c> {
 #[derive(Default)]
 struct KnownLevels {
     /// The first level of each kind.
-    first: HashMap<(u64, u64), u32>,
+    first: hashbrown::HashMap<(u64, u64), u32>,
     all: Vec<KnownLevel>,
 }
 

@@ -144,6 +144,7 @@ impl Catalogue {
         let path = self.path.clone();
         let written = failed(&path, "written");
         self.keys.take();
+        self.prepare_for_writing()?;
         let stop = Arc::clone(&self.stop);
         let transaction = self
             .connection
