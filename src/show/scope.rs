@@ -144,8 +144,8 @@ fn notes(bands: &[Band], not_held: &[String]) -> Vec<String> {
 fn meaning(claim: Option<Completeness>) -> String {
     let complete = |word: &str, limit: f64| {
         format!(
-            "{word}: lines down to {} of the strongest of the band are listed; weaker ones may be \
-             missing.",
+            "{word}: the sources claim to list lines down to {} of the strongest of the band; weaker \
+             ones may be missing.",
             percent(limit)
         )
     };
