@@ -95,7 +95,7 @@ pub struct Arguments {
     )]
     emissivity: Option<String>,
     /// Count the free-free continuum of the plasma; needs --ne and --path
-    #[arg(long, requires = "ne", requires = "path")]
+    #[arg(long, requires = "path")]
     free_free: bool,
     /// Length of the plasma along the line of sight, in metres: 0.1m
     #[arg(long, value_name = "LENGTH", allow_hyphen_values = true)]
@@ -297,6 +297,11 @@ impl Arguments {
         if path_m.is_some_and(|p| p <= 0.0) || self.target_radiance.is_some_and(|r| r <= 0.0) {
             return Err(CliError::Options(
                 "--path and --target-radiance take numbers above zero",
+            ));
+        }
+        if self.free_free && source.conditions.electron_density_per_m3.is_none() {
+            return Err(CliError::Options(
+                "--free-free needs the electron density: add --ne 1e20m-3, or ne to the file of the mix",
             ));
         }
         let scale = match (&self.density, self.target_radiance) {
