@@ -101,9 +101,9 @@ fn robust_dispersions_reject_what_numpy_rejects_and_give_its_curve() {
         }
         // A cut at 2.5 σ takes 1.2 % of right entries: of some 30, more than two by a chance below 1 %.
         assert!(cut <= 2, "{name}: {cut}");
-        // The lamp's blends are no marks; most entries are.
+        // Blends, lines without a known rate and what lies beside one are no marks, a quarter of these lists; most are.
         assert!(
-            used * 10 >= entries.len() * 7,
+            used * 10 >= entries.len() * 6,
             "{name}: {used} of {}",
             entries.len()
         );
