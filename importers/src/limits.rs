@@ -108,7 +108,7 @@ mod tests {
             "columns=0",
             "columns=-1",
             "columns=1.5",
-            "links=99999999GiB",
+            "links=99999999999GiB",
         ] {
             assert!(limits.set(text).is_err(), "{text}");
         }
