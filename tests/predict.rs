@@ -34,6 +34,69 @@ fn balmer_series_of_hydrogen() {
     }
 }
 
+/// Fitted limits against measured ionisation energies, from memory: Li Bushaw et al. 2007, Phys. Rev. A
+/// 75, 052503; Na Baugh et al. 1998, Phys. Rev. A 58, 1585; K Lorenzen & Niemax 1983, Phys. Scr. 27, 300; Rb
+/// Mack et al. 2011, Phys. Rev. A 83, 052515; Cs Deiglmayr et al. 2016, Phys. Rev. A 93, 013424; Mg II
+/// Risberg 1955, Ark. Fys. 9, 483; He Kandula et al. 2010, Phys. Rev. Lett. 105, 063001. A fit that reaches
+/// elsewhere must say so in its σ: 2 σ and the last digit given.
+#[test]
+fn limits_of_series_are_those_measured() {
+    for (species, limit_per_cm, series) in [
+        (
+            "Li I",
+            43_487.159,
+            ["nS1/2", "nP1/2", "nP3/2", "nD3/2", "nD5/2"],
+        ),
+        (
+            "Na I",
+            41_449.451,
+            ["nS1/2", "nP1/2", "nP3/2", "nD3/2", "nD5/2"],
+        ),
+        (
+            "K I",
+            35_009.814,
+            ["nS1/2", "nP1/2", "nP3/2", "nD3/2", "nD5/2"],
+        ),
+        (
+            "Rb I",
+            33_690.805,
+            ["nS1/2", "nP1/2", "nP3/2", "nD3/2", "nD5/2"],
+        ),
+        (
+            "Cs I",
+            31_406.468,
+            ["nS1/2", "nP1/2", "nP3/2", "nD3/2", "nD5/2"],
+        ),
+        (
+            "Mg II",
+            121_267.61,
+            ["nS1/2", "nP1/2", "nP3/2", "nD3/2", "nD5/2"],
+        ),
+        (
+            "He I",
+            198_310.669,
+            ["n1S0", "n3S1", "n1P1", "n3P2", "n1D2"],
+        ),
+    ] {
+        for name in series {
+            let answer = json(&format!(
+                "lineclear predict \"{species}\" --series {name} --n 30..40"
+            ));
+            let found = number(&answer["series_limit_per_cm"]);
+            let sigma = number(&answer["series_limit_uncertainty_per_cm"]);
+            let off = (found - limit_per_cm).abs();
+            println!("{species} {name}: {found:.3} ± {sigma:.3}, {off:.3} off");
+            assert!(
+                off < 2.0 * sigma + 0.001,
+                "{species} {name}: {off} ± {sigma}"
+            );
+            // The highest member carries nearly all of it.
+            let last = list(&answer, "levels").last().unwrap();
+            assert!(number(&last["uncertainty_per_cm"]) > 0.3 * sigma, "{last}");
+        }
+    }
+}
+
 #[test]
 fn all_named_series_begin_above_their_shell() {
     let names = [

@@ -47,6 +47,10 @@ pub struct SeriesFit {
     /// Scatter of the defects about the Ritz curve (1 σ), for a soft core: what the levels of
     /// other configurations do to single members. It is part of every prediction.
     pub defect_scatter: f64,
+    /// By how much the fitted limit lies above the limit given, cm⁻¹, where that is beyond 2 σ of
+    /// the fit; else 0. Either the levels stand on another scale than the limit, or the curve
+    /// does not reach so far: predictions beyond the last member carry it.
+    pub limit_offset_per_cm: f64,
     /// Schwarz's criterion χ² + Σ ln σ² + k ln N (Schwarz 1978, Ann. Stat. 6, 461) for each number of
     /// terms tried, beginning with one.
     pub information: Vec<f64>,
@@ -182,10 +186,18 @@ pub(super) fn assemble(
     };
     let (coefficients, published) = unscaled(&ritz, &covariance, scale_factor);
     let limit_index = coefficients.len();
+    let limit_sigma = published[limit_index][limit_index].sqrt();
+    let limit_offset_per_cm = match input.limit {
+        Limit::Fixed { per_cm, .. } => Some(ritz.limit_per_cm - per_cm),
+        Limit::Fitted { .. } => None,
+    }
+    .filter(|offset| offset.abs() > 2.0 * limit_sigma)
+    .unwrap_or(0.0);
     SeriesFit {
         l: input.l,
         limit_per_cm: ritz.limit_per_cm,
-        limit_sigma_per_cm: published[limit_index][limit_index].sqrt(),
+        limit_sigma_per_cm: limit_sigma.hypot(limit_offset_per_cm),
+        limit_offset_per_cm,
         coefficients,
         covariance: published,
         used: members.iter().map(|member| member.n).collect(),
@@ -239,7 +251,9 @@ impl SeriesFit {
         self.ritz.defect(n)
     }
 
-    /// 1 σ of the energy predicted at n, cm⁻¹: fit, scale factor and neglected terms.
+    /// 1 σ of the energy predicted at n, cm⁻¹: fit, scale factor, neglected terms and, beyond the
+    /// last member, what separates the fitted limit from the limit given. A defect that keeps the
+    /// last member N in place takes (N*/n*)³ of that away.
     pub fn uncertainty_per_cm(&self, n: f64) -> f64 {
         let gradient = self.ritz.gradient(n);
         let spread = dot(&gradient, &times(&self.scaled_covariance, &gradient));
@@ -256,7 +270,10 @@ impl SeriesFit {
         let few = 1.0 + 2.0 / self.degrees_of_freedom.max(1) as f64;
         let scatter = (few * self.defect_scatter).max(self.neglected.unseen_scatter);
         let irregular = (scatter * self.ritz.stiffness_per_cm(n)).powi(2);
-        (fitted + left_out + irregular).sqrt()
+        let last = self.used.last().map_or(n, |last| f64::from(*last));
+        let kept = ((last - self.defect(last)) / (n - self.defect(n))).powi(3);
+        let beyond = (self.limit_offset_per_cm * (1.0 - kept).max(0.0)).powi(2);
+        (fitted + left_out + irregular + beyond).sqrt()
     }
 
     /// 1 σ of δ₀, neglected terms included (the covariance leaves them out).

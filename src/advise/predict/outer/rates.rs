@@ -238,6 +238,13 @@ fn fit_words(fit: &SeriesFit) -> String {
         fit.chi_squared,
         fit.degrees_of_freedom
     );
+    if fit.limit_offset_per_cm != 0.0 {
+        words.push_str(&format!(
+            " It puts the limit {:+.3} cm⁻¹ off the one held: uncertainties beyond the last member \
+             carry that.",
+            fit.limit_offset_per_cm
+        ));
+    }
     if !fit.perturbed.is_empty() {
         let names: Vec<String> = fit.perturbed.iter().map(|(n, _)| n.to_string()).collect();
         words.push_str(&format!(
