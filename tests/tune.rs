@@ -212,6 +212,34 @@ fn cooling_lines_lie_where_the_trade_expects_them() {
     }
 }
 
+/// Natural mercury shows five peaks at 253.7 nm, as components of ¹⁹⁹Hg and ²⁰¹Hg lie within a Doppler
+/// width (1 GHz) of one another and of even isotopes: ¹⁹⁹Hg F = 1/2 and ²⁰¹Hg F = 5/2 with ²⁰⁴Hg, ²⁰¹Hg F =
+/// 3/2 with ¹⁹⁸Hg, ¹⁹⁹Hg F = 3/2 with ²⁰¹Hg F = 1/2 (common practice of mercury lamps).
+#[test]
+fn components_of_mercury_make_five_peaks() {
+    let even = |species: &str| number(&transition(species, 253.728, ""), "frequency_thz");
+    let odd = |species: &str, upper_f: &str| {
+        let t = transition(species, 253.728, "--hyperfine");
+        let all = t["hyperfine"].as_array().unwrap().clone();
+        let found = all.into_iter().find(|c| c["upper_f"] == upper_f).unwrap();
+        number(&found, "frequency_thz")
+    };
+    for (what, one, other) in [
+        ("199 F 1/2, 204", odd("199Hg I", "1/2"), even("204Hg I")),
+        ("201 F 5/2, 204", odd("201Hg I", "5/2"), even("204Hg I")),
+        ("201 F 3/2, 198", odd("201Hg I", "3/2"), even("198Hg I")),
+        (
+            "199 F 3/2, 201 F 1/2",
+            odd("199Hg I", "3/2"),
+            odd("201Hg I", "1/2"),
+        ),
+    ] {
+        close(what, 1e3 * one, 1e3 * other, 1.0);
+    }
+    let apart = even("202Hg I") - even("204Hg I");
+    assert!(apart > 4e-3, "202 and 204 are two peaks: {apart} THz");
+}
+
 /// Of erbium and dysprosium only lines from the ground term are held: nothing is called closed, and
 /// what is known of the decays is a bound.
 #[test]
