@@ -214,6 +214,14 @@ fn with_bench(folder: &Path) -> PathBuf {
     path
 }
 
+/// Exports the invented table in one form.
+fn hand_on_bench(bench: &Path, form: &str, to: &str) {
+    let source = ["export", "--source", "harrow-bay-xenon"];
+    let arguments = [&source[..], &["--as", form, "--to", to]].concat();
+    let (_, error, exit) = said(&lineclear(bench, &arguments));
+    assert_eq!(exit, 0, "{form}: {error}");
+}
+
 #[test]
 fn what_others_read_in_the_files_is_what_they_hold() {
     // readings.json holds what pyarrow, duckdb, astropy and Python's json read in the four files;
@@ -227,17 +235,7 @@ fn what_others_read_in_the_files_is_what_they_hold() {
     for (form, end) in FORMS {
         let file = folder.path().join(format!("x.{end}"));
         let to = file.to_str().unwrap();
-        let arguments = [
-            "export",
-            "--source",
-            "harrow-bay-xenon",
-            "--as",
-            form,
-            "--to",
-            to,
-        ];
-        let (_, error, exit) = said(&lineclear(&bench, &arguments));
-        assert_eq!(exit, 0, "{error}");
+        hand_on_bench(&bench, form, to);
         assert_eq!(&rows(&file, form), expected, "{form}");
     }
 }
@@ -281,16 +279,7 @@ fn an_export_carries_citation_and_licence_and_is_imported_once() {
     for (form, end) in FORMS {
         let file = folder.path().join(format!("bench.{end}"));
         let to = file.to_str().unwrap();
-        let arguments = [
-            "export",
-            "--source",
-            "harrow-bay-xenon",
-            "--as",
-            form,
-            "--to",
-            to,
-        ];
-        assert_eq!(said(&lineclear(&bench, &arguments)).2, 0);
+        hand_on_bench(&bench, form, to);
         let second = folder.path().join(format!("second-{form}.sqlite"));
         std::fs::copy(catalogue(), &second).unwrap();
         let (answer, error, exit) = said(&lineclear(&second, &["import", to, "--dry-run"]));

@@ -94,8 +94,13 @@ fn spectrum(
 }
 
 fn ask(spectra: &[Spectrum]) -> Answer {
-    let typed: TypedRange = "499..501nm".parse().unwrap();
-    let question = Question {
+    answer(&question("499..501nm"), spectra).unwrap()
+}
+
+/// What is seen in a range with 0.1 nm at 1 eV.
+fn question(range: &str) -> Question {
+    let typed: TypedRange = range.parse().unwrap();
+    Question {
         range: typed.resolve(Medium::Vacuum, Air::standard()).unwrap(),
         medium: Medium::Vacuum,
         width: SpectralWidth::from_nm(0.1),
@@ -107,8 +112,7 @@ fn ask(spectra: &[Spectrum]) -> Answer {
             details: Details::default(),
         },
         not_held: Vec::new(),
-    };
-    answer(&question, spectra).unwrap()
+    }
 }
 
 fn feature_of(answer: &Answer, species: Species) -> &WindowFeature {
@@ -358,24 +362,10 @@ fn a_first_ion_of_which_nothing_is_claimed_counts_as_dense_as_the_neutral_atom()
 
 #[test]
 fn a_feature_far_from_the_middle_is_judged_by_what_is_known_where_it_lies() {
-    let typed: TypedRange = "380..620nm".parse().unwrap();
-    let question = Question {
-        range: typed.resolve(Medium::Vacuum, Air::standard()).unwrap(),
-        medium: Medium::Vacuum,
-        width: SpectralWidth::from_nm(0.1),
-        conditions: Conditions {
-            model: EmissionModel::Visible,
-            kt_per_cm: KT_1EV_PER_CM,
-            electron_density_per_m3: None,
-            gas_temperature_k: 1000.0,
-            details: Details::default(),
-        },
-        not_held: Vec::new(),
-    };
     // Iron is claimed from 400 to 600 nm only: helium at 390 nm cannot be judged, at 500 nm it can.
     let helium = spectrum(HELIUM, &[(390.0, Some(1e8)), (500.0, Some(1e8))], None);
     let iron = spectrum(IRON, &[(550.0, Some(1e6))], Some(Completeness::Full));
-    let answer = answer(&question, &[helium, iron]).unwrap();
+    let answer = answer(&question("380..620nm"), &[helium, iron]).unwrap();
     let words: Vec<Verdict> = (answer.features.iter())
         .filter(|f| f.species == HELIUM)
         .map(|f| f.verdict.central)
